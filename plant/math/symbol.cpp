@@ -1,0 +1,241 @@
+#include "plant/math/symbol.hpp"
+
+#include <bit>
+#include <stdexcept>
+#include <type_traits>
+#include <utility>
+
+#include "plant/math/elementary.hpp"
+
+namespace slipbench {
+
+namespace {
+
+template <class S>
+using BitsOf = std::conditional_t<sizeof(S) == 8, std::uint64_t, std::uint32_t>;
+
+template <class S>
+bool is(const SymbolNode<S>& n, double constant) {  // that constant, to the sign of zero
+  return n.graph == nullptr && std::bit_cast<BitsOf<S>>(n.value) == std::bit_cast<BitsOf<S>>(static_cast<S>(constant));
+}
+template <class S>
+bool same(const SymbolNode<S>& a, const SymbolNode<S>& b) {
+  if (a.graph != b.graph) return false;
+  return a.graph ? a.id == b.id : std::bit_cast<BitsOf<S>>(a.value) == std::bit_cast<BitsOf<S>>(b.value);
+}
+template <class S>
+SymbolNode<S> constant(S value) {
+  return {nullptr, 0, value};
+}
+template <class S>
+const typename Graph<S>::Node* node_of(const SymbolNode<S>& n) {
+  return n.graph ? &n.graph->nodes[n.id] : nullptr;
+}
+template <class S>
+bool never_minus_zero(const SymbolNode<S>& n) {
+  return n.graph ? node_of(n)->never_minus_zero : !is(n, -0.0);
+}
+// -x or x * -1: the operand without its sign change, if it is one.
+template <class S>
+bool negated(const SymbolNode<S>& n, SymbolNode<S>& inner) {
+  const auto* node = node_of(n);
+  if (!node || node->op != SymbolOp::negate) return false;
+  inner = {n.graph, node->a, S{}};
+  return true;
+}
+
+template <class S>
+S fold(SymbolOp op, S a, S b, S c) {
+  switch (op) {
+    case SymbolOp::add: return a + b;
+    case SymbolOp::subtract: return a - b;
+    case SymbolOp::multiply: return a * b;
+    case SymbolOp::divide: return a / b;
+    case SymbolOp::negate: return -a;
+    case SymbolOp::root: return sqrt(a);
+    case SymbolOp::floor: return floor(a);
+    case SymbolOp::size: return fabs(a);
+    case SymbolOp::two_to_the: return two_to_the(a);
+    case SymbolOp::exponent_of: return exponent_of(a);
+    case SymbolOp::select: return a != S(0) ? b : c;
+    case SymbolOp::less: return S(a < b);
+    case SymbolOp::less_equal: return S(a <= b);
+    case SymbolOp::equal: return S(a == b);
+    case SymbolOp::both: return S(a != S(0) && b != S(0));
+    case SymbolOp::either: return S(a != S(0) || b != S(0));
+    case SymbolOp::opposite: return S(a == S(0));
+    case SymbolOp::constant: case SymbolOp::input: case SymbolOp::truth: break;
+  }
+  return a;
+}
+
+// Identities that keep every bit. True where `result` is the answer; else `op`, `a`, `b` may have been put more simply.
+template <class S>
+bool simplify(SymbolOp& op, SymbolNode<S>& a, SymbolNode<S>& b, const SymbolNode<S>& c, SymbolNode<S>& result) {
+  SymbolNode<S> inner, inner_b;
+  const auto becomes = [&](const SymbolNode<S>& n) { result = n; return true; };
+  if (op == SymbolOp::add) {
+    if (is(a, -0.0) || (is(a, 0.0) && never_minus_zero(b))) return becomes(b);
+    if (is(b, -0.0) || (is(b, 0.0) && never_minus_zero(a))) return becomes(a);
+    if (negated(b, inner)) op = SymbolOp::subtract, b = inner;
+    else if (negated(a, inner)) op = SymbolOp::subtract, a = b, b = inner;
+  }
+  if (op == SymbolOp::subtract) {
+    if (is(b, 0.0) || (is(b, -0.0) && never_minus_zero(a))) return becomes(a);
+    if (negated(b, inner)) op = SymbolOp::add, b = inner;
+    else if (is(a, -0.0)) op = SymbolOp::negate, a = b, b = {};
+  }
+  if (op == SymbolOp::multiply || op == SymbolOp::divide) {
+    if (is(b, 1.0)) return becomes(a);
+    if (op == SymbolOp::multiply && is(a, 1.0)) return becomes(b);
+    if (is(b, -1.0)) op = SymbolOp::negate, b = {};
+    else if (op == SymbolOp::multiply && is(a, -1.0)) op = SymbolOp::negate, a = b, b = {};
+    else if (negated(a, inner) && negated(b, inner_b)) a = inner, b = inner_b;
+  }
+  if (op == SymbolOp::negate && negated(a, inner)) return becomes(inner);
+  if (op == SymbolOp::size) {
+    if (negated(a, inner)) a = inner;
+    if (a.graph && node_of(a)->op == SymbolOp::size) return becomes(a);
+  }
+  if (op == SymbolOp::select) {
+    if (!a.graph) return becomes(a.value != S(0) ? b : c);
+    if (same(b, c)) return becomes(b);
+  }
+  if (op == SymbolOp::less && same(a, b)) return becomes(constant(S(0)));
+  if (op == SymbolOp::both || op == SymbolOp::either) {
+    const S decides = S(op == SymbolOp::either);
+    if (!a.graph) return becomes(a.value == decides ? a : b);
+    if (!b.graph) return becomes(b.value == decides ? b : a);
+    if (same(a, b)) return becomes(a);
+  }
+  if (op == SymbolOp::opposite && a.graph && node_of(a)->op == SymbolOp::opposite) {
+    return becomes({a.graph, node_of(a)->a, S{}});
+  }
+  return false;
+}
+
+// Round to nearest: a sum is -0 only if both terms are; a product of a number with itself never is.
+template <class S>
+bool never_minus_zero(SymbolOp op, const SymbolNode<S>& a, const SymbolNode<S>& b, const SymbolNode<S>& c) {
+  switch (op) {
+    case SymbolOp::add: return never_minus_zero(a) || never_minus_zero(b);
+    case SymbolOp::subtract: return never_minus_zero(a);
+    case SymbolOp::multiply: return same(a, b);
+    case SymbolOp::size: case SymbolOp::two_to_the: case SymbolOp::exponent_of: return true;
+    case SymbolOp::root: return never_minus_zero(a);
+    case SymbolOp::select: return never_minus_zero(b) && never_minus_zero(c);
+    default: return false;
+  }
+}
+
+bool commutes(SymbolOp op) {
+  return op == SymbolOp::add || op == SymbolOp::multiply || op == SymbolOp::equal || op == SymbolOp::both ||
+         op == SymbolOp::either;
+}
+bool mask_operands(SymbolOp op) { return op == SymbolOp::both || op == SymbolOp::either || op == SymbolOp::opposite; }
+std::size_t operand_count(SymbolOp op) {
+  switch (op) {
+    case SymbolOp::select: return 3;
+    case SymbolOp::negate: case SymbolOp::root: case SymbolOp::floor: case SymbolOp::size: case SymbolOp::two_to_the:
+    case SymbolOp::exponent_of: case SymbolOp::opposite: return 1;
+    case SymbolOp::constant: case SymbolOp::input: case SymbolOp::truth: return 0;
+    default: return 2;
+  }
+}
+
+}  // namespace
+
+template <class S>
+std::uint32_t Graph<S>::node(Node n) {
+  const std::array<std::uint64_t, 5> key{static_cast<std::uint64_t>(n.op), n.a, n.b, n.c, std::bit_cast<BitsOf<S>>(n.value)};
+  const auto [place, fresh] = known_.try_emplace(key, static_cast<std::uint32_t>(nodes.size()));
+  if (fresh) nodes.push_back(n);
+  return place->second;
+}
+
+template <class S>
+std::uint32_t Graph<S>::id_of(const SymbolNode<S>& n, bool mask) {
+  if (n.graph == nullptr) {
+    return node({mask ? SymbolOp::truth : SymbolOp::constant, 0, 0, 0, n.value, !is(n, -0.0)});
+  }
+  if (n.graph != this) throw std::logic_error("symbols of two programs cannot meet");
+  return n.id;
+}
+
+template <class S>
+SymbolNode<S> record(SymbolOp op, const SymbolNode<S>& first, const SymbolNode<S>& second, const SymbolNode<S>& c) {
+  SymbolNode<S> a = first, b = second, result;
+  if (!a.graph && !b.graph && !c.graph) return constant(fold(op, a.value, b.value, c.value));
+  if (simplify(op, a, b, c, result)) return result;
+  Graph<S>* graph = a.graph ? a.graph : b.graph ? b.graph : c.graph;
+  const std::size_t count = operand_count(op);
+  typename Graph<S>::Node n{op, 0, 0, 0, S{}, never_minus_zero(op, a, b, c)};
+  n.a = graph->id_of(a, mask_operands(op) || op == SymbolOp::select);
+  if (count > 1) n.b = graph->id_of(b, mask_operands(op));
+  if (count > 2) n.c = graph->id_of(c, false);
+  if (commutes(op) && n.b < n.a) std::swap(n.a, n.b);
+  return {graph, graph->node(n), S{}};
+}
+
+template <class S>
+Symbol<S> Program<S>::input(const std::string& name, const std::string& array) {
+  std::size_t element = 0;
+  for (const auto& port : inputs_) element += port.array == array;
+  const auto number = static_cast<std::uint32_t>(inputs_.size());
+  const SymbolNode<S> node{graph_.get(), graph_->node({SymbolOp::input, number, 0, 0, S{}, false}), S{}};
+  inputs_.push_back({unique(name), array, element, node});
+  names_[node.id] = inputs_.back().name;
+  return Symbol<S>(node);
+}
+
+template <class S>
+void Program<S>::output(const std::string& name, const Symbol<S>& value, const std::string& array) {
+  std::size_t element = 0;
+  for (const auto& port : outputs_) element += port.array == array;
+  outputs_.push_back({name, array, element, value.node()});
+}
+
+template <class S>
+void Program<S>::name(const std::string& name, const Symbol<S>& value) {
+  if (value.is_constant() || names_.count(value.node().id)) return;
+  names_[value.node().id] = unique(name);
+}
+
+template <class S>
+std::vector<bool> Program<S>::needed() const {
+  std::vector<bool> need(graph_->nodes.size(), false);
+  for (const auto& port : outputs_) {
+    if (port.node.graph) need[port.node.id] = true;
+  }
+  for (std::size_t i = need.size(); i-- > 0;) {
+    const auto& n = graph_->nodes[i];
+    const std::size_t count = need[i] ? operand_count(n.op) : 0;
+    if (count > 0) need[n.a] = true;
+    if (count > 1) need[n.b] = true;
+    if (count > 2) need[n.c] = true;
+  }
+  return need;
+}
+
+template <class S>
+std::map<SymbolOp, std::size_t> Program<S>::operation_counts() const {
+  std::map<SymbolOp, std::size_t> counts;
+  const auto need = needed();
+  for (std::size_t i = 0; i < need.size(); ++i) {
+    if (need[i]) ++counts[graph_->nodes[i].op];
+  }
+  return counts;
+}
+
+#define SLIPBENCH_SYMBOL(S)                                                                                      \
+  template class Graph<S>;                                                                                       \
+  template SymbolNode<S> record<S>(SymbolOp, const SymbolNode<S>&, const SymbolNode<S>&, const SymbolNode<S>&); \
+  template Symbol<S> Program<S>::input(const std::string&, const std::string&);                                 \
+  template void Program<S>::output(const std::string&, const Symbol<S>&, const std::string&);                   \
+  template void Program<S>::name(const std::string&, const Symbol<S>&);                                         \
+  template std::vector<bool> Program<S>::needed() const;                                                         \
+  template std::map<SymbolOp, std::size_t> Program<S>::operation_counts() const;
+SLIPBENCH_SYMBOL(float)
+SLIPBENCH_SYMBOL(double)
+
+}  // namespace slipbench
