@@ -1,0 +1,86 @@
+// Full-order observer, speed-adaptive: stator current and rotor flux are copied from the machine's equations, the current
+// error corrects both, and its part across the flux adapts the speed.
+//
+//   predict  (i, psi) over the period with the held voltage at the adapted speed w_r (estimators/believed_machine.hpp)
+//   eps = i_measured - i-,   eps_d + j eps_q its parts along and across psi-
+//   i   = i-   + kappa eps                             kappa = 1 - e^{-a_i T}, a_i = 4 a_w: current error, fast
+//   psi = psi- - kappa L_sigma (eps - g eps_d)         g = g_d + j g_q along psi-, estimators/flux_gain.hpp
+//   w_r = w_r  - T a_w a_i L_sigma eps_q / |psi-|      a_w the adaptation bandwidth, 1/s
+//
+// Why: the current error settles within 1 / a_i to kappa L_sigma eps = T (E_model - E). What the second line then adds to
+// the model's E_model is E - E_model + g Re(E_model - E), so the flux obeys dpsi/dt = E + g (e_d - Re E), the reduced-order
+// observer's law with its stability in all quadrants, motoring and generating, once the last line has brought Im(E_model - E)
+// to zero. Current error and adaptation together: s^2 + a_i s + a_i a_w, a double pole at 2 a_w. At zero gain instead (psi = psi-)
+// the same adaptation is unstable when generating at low stator frequency.
+// i A, psi = psi_R Wb, u V, w_r electrical rad/s, T control period s. No speed is measured.
+// Trust: that of estimators/believed_machine.hpp, by flux and stator frequency.
+// Sources: H. Kubota, K. Matsuse, T. Nakano, IEEE Trans. Ind. Appl. 29(2), 1993 (adaptation, from memory); L. Harnefors,
+// M. Hinkkanen, IEEE Trans. Ind. Electron. 55(3), 2008, 1319-1329 (complete stability, full order from reduced order).
+#pragma once
+
+#include "estimators/believed_machine.hpp"
+#include "estimators/flux_gain.hpp"
+
+namespace slipbench {
+
+struct Luenberger {
+  static constexpr std::string_view kind = "luenberger";
+  static constexpr std::array<Setting, 5> settings{{
+      {"adaptation_bandwidth_Hz", "Hz", 0.1, 400.0, 60.0, "Bandwidth of the speed adaptation; the current error is four times as fast."},
+      {"frequency_filter_Hz", "Hz", 0.1, 2000.0, 20.0, "Corner of the low-pass on the frequency that sets the gain."},
+      {"flux_damping", "", 0.05, 5.0, 0.7, "Damping ratio of the flux error, zeta in A = alpha + 2 zeta |w_s|."},
+      {"flux_stiffness", "", 0.0, 10.0, 1.0, "Extra stiffness of the flux error at low frequency, in units of 1 / rotor time constant."},
+      {"flux_bandwidth_limit_Hz", "Hz", 0.1, 1000.0, 15.0, "Stator frequency above which damping grows no further."},
+  }};
+
+  template <class Real>
+  struct Constants {
+    BelievedMachine<Real> machine;
+    FluxGain<Real> gain;
+    Real current_share{};     // kappa
+    Real flux_share{};        // kappa L_sigma, H
+    Real adaptation{};        // T a_w a_i L_sigma, V
+    Real frequency_share{};
+    SLIPBENCH_FIELDS(machine, gain, current_share, flux_share, adaptation, frequency_share)
+  };
+
+  template <class Real>
+  struct State {
+    CurrentAndFlux<Real> x;
+    Real speed{}, frequency{};     // adapted w_r, filtered w_s, rad/s
+    Real started{};                // 0 before the first sample
+    SLIPBENCH_FIELDS(x, speed, frequency, started)
+  };
+
+  static Constants<double> prepare(const EstimatorSetup& setup, const Settings& given);
+  static State<double> begin(const EstimatorSetup& setup, const Constants<double>& c);
+
+  template <class Real>
+  static Estimate<Real> step(State<Real>& s, const Sample<Real>& sample, const Constants<Real>& c) {
+    const BelievedMachine<Real>& m = c.machine;
+    const Real zero(0.0), half(0.5), one(1.0);
+    const Vec2<Real> i{sample.i_alpha, sample.i_beta}, u{sample.u_alpha, sample.u_beta};
+    const MaskOf<Real> first = s.started < half;
+
+    const CurrentAndFlux<Real> next = ahead(m, s.x, u, s.speed).state;
+    const Vec2<Real> psi = select(first, s.x.flux, next.flux);
+    const Vec2<Real> eps = select(first, Vec2<Real>{zero, zero}, i - next.current);
+    const Real per_length = one / max(magnitude(psi), m.least_flux);
+    const Vec2<Real> along = per_length * psi;  // shorter than 1 while there is hardly any flux
+    const Real eps_d = dot(along, eps), eps_q = cross(along, eps);
+
+    const Vec2<Real> g = flux_gain(c.gain, s.frequency, s.speed);
+    s.x.current = select(first, i, next.current + c.current_share * eps);
+    s.x.flux = psi - c.flux_share * (eps - eps_d * product(g, along));
+    s.speed = clamp(s.speed - c.adaptation * per_length * eps_q, -m.speed_limit, m.speed_limit);
+    const Real slip = clamp(m.R_R * per_length * cross(along, s.x.current), -m.speed_limit, m.speed_limit);
+    s.frequency = s.frequency + select(first, one, c.frequency_share) * (s.speed + slip - s.frequency);
+    s.started = one;
+
+    Estimate<Real> out = estimate_of(m, s.x.flux, s.x.current, s.speed);
+    out.trust = trust_by_frequency(m, s.x.flux, s.frequency);
+    return out;
+  }
+};
+
+}  // namespace slipbench

@@ -1,0 +1,22 @@
+// The list of built-in estimators: adding one takes its file pair and a line here.
+#pragma once
+
+#include <tuple>
+
+#include "estimators/extended_kalman.hpp"
+#include "estimators/luenberger.hpp"
+#include "estimators/reduced_order.hpp"
+
+namespace slipbench {
+
+using EstimatorMethods = std::tuple<Luenberger, ReducedOrder, ExtendedKalman>;
+
+// Calls f.template operator()<Method>() for each built-in method.
+template <class F>
+void each_estimator_method(F&& f) {
+  [&]<class... Method>(std::tuple<Method...>*) {
+    (f.template operator()<Method>(), ...);
+  }(static_cast<EstimatorMethods*>(nullptr));
+}
+
+}  // namespace slipbench
