@@ -1,0 +1,50 @@
+#include "sim/scenario/scenario.hpp"
+
+#include <cmath>
+
+namespace slipbench {
+
+Circuit<double> MachineSettings::circuit() const {
+  const auto pairs = static_cast<double>(pole_pairs);
+  if (circuit_form == "inverse_gamma") {
+    return from_inverse_gamma(pairs, stator_resistance_ohm, rotor_resistance_ohm, total_leakage_H,
+                              magnetizing_inductance_H);
+  }
+  if (circuit_form == "gamma") {
+    return from_gamma(pairs, stator_resistance_ohm, rotor_resistance_ohm, total_leakage_H, magnetizing_inductance_H);
+  }
+  return {pairs,           stator_resistance_ohm,   rotor_resistance_ohm, stator_leakage_H,
+          rotor_leakage_H, magnetizing_inductance_H};
+}
+
+Nameplate MachineSettings::nameplate() const {
+  Nameplate plate{rated_power_W,   rated_line_voltage_V, rated_current_A,    rated_frequency_Hz,
+                  rated_speed_rpm, rated_torque_Nm,      rated_power_factor, rated_efficiency};
+  if (plate.torque_Nm == 0.0) plate.torque_Nm = plate.power_W / plate.speed_rad_s();
+  return plate;
+}
+
+Circuit<double> Scenario::believed_circuit() const {
+  Circuit<double> c = belief.has_machine ? belief.machine.circuit() : machine.circuit();
+  c.stator_resistance *= belief.stator_resistance;
+  c.rotor_resistance *= belief.rotor_resistance;
+  c.stator_leakage *= belief.stator_leakage;
+  c.rotor_leakage *= belief.rotor_leakage;
+  c.magnetizing_inductance *= belief.magnetizing_inductance;
+  return c;
+}
+
+// Steady state at stator frequency w and slip frequency w_s, from the rotor and stator voltage equations:
+//   v = psi_r [ (R_s + j w sigma L_s) (1 + j w_s tau_r) / L_m + j w L_m / L_r ]
+double rated_rotor_flux(const Circuit<double>& c, const Nameplate& plate) {
+  const double w = plate.angular_frequency();
+  const double w_slip = w - c.pole_pairs * plate.speed_rad_s();
+  const double L_r = c.rotor_inductance(), L_m = c.magnetizing_inductance;
+  const double x_leak = w * (c.stator_inductance() - L_m * L_m / L_r);  // w sigma L_s
+  const double turn = w_slip * L_r / c.rotor_resistance;                // w_s tau_r
+  const double re = (c.stator_resistance - x_leak * turn) / L_m;
+  const double im = (c.stator_resistance * turn + x_leak) / L_m + w * L_m / L_r;
+  return plate.phase_peak_V() / std::sqrt(re * re + im * im);
+}
+
+}  // namespace slipbench
