@@ -1,0 +1,320 @@
+#include "sim/engine/run.hpp"
+
+#include <algorithm>
+#include <chrono>
+#include <cmath>
+
+#include "plant/steady_state.hpp"
+#include "sim/scenario/input_error.hpp"
+
+namespace slipbench {
+
+namespace {
+
+constexpr double rad_s_per_rpm = 3.14159265358979323846 / 30.0;
+constexpr double nan = std::numeric_limits<double>::quiet_NaN();
+constexpr std::int64_t ticks_between_questions = 4096;  // how often keep_going is asked
+
+std::int64_t whole(double quotient) { return std::llround(quotient); }
+
+// Speed at which the load takes the torque asked for under torque control; 0 is as good as any where nothing depends on it.
+double balancing_speed(const Plant& plant, double torque, double limit, const Scenario& s) {
+  double low = -limit, high = limit;
+  if (plant.load_at_start(low) > torque || plant.load_at_start(high) < torque) {
+    throw InputError(s.path, "run.start",
+                     "start = \"steady\": no speed within twice the rated one at which the load takes the first torque reference; "
+                     "impose a speed or start from \"magnetised\"", "steady");
+  }
+  for (int i = 0; i < 200; ++i) {
+    const double middle = 0.5 * (low + high);
+    (plant.load_at_start(middle) < torque ? low : high) = middle;
+  }
+  return 0.5 * (low + high);
+}
+
+}  // namespace
+
+Run::Run(const Scenario& s, const RunOptions& options, std::int64_t first_tick)
+    : scenario_(s), options_(options), first_tick_(first_tick),
+      steps_per_control_(whole(s.run.control_period_s / s.run.plant_step_s)),
+      steps_per_trace_(whole(s.run.trace_period_s / s.run.plant_step_s)),
+      steps_(whole(s.run.duration_s / s.run.trace_period_s) * steps_per_trace_),
+      plant_(s, options.noise_run), sensors_(s, options.noise_run) {
+  speed_control_ = !s.reference.speed_rpm.empty();
+  speed_reference_ = Profile(s.reference.speed_rpm, rad_s_per_rpm);
+  torque_reference_ = Profile(s.reference.torque_Nm, 1.0);
+  estimates_.resize(s.estimators.size());
+  estimate_row_.resize(s.estimators.size() * estimator_column_count);
+  step_seconds_.resize(s.estimators.size());
+  const double dead_time = s.supply.dead_time_s * s.belief.dead_time, drop = s.supply.device_drop_V * s.belief.device_drop;
+  compensated_ = !s.on_mains() && s.controller.dead_time_compensation && (dead_time > 0.0 || drop > 0.0);
+  if (!s.on_mains()) believed_leg_ = leg_error(dead_time, s.supply.switching_frequency_Hz, drop, s.supply.zero_current_width_A);
+  modulation_ = s.supply.modulation == "sine"            ? Modulation::sine
+                : s.supply.modulation == "discontinuous" ? Modulation::discontinuous
+                                                         : Modulation::space_vector;
+  speed_from_ = closing_estimator(s.controller.speed_from);
+  flux_from_ = closing_estimator(s.controller.flux_from);
+  place_at_start();
+}
+
+std::int64_t Run::closing_estimator(const std::string& name) const {
+  for (std::size_t i = 0; i < scenario_.estimators.size(); ++i) {
+    if (scenario_.estimators[i].name == name) return static_cast<std::int64_t>(i);
+  }
+  return -1;
+}
+
+void Run::place_at_start() {
+  const Scenario& s = scenario_;
+  const Circuit<double> truth = s.machine.circuit();
+  const double flux_reference = s.reference.rotor_flux_Wb;
+  EstimatorSetup e;
+  e.circuit = s.believed_circuit();
+  e.nameplate = s.machine.nameplate();
+  e.inertia_kgm2 = s.believed_inertia();
+  e.viscous_friction_Nms = s.shaft.viscous_friction_Nms;
+  e.control_period_s = s.run.control_period_s;
+  e.current_sensors = static_cast<int>(s.sensors.current_phases);
+  e.current_noise_A = sensors_.current_noise();
+  ControllerSetup c;
+  c.circuit = e.circuit;
+  c.nameplate = e.nameplate;
+  c.inertia_kgm2 = e.inertia_kgm2;
+  c.control_period_s = e.control_period_s;
+  c.delay_periods = static_cast<int>(s.controller.delay_periods);
+  c.modulation = modulation_;
+  c.inverter = {s.supply.dc_link_V * s.belief.dc_link, s.supply.dead_time_s * s.belief.dead_time,
+                s.supply.device_drop_V * s.belief.device_drop, s.supply.switching_frequency_Hz, s.supply.zero_current_width_A};
+  c.compensate_dead_time = compensated_;
+  c.direct_orientation = s.controller.orientation == "direct";
+  c.speed_control = speed_control_;
+  c.sensorless = speed_from_ >= 0;
+  c.rotor_flux_reference_Wb = flux_reference;
+
+  duty_ = {0.5, 0.5, 0.5};
+  if (s.run.start == "magnetised" || s.run.start == "steady") {
+    SteadyState now;
+    if (s.on_mains()) {
+      const double w = 6.283185307179586477 * s.supply.frequency_Hz, peak = s.supply.line_voltage_V * 0.81649658092772603273;
+      const auto slip = stable_slip(truth, peak, w, [&](double speed) { return plant_.load_at_start(speed); });
+      if (!slip) {
+        throw InputError(s.path, "run.start", "start = \"steady\": the load is beyond the machine's pull-out torque on this supply; "
+                         "lower the load or raise supply.line_voltage_V", "steady");
+      }
+      now = steady_at_slip(truth, peak, w, *slip);
+    } else {
+      double speed = s.run.start == "steady" ? speed_reference_.line_at(0.0).at(0.0) : 0.0;
+      double torque = 0.0;
+      if (s.run.start == "steady") {
+        plant_.set_state({}, speed);  // an imposed speed wins over the reference
+        speed = plant_.speed();
+        if (!speed_control_) {
+          torque = torque_reference_.line_at(0.0).at(0.0);
+          const bool held = std::any_of(s.loads.begin(), s.loads.end(), [](const auto& l) { return l.kind == "imposed_speed"; });
+          if (!held) speed = balancing_speed(plant_, torque, 2.0 * e.nameplate.speed_rad_s(), s);
+        } else {
+          torque = plant_.load_at_start(speed);
+        }
+      }
+      const double electrical = fabs(truth.pole_pairs * speed);
+      const double weakened = flux_reference * min(1.0, e.nameplate.angular_frequency() / max(electrical, 1e-9));
+      now = steady_at_flux(truth, weakened, torque, truth.pole_pairs * speed);
+    }
+    // On mains the voltage has its phase at t = 0; a run-in begins that much earlier.
+    MachineFlux<double> flux = now.flux;
+    if (s.on_mains()) {
+      const double t = static_cast<double>(first_tick_) * s.run.control_period_s;
+      const SinCos<double> angle = sincos_turns(s.supply.frequency_Hz * t + s.supply.phase_deg / 360.0);
+      flux = {turn_forward(angle, flux.stator), turn_forward(angle, flux.rotor)};
+    }
+    plant_.set_state(flux, now.electrical_speed / truth.pole_pairs);
+    e.start_rotor_flux_Wb = c.start_rotor_flux_Wb = magnitude(now.flux.rotor);
+    e.start_speed_rad_s = plant_.speed();
+    if (!s.on_mains()) duty_ = modulate(modulation_, now.voltage, s.supply.dc_link_V);
+  }
+  for (const auto& estimator : s.estimators) estimators_.push_back(make_estimator(estimator.kind, e, estimator.settings));
+  if (!s.on_mains()) {
+    controller_ = make_controller(s.controller.kind, c, s.controller.settings);
+    pending_.assign(static_cast<std::size_t>(s.controller.delay_periods), duty_);
+  }
+  plant_.apply(duty_);
+  sensors_.begin(plant_, first_tick_ * steps_per_control_);
+  reading_ = sensors_.read(plant_, first_tick_ - 1);
+}
+
+RunInfo Run::info() const {
+  RunInfo info{scenario_.title, scenario_.run.trace_period_s, scenario_.run.control_period_s, scenario_.run.duration_s,
+               plant_columns(), sensors_.columns(), {}, {}};
+  for (const auto& e : scenario_.estimators) {
+    info.estimator_names.push_back(e.name);
+    info.estimator_kinds.push_back(e.kind);
+  }
+  return info;
+}
+
+Vec2<double> Run::believed_voltage(const Reading& before, const Reading& now, std::int64_t k) const {
+  if (scenario_.on_mains()) {
+    const bool just_switched_on = k == 0 && scenario_.run.start == "standstill";
+    return just_switched_on ? Vec2<double>{} : 0.5 * (before.voltage + now.voltage);
+  }
+  const double dc_link = 0.5 * (before.dc_link + now.dc_link);
+  if (!compensated_) return applied_voltage(duty_, dc_link);
+  return averaged_voltage(believed_leg_, phases_of(0.5 * (before.current + now.current)), duty_, dc_link);
+}
+
+void Run::run_estimators(std::int64_t k) {
+  const Reading before = reading_;
+  reading_ = sensors_.read(plant_, k);
+  const Vec2<double> u = believed_voltage(before, reading_, k);
+  Sample<double> sample;
+  sample.tick = k;
+  sample.u_alpha = u.x;
+  sample.u_beta = u.y;
+  sample.i_alpha = reading_.current.x;
+  sample.i_beta = reading_.current.y;
+  sample.dc_link = reading_.dc_link;
+  sample.speed = reading_.speed;
+  if (!options_.time_steps) {
+    for (std::size_t i = 0; i < estimators_.size(); ++i) estimates_[i] = estimators_[i]->step(sample);
+    return;
+  }
+  ++timed_ticks_;
+  for (std::size_t i = 0; i < estimators_.size(); ++i) {
+    const auto begun = std::chrono::steady_clock::now();
+    estimates_[i] = estimators_[i]->step(sample);
+    step_seconds_[i] += std::chrono::duration<double>(std::chrono::steady_clock::now() - begun).count();
+  }
+}
+
+void Run::control_tick(std::int64_t k) {
+  plant_.disturb(k);
+  run_estimators(k);
+  if (!controller_) return;
+  const double t = static_cast<double>(std::max<std::int64_t>(k, 0)) * scenario_.run.control_period_s;
+  const auto now = [t](Profile& p) { return p.line_at(t).at(t); };
+  speed_reference_now_ = now(speed_reference_);
+  torque_reference_now_ = now(torque_reference_);
+  Measurement<double> m;
+  m.current = reading_.current;
+  m.dc_link = reading_.dc_link;
+  m.speed = speed_from_ < 0 ? reading_.speed : estimates_[static_cast<std::size_t>(speed_from_)].speed;
+  if (flux_from_ >= 0) {
+    m.rotor_flux = estimates_[static_cast<std::size_t>(flux_from_)].rotor_flux;
+    m.rotor_flux_angle = estimates_[static_cast<std::size_t>(flux_from_)].rotor_flux_angle;
+  }
+  m.speed_reference = speed_reference_now_;
+  m.torque_reference = torque_reference_now_;
+  command_ = controller_->step(m);
+  // The command leaves now and acts d periods later.
+  duty_ = command_.duty;
+  if (!pending_.empty()) {
+    std::swap(duty_, pending_[next_pending_]);
+    next_pending_ = next_pending_ + 1 == pending_.size() ? 0 : next_pending_ + 1;
+  }
+  plant_.apply(duty_);
+}
+
+PlantRow Run::plant_row(std::int64_t n) {
+  PlantRow row = plant_.row(n);
+  if (controller_) {
+    if (speed_control_) row[P::speed_reference_rpm] = speed_reference_now_ / rad_s_per_rpm;
+    row[P::rotor_flux_reference] = command_.rotor_flux_reference;
+  }
+  return row;
+}
+
+bool Run::find_divergence(std::int64_t k) {
+  const auto found = [&](std::string what) {
+    outcome.diverged = true;
+    outcome.diverged_at_s = static_cast<double>(k) * scenario_.run.control_period_s;
+    outcome.diverged_what = std::move(what);
+    return true;
+  };
+  if (const char* what = plant_.diverged()) return found(what);
+  if (!controller_) return false;
+  for (const std::int64_t i : {speed_from_, flux_from_}) {
+    if (i < 0) continue;
+    const Estimate<double>& e = estimates_[static_cast<std::size_t>(i)];
+    if (!is_finite(e.speed + e.rotor_flux + e.rotor_flux_angle)) {
+      return found("estimate of '" + scenario_.estimators[static_cast<std::size_t>(i)].name + "', which closes the loop");
+    }
+  }
+  if (!is_finite(command_.duty.a + command_.duty.b + command_.duty.c)) return found("voltage command of the controller");
+  return false;
+}
+
+void Run::plant_steps(std::int64_t n, std::int64_t count) {
+  for (std::int64_t i = n; i < n + count; ++i) {
+    plant_.step(i);
+    sensors_.track(plant_, i + 1);
+  }
+}
+
+double Run::run_in() {
+  const std::int64_t window = std::max<std::int64_t>(1, -first_tick_ / 4);
+  const Nameplate plate = scenario_.machine.nameplate();
+  std::array<std::vector<double>, 2> means;
+  const double speed_scale = 1.0 / plate.speed_rad_s(), flux_scale = plate.angular_frequency() / plate.phase_peak_V();
+  for (auto& m : means) m.assign(3 + 2 * estimates_.size(), 0.0);
+  for (std::int64_t k = first_tick_; k < 0; ++k) {
+    control_tick(k);
+    if (find_divergence(k)) return std::numeric_limits<double>::infinity();
+    if (k >= -2 * window) {
+      auto& m = means[k >= -window ? 1 : 0];
+      const PlantRow row = plant_row(k * steps_per_control_);
+      m[0] += row[P::speed_rpm] * rad_s_per_rpm * speed_scale;
+      m[1] += row[P::rotor_flux] * flux_scale;
+      m[2] += row[P::torque] / plate.torque_Nm;
+      for (std::size_t i = 0; i < estimates_.size(); ++i) {
+        m[3 + 2 * i] += estimates_[i].speed * speed_scale;
+        m[4 + 2 * i] += estimates_[i].rotor_flux * flux_scale;
+      }
+    }
+    plant_steps(k * steps_per_control_, steps_per_control_);
+  }
+  double moving = 0.0;
+  for (std::size_t i = 0; i < means[0].size(); ++i) {
+    moving = std::max(moving, std::fabs(means[1][i] - means[0][i]) / static_cast<double>(window));
+  }
+  return moving;
+}
+
+void Run::go(std::span<RunObserver* const> observers) {
+  const std::int64_t ticks = steps_ / steps_per_control_;
+  for (std::int64_t n = 0;; ++n) {
+    if (n % steps_per_control_ == 0) {
+      const std::int64_t k = n / steps_per_control_;
+      control_tick(k);
+      const PlantRow row = plant_row(n);
+      const TickView view{k, row[P::time], &row, estimates_, command_.clipped != 0.0};
+      for (RunObserver* o : observers) o->control_tick(view);
+      if (find_divergence(k)) break;
+      if (options_.keep_going && k % ticks_between_questions == 0 &&
+          !options_.keep_going(static_cast<double>(k) / static_cast<double>(std::max<std::int64_t>(ticks, 1)))) {
+        outcome.stopped = true;
+        break;
+      }
+    }
+    if (n % steps_per_trace_ == 0) {
+      const PlantRow row = plant_row(n);
+      for (std::size_t i = 0; i < estimates_.size(); ++i) {
+        const Estimate<double>& e = estimates_[i];
+        const std::array<double, estimator_column_count> columns{e.speed / rad_s_per_rpm, e.rotor_flux, e.rotor_flux_angle,
+                                                                 e.torque, e.trust};
+        std::copy(columns.begin(), columns.end(), estimate_row_.begin() + static_cast<std::ptrdiff_t>(i * columns.size()));
+      }
+      const RowView view{n / steps_per_trace_, &row, sensors_.values(), estimate_row_};
+      for (RunObserver* o : observers) o->trace_row(view);
+    }
+    outcome.simulated_s = static_cast<double>(n) * scenario_.run.plant_step_s;
+    if (n == steps_) break;
+    plant_steps(n, 1);
+  }
+  outcome.clipped_samples = sensors_.clipped();
+  outcome.step_ns.assign(step_seconds_.size(), 0.0);
+  for (std::size_t i = 0; i < step_seconds_.size(); ++i) {
+    outcome.step_ns[i] = timed_ticks_ > 0 ? step_seconds_[i] / static_cast<double>(timed_ticks_) * 1e9 : nan;
+  }
+}
+
+}  // namespace slipbench
