@@ -1,0 +1,43 @@
+// What the estimates were worth: figures of each estimator of a run, e = estimate - truth at every control tick.
+//
+// Over the score window, N ticks:
+//   speed_rmse_rpm = sqrt(sum e^2 / N), speed_bias_rpm = sum e / N, speed_max_error_rpm = max |e|
+//   flux_rmse_Wb (of the magnitude), torque_rmse_Nm likewise
+//   angle_rmse_deg: e wrapped to +-180 degrees; ticks whose true rotor flux is below 10 % of the rated one are left out
+//   settled_at_s: time of the first tick of the window from which |e| <= settled_error x rated speed to the window's end
+// Over the whole run:
+//   lost_at_s: start of the first stretch with |e| > lost_error x rated speed that lasted lost_for_s; an estimate of
+//   speed that is no finite number is lost at once
+// An estimate that is not finite anywhere in the window leaves the figures it enters empty.
+#pragma once
+
+#include <vector>
+
+#include "sim/engine/observer.hpp"
+#include "sim/score/basis.hpp"
+#include "sim/score/figures.hpp"
+
+namespace slipbench {
+
+class EstimatorScore : public RunObserver {
+ public:
+  explicit EstimatorScore(ScoreBasis basis) : basis_(std::move(basis)) {}
+  void begin(const RunInfo& info) override { tallies_.assign(info.estimator_names.size(), {}); }
+  void control_tick(const TickView& view) override;
+
+  // One entry for each estimator, in file order; at any time after `begin`.
+  [[nodiscard]] std::vector<EstimatorFigures> figures() const;
+
+ private:
+  struct Tally {
+    double count = 0, speed_sum = 0, speed_square = 0, speed_max = 0, flux_square = 0, torque_square = 0;
+    double angle_count = 0, angle_square = 0;
+    Figure lost_at, off_since, settled_at;
+  };
+  void judge(Tally& tally, const PlantRow& plant, const Estimate<double>& estimate, double time_s) const;
+
+  ScoreBasis basis_;
+  std::vector<Tally> tallies_;
+};
+
+}  // namespace slipbench
