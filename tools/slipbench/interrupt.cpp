@@ -1,0 +1,23 @@
+#include "tools/slipbench/interrupt.hpp"
+
+#include <atomic>
+#include <csignal>
+
+namespace slipbench {
+
+namespace {
+
+std::atomic<bool> asked{false};
+static_assert(std::atomic<bool>::is_always_lock_free, "a signal handler may touch lock-free atomics only");
+
+void on_interrupt(int) {
+  asked.store(true);
+  std::signal(SIGINT, SIG_DFL);
+}
+
+}  // namespace
+
+void catch_interrupts() { std::signal(SIGINT, on_interrupt); }
+bool interrupted() { return asked.load(); }
+
+}  // namespace slipbench

@@ -1,0 +1,104 @@
+#include "tools/slipbench/json_out.hpp"
+
+#include <cmath>
+#include <nlohmann/json.hpp>
+
+#include "sim/scenario/scenario.hpp"
+#include "tools/slipbench/comparison.hpp"
+#include "tools/slipbench/run_result.hpp"
+
+namespace slipbench {
+
+namespace {
+
+using Json = nlohmann::ordered_json;
+
+Json value_of(Figure value) { return value && std::isfinite(*value) ? Json(*value) : Json(nullptr); }
+
+Json columns(const std::vector<NamedValue>& values) {
+  Json object = Json::object();
+  for (const NamedValue& value : values) object[value.name] = value_of(value.value);
+  return object;
+}
+
+template <class Figures, class List>
+void add_figures(Json& object, const Figures& figures, const List& list) {
+  for (const auto& entry : list) object[std::string(entry.name)] = value_of(figures.*entry.value);
+}
+
+Json bounds(const Interval& interval) {
+  return interval.low ? Json::array({value_of(interval.low), value_of(interval.high)}) : Json(nullptr);
+}
+
+std::string text_of(const Json& document) { return document.dump(2, ' ', false, Json::error_handler_t::replace) + "\n"; }
+
+}  // namespace
+
+std::string json_document(const RunResult& r) {
+  Json document;
+  document["slipbench"] = SLIPBENCH_VERSION;
+  document["scenario"] = r.scenario->title;
+  document["seed"] = r.scenario->seed;
+  document["status"] = r.status;
+  if (r.outcome.diverged) document["diverged"] = {{"at_s", r.outcome.diverged_at_s}, {"what", r.outcome.diverged_what}};
+  if (r.interrupted) document["interrupted"] = true;
+  document["simulated_s"] = r.outcome.simulated_s;
+  document["wall_s"] = r.outcome.wall_s;
+  document["clipped_samples"] = r.outcome.clipped_samples;
+  document["final"] = columns(r.final);
+  document["mean"] = columns(r.mean);
+  document["drive"] = Json::object();
+  add_figures(document["drive"], r.drive, drive_figures);
+  document["estimators"] = Json::object();
+  document["digest"] = {{"plant", r.plant_digest}};
+  for (const EstimatorResult& e : r.estimators) {
+    Json entry = {{"kind", e.kind}};
+    add_figures(entry, e.figures, estimator_figures);
+    entry["step_ns"] = value_of(e.step_ns);
+    document["estimators"][e.name] = std::move(entry);
+    document["digest"][e.name] = e.digest;
+  }
+  return text_of(document);
+}
+
+std::string json_document(const Comparison& c) {
+  Json document;
+  document["runs"] = c.runs();
+  document["in_loop"] = c.in_loop;
+  if (c.stopped) document["interrupted"] = true;
+  document["estimators"] = Json::object();
+  document["differences"] = Json::array();
+  for (std::size_t e = 0; e < c.estimators.size(); ++e) {
+    Json entry = Json::object();
+    for (std::size_t f = 0; f < c.figure_names.size(); ++f) {
+      const Interval interval = c.interval(e, f);
+      entry[std::string(c.figure_names[f])] = {{"mean", value_of(interval.mean)}, {"ci95", bounds(interval)}, {"runs", interval.runs}};
+    }
+    entry["lost_runs"] = c.estimators[e].lost_runs();
+    entry["diverged_runs"] = c.estimators[e].diverged_runs();
+    document["estimators"][c.estimators[e].name] = std::move(entry);
+    for (std::size_t b = e + 1; b < c.estimators.size(); ++b) {
+      for (std::size_t f = 0; f < c.figure_names.size(); ++f) {
+        const Interval d = c.difference(e, b, f);
+        document["differences"].push_back({{"a", c.estimators[e].name}, {"b", c.estimators[b].name},
+                                           {"figure", c.figure_names[f]}, {"mean", value_of(d.mean)}, {"ci95", bounds(d)}});
+      }
+    }
+  }
+  return text_of(document);
+}
+
+std::string json_document(const CheckDocument& check) {
+  Json document = {{"slipbench", SLIPBENCH_VERSION}, {"file", check.file}, {"kind", check.kind}, {"title", check.title}, {"valid", true}};
+  document["facts"] = Json::object();
+  for (const Fact& fact : check.facts) {
+    document["facts"][fact.key] = fact.text.empty() ? value_of(fact.number) : Json(fact.text);
+  }
+  return text_of(document);
+}
+
+std::string json_document(const ErrorDocument& error) {
+  return text_of({{"error", {{"place", error.place}, {"key", error.key}, {"message", error.message}, {"code", error.code}}}});
+}
+
+}  // namespace slipbench

@@ -1,0 +1,96 @@
+// run: one simulation with everything that listens to it.
+#include <fmt/format.h>
+
+#include <memory>
+
+#include "sim/record/csv_trace.hpp"
+#include "sim/record/digest.hpp"
+#include "sim/score/drive_score.hpp"
+#include "sim/score/estimator_score.hpp"
+#include "tools/slipbench/interrupt.hpp"
+#include "tools/slipbench/json_out.hpp"
+#include "tools/slipbench/progress.hpp"
+#include "tools/slipbench/run_figure.hpp"
+#include "tools/slipbench/run_result.hpp"
+#include "tools/slipbench/verbs.hpp"
+
+namespace slipbench {
+
+namespace {
+
+std::string status_of(const RunResult& result) {
+  if (result.outcome.diverged) return "diverged";
+  for (const EstimatorResult& estimator : result.estimators) {
+    if (estimator.figures.lost_at_s) return "lost";
+  }
+  return "done";
+}
+
+}  // namespace
+
+int run_verb(const Request& request) {
+  want_scenario(request);
+  const Scenario scenario = read_scenario(request.file, request.overrides, request.seed);
+  const ScoreBasis basis = score_basis(scenario);
+
+  // Outputs are opened first: a path that cannot be written costs no simulation.
+  std::unique_ptr<CsvTrace> trace;
+  std::unique_ptr<OutFile> figure_file;
+  if (!request.trace.empty()) trace = std::make_unique<CsvTrace>(request.trace);
+  if (!request.figure.empty()) figure_file = std::make_unique<OutFile>(request.figure);
+
+  EstimatorScore estimator_score(basis);
+  DriveScore drive_score(basis);
+  ColumnMeans means(basis.window);
+  RunDigest digest;
+  RunFigure figure(basis.window, basis.load_steps_s);
+  std::vector<RunObserver*> observers = {&estimator_score, &drive_score, &means, &digest};
+  if (trace) observers.push_back(trace.get());
+  if (figure_file) observers.push_back(&figure);
+
+  RunOptions options;
+  options.noise_run = request.noise_run;
+  options.time_steps = true;
+  RunResult result;
+  {
+    Progress progress("run", request.progress, request.quiet);
+    options.keep_going = [&](double share) {
+      progress.update(share);
+      return !interrupted() && !(trace && trace->failed());
+    };
+    result.outcome = simulate(scenario, observers, options);
+  }
+
+  result.scenario = &scenario;
+  result.interrupted = result.outcome.stopped && interrupted();
+  result.final = means.last();
+  result.mean = means.means();
+  result.drive = drive_score.figures();
+  result.plant_digest = digest.plant();
+  const auto figures = estimator_score.figures();
+  for (std::size_t i = 0; i < scenario.estimators.size(); ++i) {
+    const double step_ns = i < result.outcome.step_ns.size() ? result.outcome.step_ns[i] : 0.0;
+    result.estimators.push_back(
+        {scenario.estimators[i].name, scenario.estimators[i].kind, digest.estimator(i), figures[i], step_ns});
+  }
+  result.status = status_of(result);
+
+  if (trace) {
+    trace->finish();
+    result.files.push_back(fmt::format("trace:  {} ({} rows, {} columns)", request.trace, trace->rows(), trace->columns()));
+  }
+  if (figure_file) {
+    figure_file->write(figure.svg(scenario, estimator_score.figures()));
+    figure_file->finish();
+    result.files.push_back(fmt::format("figure: {}", request.figure));
+  }
+  if (request.json) {
+    print(json_document(result));
+  } else if (!request.quiet) {
+    print(run_summary(result));
+  }
+  if (result.interrupted) return ExitStatus::stopped;
+  return result.status == "done" ? ExitStatus::done : ExitStatus::bad_result;
+}
+
+}  // namespace slipbench

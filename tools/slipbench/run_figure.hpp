@@ -1,0 +1,32 @@
+// Figure of a run: true, reference and estimated speed over time (means of each column of pixels); beneath, each
+// estimate's error, its mean as a line within the band between its least and greatest.
+#pragma once
+
+#include <string>
+#include <vector>
+
+#include "sim/engine/observer.hpp"
+#include "sim/score/basis.hpp"
+#include "sim/score/figures.hpp"
+#include "tools/slipbench/envelope.hpp"
+
+namespace slipbench {
+
+class RunFigure : public RunObserver {
+ public:
+  // load_steps_s: times to be marked.
+  RunFigure(ScoreWindow window, std::vector<double> load_steps_s) : window_(window), load_steps_s_(std::move(load_steps_s)) {}
+  void begin(const RunInfo& info) override;
+  void control_tick(const TickView& view) override;
+  [[nodiscard]] std::string svg(const Scenario& scenario, const std::vector<EstimatorFigures>& figures) const;
+
+ private:
+  ScoreWindow window_;
+  std::vector<double> load_steps_s_;
+  RunInfo info_;
+  Envelope truth_, reference_;
+  std::vector<Envelope> estimates_, errors_;
+  std::vector<double> window_error_;  // largest |error| inside the score window
+};
+
+}  // namespace slipbench

@@ -1,0 +1,34 @@
+// All that a run left behind, as plain data for the summary and for JSON.
+#pragma once
+
+#include <string>
+#include <vector>
+
+#include "sim/engine/simulate.hpp"
+#include "sim/score/figures.hpp"
+#include "sim/score/means.hpp"
+
+namespace slipbench {
+
+struct EstimatorResult {
+  std::string name, kind, digest;
+  EstimatorFigures figures;
+  double step_ns = 0.0;
+};
+
+struct RunResult {
+  const Scenario* scenario = nullptr;
+  RunOutcome outcome;
+  std::string status;                     // done | diverged | lost
+  bool interrupted = false;
+  std::vector<NamedValue> final, mean;
+  DriveFigures drive;
+  std::vector<EstimatorResult> estimators;
+  std::string plant_digest;
+  std::vector<std::string> files;         // "trace: run.csv (2001 rows, 41 columns)"
+};
+
+// The summary that a person reads.
+std::string run_summary(const RunResult& result);
+
+}  // namespace slipbench
