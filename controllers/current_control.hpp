@@ -7,16 +7,16 @@
 // The PI's zero cancels the machine's pole R / L_sigma: the open loop is alpha_c / s with a delay of (d + 1/2) T. In
 // samples, d = 1: i(k+1) = i(k) + alpha_c T (i_ref(k-1) - i(k-1)), both poles at 1/2 for alpha_c T = 1/4.
 //
-// Voltage limit: circle of the modulation's linear limit times the measured DC link, less 4/3 of the leg error that is to be
-// compensated. The d axis goes first (it holds flux and frame), with at most 0.9 of the circle, so that q always keeps
-// 0.43 of it against the back-EMF. Anti-windup is back-calculation from the voltage that the duties really give.
-// The vector stands over [k+d, k+d+1) in the stationary frame: it is turned by angle + w_s (d + 1/2) T.
-// Dead time: the mean leg errors believed at the reference current turned to that same mid angle are added back as a
-// vector, tied legs left out; the reference is free of noise where the current crosses zero.
+// Voltage limit: circle of the modulation's linear limit times the measured DC link, less 4/3 of the leg error that
+// is to be compensated. The d axis goes first (it holds flux and frame), with at most 0.9 of the circle, so that q
+// always keeps 0.43 of it against the back-EMF. Anti-windup is back-calculation from the voltage that the duties
+// really give. The vector stands over [k+d, k+d+1) in the stationary frame: it is turned by angle + w_s (d + 1/2)
+// T. Dead time: the mean leg errors believed at the reference current turned to that same mid angle are added back
+// as a vector, tied legs left out; the reference is free of noise where the current crosses zero.
 //
 // u V, i A, psi Wb (all peak), alpha_c rad/s.
-// Source: L. Harnefors, H.-P. Nee, "Model-based current control of AC machines using the internal model control method",
-// IEEE Trans. Ind. Appl. 34(1), 1998, 133-141 (from memory).
+// Source: L. Harnefors, H.-P. Nee, "Model-based current control of AC machines using the internal model control
+// method", IEEE Trans. Ind. Appl. 34(1), 1998, 133-141 (from memory).
 #pragma once
 
 #include "controllers/orientation.hpp"
@@ -39,9 +39,9 @@ struct CurrentConstants {
 
 template <class Real>
 struct CurrentState {
-  Vec2<Real> integral;                   // x, V
+  Vec2<Real> integral;                    // x, V
   std::array<Vec2<Real>, 3> commanded{};  // voltage of this tick's command and the two before, stationary frame
-  Real asked{};                          // |u| before the limit
+  Real asked{};                           // |u| before the limit
   SLIPBENCH_FIELDS(integral, commanded, asked)
 };
 
@@ -54,8 +54,7 @@ Real voltage_limit(const CurrentConstants<Real>& c, const Real& dc_link) {
 // Mean stator voltage over the period that ends at this tick: the command of d + 1 ticks ago.
 template <class Real>
 Vec2<Real> applied_before(const CurrentState<Real>& s, const CurrentConstants<Real>& c) {
-  return select(c.delay < Real(0.5), s.commanded[0],
-                select(c.delay < Real(1.5), s.commanded[1], s.commanded[2]));
+  return select(c.delay < Real(0.5), s.commanded[0], select(c.delay < Real(1.5), s.commanded[1], s.commanded[2]));
 }
 
 template <class Real>

@@ -2,17 +2,17 @@
 //
 //   u_av = margin U - R_s |i|,  i_d,max = sqrt((u_av / w_s)^2 - (L_sigma i_q)^2) / L_s
 //   psi_ref = min(psi_limit, trim L_m i_d,max), through a first-order filter
-//   trim' = alpha_flux / 4 (u_q - |u|) / U, within 0.5..1, |u| what the current loop asked for: stays at 1 with matched
+//   trim' = alpha_flux / 4 (u_1 - |u|) / U, within 0.5..1, |u| what the current loop asked for: stays at 1 with matched
 //           parameters; lowers the flux where wrong ones or a late speed would leave the current loop without voltage
 //   i_d = (psi_ref + g (psi_ref - psi)) / L_m,  g = tau_r alpha_flux: flux follows at alpha_flux + 1/tau_r
 //   |i_q| <= least of  sqrt(I^2 - i_d^2)                          (d first, q takes what is left)
 //                      margin U / (sqrt 2 |w_s| L_sigma)          (pull-out: L_sigma i_q = L_s i_d)
-//                      q > 0 of (w_s psi_d + R_s q)^2 + (w_s L_sigma q)^2 = u_q^2,  psi_d = psi L_m/L_r + L_sigma i_d
+//                      q > 0 of (w_s psi_d + R_s q)^2 + (w_s L_sigma q)^2 = u_1^2,  psi_d = psi L_m/L_r + L_sigma i_d
 //
-// The root is held at its pull-out value, so a demand for more torque than there is cannot strip the flux. The last bound
-// acts while the flux lags its reference (fast acceleration), so that q current is not asked for that the voltage cannot
-// drive; it leaves a tenth of I, so that torque never vanishes.
-// U limit of the voltage circle V, u_q half-way between margin U and U, w_s stator frequency rad/s, psi rotor flux Wb, I current limit A.
+// The root is held at its pull-out value, so a demand for more torque than there is cannot strip the flux. The last
+// bound acts while the flux lags its reference (fast acceleration), so that q current is not asked for that the
+// voltage cannot drive; it leaves a tenth of I, so that torque never vanishes. U limit of the voltage circle V, u_1
+// half-way between margin U and U, w_s stator frequency rad/s, psi rotor flux Wb, I current limit A.
 // Source: S.-H. Kim, S.-K. Sul, "Maximum torque control of an induction machine in the field weakening region", IEEE
 // Trans. Ind. Appl. 31(4), 1995, 787-794 (limits, from memory); the feedforward and the flux law derived here.
 #pragma once
@@ -23,16 +23,16 @@ namespace slipbench {
 
 template <class Real>
 struct FluxConstants {
-  Real limit{};           // psi_limit, Wb
-  Real margin{};          // share of U
+  Real limit{};                                       // psi_limit, Wb
+  Real margin{};                                      // share of U
   Real R_s{}, L_s{}, leakage{}, L_m{}, flux_ratio{};  // leakage: L_sigma = sigma L_s; flux_ratio: L_m / L_r
-  Real filter{};          // share of the way per period
-  Real flux_gain{};       // g
-  Real least_i_d{};       // A, negative: takes flux down faster than letting it decay
-  Real current_limit{};   // I, A peak
-  Real frequency_floor{};  // rad/s
+  Real filter{};                                      // share of the way per period
+  Real flux_gain{};                                   // g
+  Real least_i_d{};                                   // A, negative: takes flux down faster than letting it decay
+  Real current_limit{};                               // I, A peak
+  Real frequency_floor{};                             // rad/s
   Real magnetised_share{};
-  Real trim_rate{};        // alpha_flux T / 4
+  Real trim_rate{};  // alpha_flux T / 4
   SLIPBENCH_FIELDS(limit, margin, R_s, L_s, leakage, L_m, flux_ratio, filter, flux_gain, least_i_d, current_limit,
                    frequency_floor, magnetised_share, trim_rate)
 };

@@ -4,13 +4,13 @@
 //   written along its own flux:  d psi/dt = (L_m i_d - psi) / tau_r,  d angle/dt = p w_m + w_slip,
 //   w_slip = R_r L_m i_q / (L_r psi): indirect orientation with measured currents, but without a division at psi = 0.
 //
-// Over one period T, exact for currents that run straight in the rotor's frame and a speed that runs straight in time, so
-// that flux and angle refer to tick k itself:
+// Over one period T, exact for currents that run straight in the rotor's frame and a speed that runs straight in
+// time, so that flux and angle refer to tick k itself:
 //   psi(k) = e^{j p w_mean T} (a psi(k-1) + b_before i(k-1)) + b_now i(k) + c,  a = e^{-T/tau_r}
 //   b_now = L_m (1 - (1 - a) tau_r/T),  b_before = L_m (1 - a) - b_now
-// The inverter's voltage u stands still over the period while the flux turns, so the current bows away from the straight
-// line: its mean is off by j w_s u T^2 / (12 L_sigma); c = L_m (1 - a) times that. Left out, it would turn the frame by
-// about 0.04 degrees at 50 Hz and T = 100 us, and lower the flux by 0.2 %.
+// The inverter's voltage u stands still over the period while the flux turns, so the current bows away from the
+// straight line: its mean is off by j w_s u T^2 / (12 L_sigma); c = L_m (1 - a) times that. Left out, it would turn
+// the frame by about 0.04 degrees at 50 Hz and T = 100 us, and lower the flux by 0.2 %.
 //
 // psi_r Wb (peak), i A (peak), w_m mechanical rad/s, w_s stator frequency rad/s, tau_r = L_r / R_r s, p pole pairs.
 // Source: F. Blaschke, Siemens-Rev. 34, 1972, 217-220; K. Hasse, dissertation, TH Darmstadt, 1969 (from memory);
@@ -23,12 +23,12 @@ namespace slipbench {
 
 template <class Real>
 struct OrientationConstants {
-  Real keep{}, before{}, now{};  // a, b_before, b_now
-  Real bow{};                    // L_m (1 - a) T^2 / (12 L_sigma)
+  Real keep{}, before{}, now{};         // a, b_before, b_now
+  Real bow{};                           // L_m (1 - a) T^2 / (12 L_sigma)
   Real pole_pairs{}, half_turn_time{};  // p, p T / 2
-  Real slip_gain{};              // R_r L_m / L_r
-  Real flux_floor{};             // smallest flux that is divided by, Wb
-  Real direct{};                 // 1: flux and angle from an estimator
+  Real slip_gain{};                     // R_r L_m / L_r
+  Real flux_floor{};                    // smallest flux that is divided by, Wb
+  Real direct{};                        // 1: flux and angle from an estimator
   SLIPBENCH_FIELDS(keep, before, now, bow, pole_pairs, half_turn_time, slip_gain, flux_floor, direct)
 };
 

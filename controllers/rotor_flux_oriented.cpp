@@ -32,8 +32,7 @@ OrientationConstants<double> orientation_of(const ControllerSetup& setup) {
 FluxConstants<double> flux_of(const ControllerSetup& setup, const Settings& given, double alpha_c) {
   const Circuit<double>& circuit = setup.circuit;
   const double tau_r = circuit.rotor_inductance() / circuit.rotor_resistance;
-  const double alpha_flux =
-      two_pi * given.value("flux_bandwidth_Hz", min(5.0 / tau_r, alpha_c / 20.0) / two_pi);
+  const double alpha_flux = two_pi * given.value("flux_bandwidth_Hz", min(5.0 / tau_r, alpha_c / 20.0) / two_pi);
   FluxConstants<double> c;
   c.limit = setup.rotor_flux_reference_Wb;
   c.margin = given.value("voltage_margin", 0.92);

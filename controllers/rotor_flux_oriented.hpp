@@ -6,8 +6,9 @@
 //   i_q = T / (3/2 p (L_m/L_r) psi)
 //   current_control.hpp voltage, limit, delay, dead time, duties
 //
-// Every choice (orientation, modulation, speed or torque, delay) is a number among the constants and taken by `select`, so
-// that lanes may differ in it and exported code folds it away. SI units; amplitude-invariant; d on the rotor flux.
+// Every choice (orientation, modulation, speed or torque, delay) is a number among the constants and taken by
+// `select`, so that lanes may differ in it and exported code folds it away. SI units; amplitude-invariant; d on the
+// rotor flux.
 // Source: W. Leonhard, "Control of Electrical Drives", 3rd ed., 2001, ch. 12 (from memory); parts as their headers say.
 #pragma once
 
@@ -33,8 +34,7 @@ struct RotorFluxOriented {
        "limit of the stator current's peak, d first; default twice the rated peak"},
       {"voltage_margin", "", 0.3, 1.0, 0.92,
        "share of the voltage limit that field weakening plans with; the rest is left to the current loop"},
-      {"magnetised_share", "", 0.1, 0.99, 0.95,
-       "share of the flux reference that must stand before torque is given"},
+      {"magnetised_share", "", 0.1, 0.99, 0.95, "share of the flux reference that must stand before torque is given"},
   }};
 
   template <class Real>
@@ -92,6 +92,7 @@ struct RotorFluxOriented {
 
 extern template Command<double> RotorFluxOriented::step(State<double>&, const Measurement<double>&,
                                                         const Constants<double>&);
-extern template Command<float> RotorFluxOriented::step(State<float>&, const Measurement<float>&, const Constants<float>&);
+extern template Command<float> RotorFluxOriented::step(State<float>&, const Measurement<float>&,
+                                                       const Constants<float>&);
 
 }  // namespace slipbench

@@ -5,9 +5,10 @@
 //   k_p = J w_c,  k_i = k_p / T_i,  w_c = 1 / (a T_sum),  T_i = a^2 T_sum = a / w_c
 //
 // T_sum: all small lags of the loop, 1/alpha_c (current loop) + (d + 1/2) T (command) + the speed signal's own lag.
-// a = 4 by default: phase margin atan((a^2 - 1) / (2 a)) = 62 degrees, since a speed signal carries noise and the lags are
-// estimates; a = 2 (37 degrees) is the textbook's fastest. A bandwidth (w_c / 2 pi) that is set gives a = 1 / (w_c T_sum)
-// within 2..4. The shaped reference carries its own torque (J w_f'), so that the PI's zero gives no overshoot.
+// a = 4 by default: phase margin atan((a^2 - 1) / (2 a)) = 62 degrees, since a speed signal carries noise and the
+// lags are estimates; a = 2 (37 degrees) is the textbook's fastest. A bandwidth (w_c / 2 pi) that is set gives a =
+// 1 / (w_c T_sum) within 2..4. The shaped reference carries its own torque (J w_f'), so that the PI's zero gives no
+// overshoot.
 //
 // w mechanical rad/s, T N m, J kg m^2 (as believed). The integral x is the load torque that the controller believes.
 // Source: C. Kessler, "Das symmetrische Optimum", Regelungstechnik 6, 1958, 395-400 and 432-436 (from memory).
@@ -36,8 +37,8 @@ struct SpeedState {
 
 // Torque reference after limits. `hold`: machine not magnetised yet, the shaped reference waits at the speed there is.
 template <class Real>
-Real control_speed(SpeedState<Real>& s, const SpeedConstants<Real>& c, const Measurement<Real>& m, const Real& torque_limit,
-                   const MaskOf<Real>& hold) {
+Real control_speed(SpeedState<Real>& s, const SpeedConstants<Real>& c, const Measurement<Real>& m,
+                   const Real& torque_limit, const MaskOf<Real>& hold) {
   const Real most = torque_limit * c.per_inertia_rate;
   const Real step = clamp(c.reference_share * (m.speed_reference - s.reference), -most, most);
   const Real before = select(hold, m.speed, s.reference);

@@ -8,7 +8,8 @@ double nominal_rotor_flux(const EstimatorSetup& setup) {
   const double w = setup.nameplate.angular_frequency();
   const double slip_w = w - setup.nameplate.speed_rad_s() * c.pole_pairs;
   const double alpha = c.rotor_resistance / c.magnetizing_inductance;
-  // i = psi (1 + j slip_w / alpha) / L_M and u = R_s i + j w (L_sigma i + psi), so |psi| = |u| / |R_s i + ...| per unit psi.
+  // i = psi (1 + j slip_w / alpha) / L_M and u = R_s i + j w (L_sigma i + psi), so |psi| = |u| / |R_s i +
+  // ...| per unit psi.
   const Vec2<double> i{1.0 / c.magnetizing_inductance, slip_w / (alpha * c.magnetizing_inductance)};
   const Vec2<double> stator_flux = c.leakage * i + Vec2<double>{1.0, 0.0};
   return setup.nameplate.phase_peak_V() / magnitude(c.stator_resistance * i + w * quarter_turn(stator_flux));
@@ -31,6 +32,24 @@ BelievedMachine<double> believe(const EstimatorSetup& setup) {
   m.per_nominal_flux = 1.0 / flux;
   m.speed_limit = 3.0 * setup.nameplate.angular_frequency();
   return m;
+}
+
+FluxGain<double> flux_gain_for(const EstimatorSetup& setup, double damping, double stiffness, double frequency_cap_Hz) {
+  constexpr double sign_width_Hz = 0.2;
+  const BelievedMachine<double> m = believe(setup);
+  // Four times rated slip covers 1.5 times rated torque at flux weakened to two thirds; six times alpha where
+  // the plate gives hardly any slip.
+  const Nameplate& plate = setup.nameplate;
+  const double rated_slip = plate.angular_frequency() - m.pole_pairs * plate.speed_rad_s();
+  FluxGain<double> k;
+  k.alpha = k.floor = m.alpha;
+  k.twice_damping = 2.0 * damping;
+  k.frequency_cap = rad_per_turn * frequency_cap_Hz;
+  k.stiffness = stiffness * m.alpha;
+  k.sign_width = rad_per_turn * sign_width_Hz;
+  k.most_slip = max(4.0 * rated_slip, 6.0 * m.alpha);
+  k.per_half_flux = 2.0 * m.per_nominal_flux;
+  return k;
 }
 
 double SettingReader::operator()(std::string_view name) const {

@@ -3,10 +3,12 @@
 //   L_sigma di/dt = u - (R_s + R_R) i + (alpha - j w_r) psi
 //         dpsi/dt = R_R i - (alpha - j w_r) psi               torque = 3/2 p Im(conj(psi) i)
 //
-// i stator current A, psi rotor flux linkage psi_R Wb (peak), u V, w_r electrical rotor speed rad/s, alpha = R_R / L_M 1/s.
-// The voltage vector stands still over a period, so for a given w_r the equations are linear with constant input and
-// the Taylor series x + T f + T^2/2 A f + T^3/6 A^2 f leaves (w T)^4 / 24 of the state: 4e-7 at 90 Hz and 100 us.
-// Source: G.R. Slemon, IEEE Trans. Ind. Appl. 25(6), 1989 (circuit); the prediction is the exponential's series.
+// i stator current A, psi rotor flux linkage psi_R Wb (peak), u V, w_r electrical rotor speed rad/s, alpha =
+// R_R / L_M 1/s. The voltage vector stands still over a period, so for a given w_r the equations are linear
+// with constant input and the Taylor series x + T f + T^2/2 A f + T^3/6 A^2 f leaves (w T)^4 / 24 of the
+// state: 4e-7 at 90 Hz and 100 us.
+// Source: G.R. Slemon, IEEE Trans. Ind. Appl. 25(6), 1989 (circuit); the prediction is the exponential's
+// series.
 #pragma once
 
 #include "estimators/flux_gain.hpp"
@@ -18,15 +20,15 @@ namespace slipbench {
 template <class Real>
 struct BelievedMachine {
   Real pole_pairs{}, R_s{}, R_R{}, alpha{};
-  Real L_sigma{}, per_L_sigma{};     // H, 1/H
-  Real torque_factor{};              // 3/2 p
-  Real per_flux_ratio{};             // psi_r (T circuit) = per_flux_ratio psi_R
-  Real period{};                     // T, s
-  Real least_flux{};                 // psi_R below which direction and speed mean nothing, Wb: 5 % of nominal
-  Real per_nominal_flux{};           // 1/Wb
-  Real speed_limit{};                // electrical rad/s: three times rated; estimates are held inside
-  SLIPBENCH_FIELDS(pole_pairs, R_s, R_R, alpha, L_sigma, per_L_sigma, torque_factor, per_flux_ratio, period,
-                   least_flux, per_nominal_flux, speed_limit)
+  Real L_sigma{}, per_L_sigma{};  // H, 1/H
+  Real torque_factor{};           // 3/2 p
+  Real per_flux_ratio{};          // psi_r (T circuit) = per_flux_ratio psi_R
+  Real period{};                  // T, s
+  Real least_flux{};              // psi_R below which direction and speed mean nothing, Wb: 5 % of nominal
+  Real per_nominal_flux{};        // 1/Wb
+  Real speed_limit{};             // electrical rad/s: three times rated; estimates are held inside
+  SLIPBENCH_FIELDS(pole_pairs, R_s, R_R, alpha, L_sigma, per_L_sigma, torque_factor, per_flux_ratio, period, least_flux,
+                   per_nominal_flux, speed_limit)
 };
 
 BelievedMachine<double> believe(const EstimatorSetup& setup);
@@ -42,6 +44,10 @@ struct SettingReader {
   double operator()(std::string_view name) const;
   double operator()(std::string_view name, double otherwise) const { return given.value(name, otherwise); }
 };
+
+// The gain's constants: zeta, stiffness in units of alpha, and the frequency above which damping grows no
+// further.
+FluxGain<double> flux_gain_for(const EstimatorSetup& setup, double damping, double stiffness, double frequency_cap_Hz);
 
 // Stator current and rotor flux, side by side.
 template <class Real>
@@ -62,7 +68,8 @@ CurrentAndFlux<Real> unforced(const BelievedMachine<Real>& m, const CurrentAndFl
   return {-m.per_L_sigma * (m.R_s * x.current + emf), emf};
 }
 
-// The state a period later, and the three derivatives it was built from (the Kalman filter's Jacobian reuses them).
+// The state a period later, and the three derivatives it was built from (the Kalman filter's Jacobian reuses
+// them).
 template <class Real>
 struct Ahead {
   CurrentAndFlux<Real> state, first, second, third;
@@ -90,8 +97,9 @@ Estimate<Real> estimate_of(const BelievedMachine<Real>& m, const Vec2<Real>& flu
   return out;
 }
 
-// Share of the nominal flux (full from one half on) times w_s^2 / (w_s^2 + w_1^2), w_1 = 2 pi 0.5 Hz: no trust without
-// flux, and less and less towards zero stator frequency, where speed cannot be observed from currents.
+// Share of the nominal flux (full from one half on) times w_s^2 / (w_s^2 + w_1^2), w_1 = 2 pi 0.5 Hz: no
+// trust without flux, and less and less towards zero stator frequency, where speed cannot be observed from
+// currents.
 template <class Real>
 Real trust_by_frequency(const BelievedMachine<Real>& m, const Vec2<Real>& flux, const Real& w_s) {
   const Real known = min(Real(2.0) * m.per_nominal_flux * magnitude(flux), Real(1.0));

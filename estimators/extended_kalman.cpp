@@ -25,8 +25,8 @@ ExtendedKalman::Constants<double> ExtendedKalman::prepare(const EstimatorSetup& 
   const double flux_step = setting("process_flux_Wb", 0.02 * sqrt(T) * flux * m.per_flux_ratio) / m.per_flux_ratio;
   const double speed = setting("process_speed_rad_s", 0.1 * rated_speed);
   const double load = setting("process_load_torque_Nm", 2.0 * rated_torque);
-  c.process = {square(current), square(current), square(flux_step), square(flux_step), p * p * walk(speed),
-               shaft ? walk(load) : 0.0};
+  c.process = {square(current),   square(current),     square(flux_step),
+               square(flux_step), p * p * walk(speed), shaft ? walk(load) : 0.0};
 
   const double least_noise = 1e-3 * plate.peak_current_A();
   const double noise = setting("measured_current_noise_A", max(setup.current_noise_A, least_noise)), s2 = noise * noise;
@@ -38,8 +38,12 @@ ExtendedKalman::Constants<double> ExtendedKalman::prepare(const EstimatorSetup& 
   }
   c.most = {square(2.0 * plate.angular_frequency()), square(10.0 * rated_torque)};
   c.per_doubt = 1.0 / square(0.02 * plate.angular_frequency());
-  c.start_deviation = {setting("initial_current_A", 0.1 * plate.peak_current_A()), setting("initial_flux_Wb", 0.02 * flux * m.per_flux_ratio) / m.per_flux_ratio,
-    p * setting("initial_speed_rad_s", 0.02 * rated_speed), shaft ? setting("initial_load_torque_Nm", rated_torque) : 0.0};
+  c.surprise_share = low_pass_share(surprise_filter_Hz, T);
+  c.lost_speed = 2.5 * plate.angular_frequency();
+  c.start_deviation = {setting("initial_current_A", 0.1 * plate.peak_current_A()),
+                       setting("initial_flux_Wb", 0.02 * flux * m.per_flux_ratio) / m.per_flux_ratio,
+                       p * setting("initial_speed_rad_s", 0.02 * rated_speed),
+                       shaft ? setting("initial_load_torque_Nm", rated_torque) : 0.0};
   return c;
 }
 
@@ -47,8 +51,7 @@ ExtendedKalman::State<double> ExtendedKalman::begin(const EstimatorSetup& setup,
   State<double> s;
   s.x.flux = {setup.start_rotor_flux_Wb / c.model.machine.per_flux_ratio, 0.0};
   s.x.speed = setup.start_speed_rad_s * c.model.machine.pole_pairs;
-  constexpr std::array<std::size_t, 6> kind_of{0, 0, 1, 1, 2, 3};
-  for (std::size_t n = 0; n < 6; ++n) s.P(n, n) = square(c.start_deviation[kind_of[n]]);
+  for (std::size_t n = 0; n < 6; ++n) s.P(n, n) = square(c.start_deviation[start_kind[n]]);
   return s;
 }
 

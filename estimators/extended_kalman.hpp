@@ -4,14 +4,19 @@
 //   (i, psi)+ = series of estimators/believed_machine.hpp at w_r with the held voltage
 //   w_r+      = w_r + T p / J (torque - T_load - b w_r / p)     with load_torque = 1;    w_r+ = w_r with 0: a random walk
 //   P-  = F P F' + Q,   y = i_measured - i-,   S = P-_ii + R,   K = P-_(.,i) S^-1
-//   x   = x- + K y,     P = (1 - K H) P- (1 - K H)' + K R K'    (Joseph's form, upper triangle alone: symmetric, positive)
+//   x   = x- + K y,     P = (1 - K H) P- (1 - K H)' + K R K'    (Joseph's form, one triangle kept)
 //
-// F is written by hand below. R for three current sensors of variance s^2 is (2/3) s^2 1, for two s^2 [1, 1/sqrt3; 1/sqrt3, 5/3]
-// (alpha = i_a, beta = (i_a + 2 i_b) / sqrt3: correlated). The speed's and the load's variance are bounded by a congruence, so
-// that a machine without flux, which tells nothing about them, cannot drive them beyond numbers that mean something.
-// Trust = (|psi| / half the nominal, at most 1) / (1 + (deviation of the speed / 2 % of rated)^2), by the filter's own covariance.
-// Source: R.E. Kalman, J. Basic Eng. 82, 1960; P.D. Joseph's form as in R.S. Bucy, P.D. Joseph, "Filtering for Stochastic
-// Processes with Applications to Guidance", 1968 (from memory); default tuning is this project's, see the .cpp.
+// F is written by hand below. R for three current sensors of variance s^2 is (2/3) s^2 1, for two s^2 [1,
+// 1/sqrt3; 1/sqrt3, 5/3] (alpha = i_a, beta = (i_a + 2 i_b) / sqrt3: correlated). The speed's and the load's
+// variance are bounded by a congruence, so that a machine without flux, which tells nothing about them,
+// cannot drive them beyond numbers that mean something. A filter that is lost while sure of itself stays
+// lost, but from nothing (no flux, no speed) it finds a running machine within 50 ms. So it begins anew where
+// it cannot be right: speed past 2.5 times rated, or y' S^-1 y, 2 on average, above 100 for 0.3 s.
+// Trust = (|psi| / half the nominal, at most 1) / (1 + (deviation of the speed / 2 % of rated)^2), by the
+// filter's own covariance.
+// Source: R.E. Kalman, J. Basic Eng. 82, 1960; P.D. Joseph's form as in R.S. Bucy, P.D. Joseph, "Filtering
+// for Stochastic Processes with Applications to Guidance", 1968 (from memory); default tuning is this
+// project's, see the .cpp.
 #pragma once
 
 #include "estimators/believed_machine.hpp"
@@ -22,39 +27,59 @@ namespace slipbench {
 struct ExtendedKalman {
   static constexpr std::string_view kind = "extended_kalman";
   static constexpr std::array<Setting, 12> settings{{
-      {"load_torque", "", 0.0, 1.0, 0.0, "1: the load torque is a state and speed follows the shaft equation; 0: speed is a random walk.", true},
-      {"measured_current_noise_A", "A", 1e-9, 1e6, derived, "Noise of a current sensor, rms a phase; derived: the sensor's, at least 0.1 % of rated peak current."},
-      {"process_current_A", "A", 0.0, 1e6, derived, "Process noise of each current component, rms added a control period; derived from process_voltage_V."},
-      {"process_voltage_V", "V", 0.0, 1e6, derived, "Voltage error, rms and fresh each control period; derived: 0.5 % of rated phase peak."},
-      {"process_flux_Wb", "Wb", 0.0, 1e3, derived, "Process noise of each rotor flux component, rms added a control period; derived: a walk of 2 % of nominal over 1 s."},
-      {"process_speed_rad_s", "rad/s", 0.0, 1e6, derived, "Random walk of the mechanical speed, rms over 1 s; derived: 10 % of synchronous."},
-      {"process_load_torque_Nm", "N m", 0.0, 1e9, derived, "Random walk of the load torque, rms over 1 s; derived: twice rated."},
-      {"initial_current_A", "A", 0.0, 1e6, derived, "Deviation of each current component at the start; derived: 10 % of rated peak."},
-      {"initial_flux_Wb", "Wb", 0.0, 1e3, derived, "Deviation of each rotor flux component at the start; derived: 2 % of nominal."},
-      {"initial_speed_rad_s", "rad/s", 0.0, 1e6, derived, "Deviation of the mechanical speed at the start; derived: 2 % of synchronous."},
-      {"initial_load_torque_Nm", "N m", 0.0, 1e9, derived, "Deviation of the load torque at the start; derived: rated torque."},
+      {"load_torque", "", 0.0, 1.0, 0.0,
+       "1: the load torque is a state and speed follows the shaft equation; 0: speed is a random walk.", true},
+      {"measured_current_noise_A", "A", 1e-9, 1e6, derived,
+       "Noise of a current sensor, rms a phase; derived: the sensor's, at least 0.1 % of rated peak current."},
+      {"process_current_A", "A", 0.0, 1e6, derived,
+       "Process noise of each current component, rms added a control period; derived from process_voltage_V."},
+      {"process_voltage_V", "V", 0.0, 1e6, derived,
+       "Voltage error, rms and fresh each control period; derived: 0.5 % of rated phase peak."},
+      {"process_flux_Wb", "Wb", 0.0, 1e3, derived,
+       "Process noise of each rotor flux component, rms added a control period; derived: a walk of 2 % of nominal over "
+       "1 s."},
+      {"process_speed_rad_s", "rad/s", 0.0, 1e6, derived,
+       "Random walk of the mechanical speed, rms over 1 s; derived: 10 % of synchronous."},
+      {"process_load_torque_Nm", "N m", 0.0, 1e9, derived,
+       "Random walk of the load torque, rms over 1 s; derived: twice rated."},
+      {"initial_current_A", "A", 0.0, 1e6, derived,
+       "Deviation of each current component at the start; derived: 10 % of rated peak."},
+      {"initial_flux_Wb", "Wb", 0.0, 1e3, derived,
+       "Deviation of each rotor flux component at the start; derived: 2 % of nominal."},
+      {"initial_speed_rad_s", "rad/s", 0.0, 1e6, derived,
+       "Deviation of the mechanical speed at the start; derived: 2 % of synchronous."},
+      {"initial_load_torque_Nm", "N m", 0.0, 1e9, derived,
+       "Deviation of the load torque at the start; derived: rated torque."},
       {"inertia_kgm2", "kg m2", 1e-9, 1e9, derived, "Inertia of the shaft equation; derived: as believed."},
   }};
+
+  static constexpr double lost_surprise = 100.0, surprise_filter_Hz = 0.5;
 
   template <class Real>
   struct Constants {
     KalmanModel<Real> model;
-    std::array<Real, 6> process;      // Q, diagonal
-    Vec2<Real> noise_diagonal;        // R: alpha, beta
+    std::array<Real, 6> process;  // Q, diagonal
+    Vec2<Real> noise_diagonal;    // R: alpha, beta
     Real noise_cross{};
-    std::array<Real, 2> most;         // bounds on the variance of w_r and of T_load
-    Real per_doubt{};                 // 1 / (2 % of rated electrical speed)^2
+    std::array<Real, 2> most;             // bounds on the variance of w_r and of T_load
+    Real per_doubt{};                     // 1 / (2 % of rated electrical speed)^2
+    Real surprise_share{};                // of the low-pass on y' S^-1 y
+    Real lost_speed{};                    // electrical rad/s
     std::array<Real, 4> start_deviation;  // of a current, a flux component (psi_R), w_r, T_load
-    SLIPBENCH_FIELDS(model, process, noise_diagonal, noise_cross, most, per_doubt, start_deviation)
+    SLIPBENCH_FIELDS(model, process, noise_diagonal, noise_cross, most, per_doubt, surprise_share, lost_speed,
+                     start_deviation)
   };
 
   template <class Real>
   struct State {
     KalmanVector<Real> x;
     Symmetric6<Real> P;
-    Real started{};                   // 0 before the first sample, which corrects without a prediction
-    SLIPBENCH_FIELDS(x, P, started)
+    Real surprise{};  // y' S^-1 y, filtered
+    Real started{};   // 0 before the first sample, which corrects without a prediction
+    SLIPBENCH_FIELDS(x, P, surprise, started)
   };
+
+  static constexpr std::array<std::size_t, 6> start_kind{0, 0, 1, 1, 2, 3};  // which start_deviation a state has
 
   static Constants<double> prepare(const EstimatorSetup& setup, const Settings& given);
   static State<double> begin(const EstimatorSetup& setup, const Constants<double>& c);
@@ -73,14 +98,17 @@ struct ExtendedKalman {
   struct Innovation {
     Vec2<Real> y, S_diagonal;
     Real S_cross{};
+    [[nodiscard]] Real normalised() const {  // y' S^-1 y, 2 on average for a consistent filter
+      const Real det = S_diagonal.x * S_diagonal.y - S_cross * S_cross;
+      return (S_diagonal.y * y.x * y.x - Real(2.0) * S_cross * y.x * y.y + S_diagonal.x * y.y * y.y) / det;
+    }
   };
 
   template <class Real>
   static Innovation<Real> correct(KalmanVector<Real>& x, Symmetric6<Real>& P, const Vec2<Real>& measured,
                                   const Constants<Real>& c) {
-    const Innovation<Real> in{measured - x.current,
-                              {P(0, 0) + c.noise_diagonal.x, P(1, 1) + c.noise_diagonal.y},
-                              P(0, 1) + c.noise_cross};
+    const Innovation<Real> in{
+        measured - x.current, {P(0, 0) + c.noise_diagonal.x, P(1, 1) + c.noise_diagonal.y}, P(0, 1) + c.noise_cross};
     const Real per_det = Real(1.0) / (in.S_diagonal.x * in.S_diagonal.y - in.S_cross * in.S_cross);
     const Real s11 = per_det * in.S_diagonal.y, s12 = -per_det * in.S_cross, s22 = per_det * in.S_diagonal.x;
     Mat<Real, 6, 2> K;
@@ -105,9 +133,23 @@ struct ExtendedKalman {
         P(r, n) = (M[r][n] - (M[r][0] * K[n][0] + M[r][1] * K[n][1])) + (kr0 * K[n][0] + kr1 * K[n][1]);
       }
     }
-    bound_variance(P, 4, c.most[0]);
-    bound_variance(P, 5, c.most[1]);
     return in;
+  }
+
+  template <class Real>
+  static void restart_if_lost(State<Real>& s, const Vec2<Real>& current, const Constants<Real>& c) {
+    const Real zero(0.0), one(1.0);
+    const Real wild = select(fabs(s.x.speed) > c.lost_speed, one, zero);
+    const Real astray = select(s.surprise > Real(lost_surprise), one, zero);
+    const MaskOf<Real> lost = wild + astray > zero;
+    s.x = select(lost, KalmanVector<Real>{current, {zero, zero}, zero, zero}, s.x);
+    s.surprise = select(lost, zero, s.surprise);
+    for (std::size_t r = 0; r < 6; ++r) {
+      for (std::size_t n = r; n < 6; ++n) {
+        const Real fresh = r == n ? square(c.start_deviation[start_kind[r]]) : zero;
+        s.P(r, n) = select(lost, fresh, s.P(r, n));
+      }
+    }
   }
 
   template <class Real>
@@ -120,7 +162,12 @@ struct ExtendedKalman {
     predict(x, P, Vec2<Real>{sample.u_alpha, sample.u_beta}, c);
     s.x = select(first, s.x, x);
     for (std::size_t n = 0; n < P.upper.size(); ++n) s.P.upper[n] = select(first, s.P.upper[n], P.upper[n]);
-    correct(s.x, s.P, Vec2<Real>{sample.i_alpha, sample.i_beta}, c);
+    const Vec2<Real> i{sample.i_alpha, sample.i_beta};
+    const Innovation<Real> in = correct(s.x, s.P, i, c);
+    s.surprise = s.surprise + c.surprise_share * (min(in.normalised(), Real(1000.0)) - s.surprise);
+    restart_if_lost(s, i, c);
+    bound_variance(s.P, 4, c.most[0]);
+    bound_variance(s.P, 5, c.most[1]);
     s.started = one;
 
     Estimate<Real> out = estimate_of(m, s.x.flux, s.x.current, s.x.speed);

@@ -1,7 +1,8 @@
-// What the extended Kalman filter believes about a step ahead: the discrete model, its Jacobian written by hand, and the
-// symmetric matrices it works on (upper triangle alone, so symmetric by construction).
+// What the extended Kalman filter believes about a step ahead: the discrete model, its Jacobian written by
+// hand, and the symmetric matrices it works on (upper triangle alone, so symmetric by construction).
 //
-// With A(w) = A0 + w A1 and the held voltage, f = A x + b u, the series x + T f + T^2/2 A f + T^3/6 A^2 f gives
+// With A(w) = A0 + w A1 and the held voltage, f = A x + b u, the series x + T f + T^2/2 A f + T^3/6 A^2 f
+// gives
 //   d/dx = 1 + T A + T^2/2 A^2 + T^3/6 A^3                (complex 2 x 2: alpha-beta pairs commute with j)
 //   d/dw = T d1 + T^2/2 d2 + T^3/6 d3,   d1 = A1 x,  d2 = A1 f + A d1,  d3 = A1 A f + A d2
 // x = (i A, psi_R Wb), w electrical rad/s, T s. Source: product rule on estimators/believed_machine.hpp.
@@ -13,9 +14,9 @@ namespace slipbench {
 
 template <class Real>
 struct KalmanVector {
-  Vec2<Real> current, flux;         // A, psi_R Wb
-  Real speed{};                     // electrical rad/s
-  Real load_torque{};               // N m
+  Vec2<Real> current, flux;  // A, psi_R Wb
+  Real speed{};              // electrical rad/s
+  Real load_torque{};        // N m
   SLIPBENCH_FIELDS(current, flux, speed, load_torque)
 };
 template <class Real>
@@ -27,8 +28,8 @@ KalmanVector<Real> select(const MaskOf<Real>& mask, const KalmanVector<Real>& ye
 template <class Real>
 struct KalmanModel {
   BelievedMachine<Real> machine;
-  Real speed_per_torque{};          // T p / J, 0 when speed is a random walk
-  Real damping{};                   // T b / J, likewise
+  Real speed_per_torque{};  // T p / J, 0 when speed is a random walk
+  Real damping{};           // T b / J, likewise
   SLIPBENCH_FIELDS(machine, speed_per_torque, damping)
 };
 
@@ -46,8 +47,8 @@ struct Symmetric6 {
 // The Jacobian's parts that are neither 0 nor 1.
 template <class Real>
 struct KalmanJacobian {
-  Mat<Real, 4, 5> electrical;       // d(i, psi)+ / d(i, psi, w)
-  std::array<Real, 6> speed;        // dw+ / dx; the load's row is that of the identity
+  Mat<Real, 4, 5> electrical;  // d(i, psi)+ / d(i, psi, w)
+  std::array<Real, 6> speed;   // dw+ / dx; the load's row is that of the identity
 };
 template <class Real>
 struct KalmanPrediction {
@@ -62,7 +63,8 @@ struct ComplexBlock {
 };
 
 template <class Real>
-KalmanPrediction<Real> predict_with_jacobian(const KalmanModel<Real>& model, const KalmanVector<Real>& x, const Vec2<Real>& u) {
+KalmanPrediction<Real> predict_with_jacobian(const KalmanModel<Real>& model, const KalmanVector<Real>& x,
+                                             const Vec2<Real>& u) {
   const BelievedMachine<Real>& m = model.machine;
   const Real one(1.0), T = m.period, half_T = Real(0.5) * T, third_T = Real(1.0 / 3.0) * T;
   const CurrentAndFlux<Real> now{x.current, x.flux};
@@ -73,13 +75,14 @@ KalmanPrediction<Real> predict_with_jacobian(const KalmanModel<Real>& model, con
   const Vec2<Real> e{m.alpha, -x.speed}, e_L = m.per_L_sigma * e;
   const auto one_plus = [&](const Real& h, const ComplexBlock<Real>& b) {  // 1 + h A b
     ComplexBlock<Real> r{h * (a * b.ii + product(e_L, b.pi)), h * (a * b.ip + product(e_L, b.pp)),
-                  h * (m.R_R * b.ii - product(e, b.pi)), h * (m.R_R * b.ip - product(e, b.pp))};
+                         h * (m.R_R * b.ii - product(e, b.pi)), h * (m.R_R * b.ip - product(e, b.pp))};
     r.ii.x = r.ii.x + one;
     r.pp.x = r.pp.x + one;
     return r;
   };
   const Real h3a = third_T * a, h3R = third_T * m.R_R;
-  const ComplexBlock<Real> inner{{one + h3a, Real(0.0)}, third_T * e_L, {h3R, Real(0.0)}, {one - third_T * e.x, -(third_T * e.y)}};
+  const ComplexBlock<Real> inner{
+      {one + h3a, Real(0.0)}, third_T * e_L, {h3R, Real(0.0)}, {one - third_T * e.x, -(third_T * e.y)}};
   const ComplexBlock<Real> phi = one_plus(T, one_plus(half_T, inner));
 
   const auto by_speed = [&](const Vec2<Real>& flux) {  // A1 (i, psi)

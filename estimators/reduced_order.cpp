@@ -6,7 +6,7 @@ ReducedOrder::Constants<double> ReducedOrder::prepare(const EstimatorSetup& setu
   const SettingReader setting{settings, given};
   Constants<double> c;
   c.machine = believe(setup);
-  c.gain = flux_gain_for(c.machine.alpha, setting("flux_damping"), setting("flux_stiffness"), setting("flux_bandwidth_limit_Hz"));
+  c.gain = flux_gain_for(setup, setting("flux_damping"), setting("flux_stiffness"), setting("flux_bandwidth_limit_Hz"));
   c.speed_share = low_pass_share(setting("speed_filter_Hz"), setup.control_period_s);
   c.frequency_share = low_pass_share(setting("frequency_filter_Hz"), setup.control_period_s);
   c.per_period = 1.0 / setup.control_period_s;

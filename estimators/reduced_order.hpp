@@ -1,17 +1,20 @@
-// Reduced-order observer: rotor flux by integrating the back-EMF, two states, no current differentiated; speed is
-// stator frequency less slip, filtered.
+// Reduced-order observer: rotor flux by integrating the back-EMF, two states, no current differentiated;
+// speed is stator frequency less slip, filtered.
 //
 // Over a period, in the stationary frame, E = u - R_s i - L_sigma di/dt integrates to
 //   v = T (u - R_s (i_k + i_{k-1}) / 2) - L_sigma (i_k - i_{k-1})
 // whose differences of current telescope: current noise enters the flux once and does not pile up. Then
 //   psi_k = psi_{k-1} + v + g T (e_d - Re E) along the estimated flux,   e_d = R_R i_d - alpha |psi|
-// with g from estimators/flux_gain.hpp (stable for every speed and load while w_s is not zero). Directions are those of the
-// chord's middle, (psi_{k-1} + psi_{k-1} + v) / 2, so that a steady rotation leaves no radial part at any frequency.
+// with g from estimators/flux_gain.hpp (stable for every speed and load while w_s is not zero). Directions
+// are those of the chord's middle, (psi_{k-1} + psi_{k-1} + v) / 2, so that a steady rotation leaves no
+// radial part at any frequency. Below 5 % of the nominal flux its direction means nothing: v is integrated
+// with a leak, -alpha T psi, until there is more.
 //   w_s = (arg psi_k - arg psi_{k-1}) / T,   slip = R_R i_q / |psi|,   w_r = lowpass(w_s - slip)
 // psi rotor flux psi_R Wb, i A, u V, T control period s, w electrical rad/s.
-// Trust = (|psi| / half the nominal, at most 1) w_s^2 / (w_s^2 + w_1^2), w_1 = 2 pi 0.5 Hz: none without flux, and less and
-// less towards zero stator frequency, where speed cannot be observed.
-// Source: L. Harnefors, M. Hinkkanen, IEEE Trans. Ind. Electron. 55(3), 2008, 1319-1329; discretisation is this file's.
+// Trust = (|psi| / half the nominal, at most 1) w_s^2 / (w_s^2 + w_1^2), w_1 = 2 pi 0.5 Hz: none without
+// flux, and less and less towards zero stator frequency, where speed cannot be observed.
+// Source: L. Harnefors, M. Hinkkanen, IEEE Trans. Ind. Electron. 55(3), 2008, 1319-1329; discretisation is
+// this file's.
 #pragma once
 
 #include "estimators/believed_machine.hpp"
@@ -22,10 +25,13 @@ namespace slipbench {
 struct ReducedOrder {
   static constexpr std::string_view kind = "reduced_order";
   static constexpr std::array<Setting, 5> settings{{
-      {"speed_filter_Hz", "Hz", 0.1, 2000.0, 100.0, "Corner of the low-pass (two equal first-order stages) on the speed estimate."},
-      {"frequency_filter_Hz", "Hz", 0.1, 2000.0, 10.0, "Corner of the low-pass (two equal stages) on the frequency that sets the gain."},
+      {"speed_filter_Hz", "Hz", 0.1, 2000.0, 100.0,
+       "Corner of the low-pass (two equal first-order stages) on the speed estimate."},
+      {"frequency_filter_Hz", "Hz", 0.1, 2000.0, 10.0,
+       "Corner of the low-pass (two equal stages) on the frequency that sets the gain."},
       {"flux_damping", "", 0.05, 5.0, 0.7, "Damping ratio of the flux error, zeta in A = alpha + 2 zeta |w_s|."},
-      {"flux_stiffness", "", 0.0, 10.0, 1.0, "Extra stiffness of the flux error at low frequency, in units of 1 / rotor time constant."},
+      {"flux_stiffness", "", 0.0, 10.0, 1.0,
+       "Extra stiffness of the flux error at low frequency, in units of 1 / rotor time constant."},
       {"flux_bandwidth_limit_Hz", "Hz", 0.1, 1000.0, 15.0, "Stator frequency above which damping grows no further."},
   }};
 
@@ -40,11 +46,11 @@ struct ReducedOrder {
 
   template <class Real>
   struct State {
-    Vec2<Real> flux, current;      // psi_R and the current at the last tick
-    Real angle{};                  // of the flux at the last tick, rad
-    Real frequency{}, speed{};     // filtered w_s and w_r, rad/s
+    Vec2<Real> flux, current;                   // psi_R and the current at the last tick
+    Real angle{};                               // of the flux at the last tick, rad
+    Real frequency{}, speed{};                  // filtered w_s and w_r, rad/s
     Real frequency_between{}, speed_between{};  // after the first of each filter's two stages
-    Real started{};                // 0 before the first sample
+    Real started{};                             // 0 before the first sample
     SLIPBENCH_FIELDS(flux, current, angle, frequency, speed, frequency_between, speed_between, started)
   };
 
@@ -62,20 +68,23 @@ struct ReducedOrder {
     const Vec2<Real> v = m.period * (u - m.R_s * i_middle) - m.L_sigma * (i - before);
     const Vec2<Real> middle = s.flux + half * v;
     const Real length = magnitude(middle), per_length = one / max(length, m.least_flux);
-    const Vec2<Real> along = per_length * middle;  // shorter than 1 while there is hardly any flux: nothing to correct by
+    const Vec2<Real> along =
+        per_length * middle;  // shorter than 1 while there is hardly any flux: nothing to correct by
     const Real i_d = dot(along, i_middle), i_q = cross(along, i_middle);
     const Real wrong = m.period * (m.R_R * i_d - m.alpha * length) - dot(along, v);
-    const Vec2<Real> g = flux_gain(c.gain, s.frequency, s.speed);
-    const Vec2<Real> flux = s.flux + v + wrong * product(g, along);
-    s.flux = select(first, s.flux, flux);
+    const Vec2<Real> g = flux_gain(c.gain, length, s.frequency, s.speed);
+    const MaskOf<Real> alive = length > m.least_flux;
+    const Vec2<Real> correction = select(alive, wrong * product(g, along), -(m.period * m.alpha) * s.flux);
+    s.flux = select(first, s.flux, s.flux + v + correction);
     s.current = i;
 
     Estimate<Real> out = estimate_of(m, s.flux, i, s.speed);
-    const Real slip = m.R_R * i_q * per_length;
+    const Real slip = select(alive, m.R_R * i_q * per_length, zero);
     const Real turning = select(first, s.speed + slip, c.per_period * wrap_angle(out.rotor_flux_angle - s.angle));
     const Real w_s = clamp(turning, -m.speed_limit, m.speed_limit);
     const Real w_r = clamp(w_s - slip, -m.speed_limit, m.speed_limit);
-    const Real moves = select(length > m.least_flux, one, zero);  // held while there is hardly any flux
+    // Held while there is hardly any flux, and slow at first: the direction's noise goes with 1 / length.
+    const Real moves = select(alive, min(square(Real(4.0) * m.per_nominal_flux * length), one), zero);
     const Real frequency_share = select(first, one, moves * c.frequency_share), speed_share = moves * c.speed_share;
     s.frequency_between = s.frequency_between + frequency_share * (w_s - s.frequency_between);
     s.frequency = s.frequency + frequency_share * (s.frequency_between - s.frequency);

@@ -28,9 +28,7 @@ struct Dual {
 
   Dual() = default;
   explicit Dual(double constant) : value(Base(constant)) {}
-  explicit Dual(const Base& constant)
-    requires(!std::is_same_v<Base, double>)
-      : value(constant) {}
+  explicit Dual(const Base& constant) requires(!std::is_same_v<Base, double>) : value(constant) {}
   // The variable x_index: slope 1 along itself.
   static Dual variable(const Base& value, std::size_t index) {
     Dual x;
@@ -107,9 +105,8 @@ Dual<Base, N> atan2(const Dual<Base, N>& y, const Dual<Base, N>& x) {
   const Base size2 = x.value * x.value + y.value * y.value, zero(0.0), one(1.0);
   const auto nowhere = size2 == zero;
   const Base per_size2 = select(nowhere, zero, one / select(nowhere, one, size2));
-  return Dual<Base, N>::each(atan2(y.value, x.value), [&](std::size_t i) {
-    return (x.value * y.slope[i] - y.value * x.slope[i]) * per_size2;
-  });
+  return Dual<Base, N>::each(atan2(y.value, x.value),
+                             [&](std::size_t i) { return (x.value * y.slope[i] - y.value * x.slope[i]) * per_size2; });
 }
 template <class Base, std::size_t N>
 Dual<Base, N> exp(const Dual<Base, N>& x) {

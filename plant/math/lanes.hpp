@@ -67,16 +67,15 @@ SLIPBENCH_INLINE R floor_of(const R& x) {
 #if defined(__AVX512F__)
   if constexpr (Isa::register_bytes == 64) return _mm512_maskz_roundscale_pd(0xff, x, 0x09);  // down, quietly
 #endif
-  // Nearest whole number by adding and subtracting 1.5 * 2^52, then one less where that went up; from 2^52 on every
-  // double is whole. The sign is put back for -0.
+  // The size's nearest whole number by adding and subtracting 2^52, the sign put back (of a zero, too), then one less where
+  // that went up; from 2^52 on every double is whole.
   using Bits = typename Registers<Isa>::Bits;
-  const R rounder = R{} + 0x1.8p52, whole_from = R{} + 0x1p52, one = R{} + 1.0;
-  const R near = (x + rounder) - rounder;
-  const R down = near - (near > x ? one : R{});
+  const R whole_from = R{} + 0x1p52, one = R{} + 1.0;
   const Bits sign = Bits{} + 0x8000000000000000u;
-  const R signed_down = (R)((Bits)down | ((Bits)x & sign));
   const R size = (R)((Bits)x & ~sign);
-  return size < whole_from ? signed_down : x;
+  const R near = (R)((Bits)((size + whole_from) - whole_from) | ((Bits)x & sign));
+  const R down = near - (near > x ? one : R{});
+  return size < whole_from ? down : x;
 }
 
 }  // namespace detail
@@ -121,7 +120,8 @@ struct Lanes {
       const auto one = [&](std::size_t i) __attribute__((always_inline)) { result.part[i] = f(x.part[i]...); };
       (one(I), ...);
       return result;
-    }(std::make_index_sequence<registers>{});
+    }
+    (std::make_index_sequence<registers>{});
   }
 
   friend SLIPBENCH_INLINE Lanes operator+(const Lanes& a, const Lanes& b) { return each(plus, a, b); }
@@ -150,14 +150,14 @@ struct Lanes {
   static constexpr auto name = [] parameters __attribute__((always_inline)) { return expression; };
   SLIPBENCH_LANE_OP(plus, (const R& a, const R& b), a + b)
   SLIPBENCH_LANE_OP(minus, (const R& a, const R& b), a - b)
-  SLIPBENCH_LANE_OP(times, (const R& a, const R& b), a * b)
+  SLIPBENCH_LANE_OP(times, (const R& a, const R& b), a* b)
   SLIPBENCH_LANE_OP(over, (const R& a, const R& b), a / b)
   SLIPBENCH_LANE_OP(negative, (const R& a), -a)
   SLIPBENCH_LANE_OP(less, (const R& a, const R& b), a < b)
   SLIPBENCH_LANE_OP(less_equal, (const R& a, const R& b), a <= b)
   SLIPBENCH_LANE_OP(equal, (const R& a, const R& b), a == b)
   SLIPBENCH_LANE_OP(choice, (const auto& m, const R& a, const R& b), m ? a : b)
-  SLIPBENCH_LANE_OP(size, (const R& a), (R)((Bits)a & (Bits{} + 0x7fffffffffffffffu)))
+  SLIPBENCH_LANE_OP(size, (const R& a), (R)((Bits)a&(Bits{} + 0x7fffffffffffffffu)))
   SLIPBENCH_LANE_OP(power, (const R& k), (R)((Bits)(k + (0x1p52 + 1023.0)) << 52))
   SLIPBENCH_LANE_OP(exponent, (const R& a), (R)(((Bits)a >> 52) | (Bits{} + 0x4330000000000000u)) - (0x1p52 + 1023.0))
 #undef SLIPBENCH_LANE_OP
@@ -185,16 +185,20 @@ struct LanesMask {
       const auto one = [&](std::size_t i) __attribute__((always_inline)) { result.part[i] = f(x.part[i]...); };
       (one(I), ...);
       return result;
-    }(std::make_index_sequence<registers>{});
+    }
+    (std::make_index_sequence<registers>{});
   }
   friend SLIPBENCH_INLINE LanesMask operator&(const LanesMask& a, const LanesMask& b) {
-    return each([](const Register& p, const Register& q) __attribute__((always_inline)) { return p & q; }, a, b);
+    return each(
+        [](const Register& p, const Register& q) __attribute__((always_inline)) { return p & q; }, a, b);
   }
   friend SLIPBENCH_INLINE LanesMask operator|(const LanesMask& a, const LanesMask& b) {
-    return each([](const Register& p, const Register& q) __attribute__((always_inline)) { return p | q; }, a, b);
+    return each(
+        [](const Register& p, const Register& q) __attribute__((always_inline)) { return p | q; }, a, b);
   }
   friend SLIPBENCH_INLINE LanesMask operator!(const LanesMask& a) {
-    return each([](const Register& p) __attribute__((always_inline)) { return ~p; }, a);
+    return each(
+        [](const Register& p) __attribute__((always_inline)) { return ~p; }, a);
   }
 };
 

@@ -47,24 +47,44 @@ bool negated(const SymbolNode<S>& n, SymbolNode<S>& inner) {
 template <class S>
 S fold(SymbolOp op, S a, S b, S c) {
   switch (op) {
-    case SymbolOp::add: return a + b;
-    case SymbolOp::subtract: return a - b;
-    case SymbolOp::multiply: return a * b;
-    case SymbolOp::divide: return a / b;
-    case SymbolOp::negate: return -a;
-    case SymbolOp::root: return sqrt(a);
-    case SymbolOp::floor: return floor(a);
-    case SymbolOp::size: return fabs(a);
-    case SymbolOp::two_to_the: return two_to_the(a);
-    case SymbolOp::exponent_of: return exponent_of(a);
-    case SymbolOp::select: return a != S(0) ? b : c;
-    case SymbolOp::less: return S(a < b);
-    case SymbolOp::less_equal: return S(a <= b);
-    case SymbolOp::equal: return S(a == b);
-    case SymbolOp::both: return S(a != S(0) && b != S(0));
-    case SymbolOp::either: return S(a != S(0) || b != S(0));
-    case SymbolOp::opposite: return S(a == S(0));
-    case SymbolOp::constant: case SymbolOp::input: case SymbolOp::truth: break;
+    case SymbolOp::add:
+      return a + b;
+    case SymbolOp::subtract:
+      return a - b;
+    case SymbolOp::multiply:
+      return a * b;
+    case SymbolOp::divide:
+      return a / b;
+    case SymbolOp::negate:
+      return -a;
+    case SymbolOp::root:
+      return sqrt(a);
+    case SymbolOp::floor:
+      return floor(a);
+    case SymbolOp::size:
+      return fabs(a);
+    case SymbolOp::two_to_the:
+      return two_to_the(a);
+    case SymbolOp::exponent_of:
+      return exponent_of(a);
+    case SymbolOp::select:
+      return a != S(0) ? b : c;
+    case SymbolOp::less:
+      return S(a < b);
+    case SymbolOp::less_equal:
+      return S(a <= b);
+    case SymbolOp::equal:
+      return S(a == b);
+    case SymbolOp::both:
+      return S(a != S(0) && b != S(0));
+    case SymbolOp::either:
+      return S(a != S(0) || b != S(0));
+    case SymbolOp::opposite:
+      return S(a == S(0));
+    case SymbolOp::constant:
+    case SymbolOp::input:
+    case SymbolOp::truth:
+      break;
   }
   return a;
 }
@@ -73,24 +93,34 @@ S fold(SymbolOp op, S a, S b, S c) {
 template <class S>
 bool simplify(SymbolOp& op, SymbolNode<S>& a, SymbolNode<S>& b, const SymbolNode<S>& c, SymbolNode<S>& result) {
   SymbolNode<S> inner, inner_b;
-  const auto becomes = [&](const SymbolNode<S>& n) { result = n; return true; };
+  const auto becomes = [&](const SymbolNode<S>& n) {
+    result = n;
+    return true;
+  };
   if (op == SymbolOp::add) {
     if (is(a, -0.0) || (is(a, 0.0) && never_minus_zero(b))) return becomes(b);
     if (is(b, -0.0) || (is(b, 0.0) && never_minus_zero(a))) return becomes(a);
-    if (negated(b, inner)) op = SymbolOp::subtract, b = inner;
-    else if (negated(a, inner)) op = SymbolOp::subtract, a = b, b = inner;
+    if (negated(b, inner))
+      op = SymbolOp::subtract, b = inner;
+    else if (negated(a, inner))
+      op = SymbolOp::subtract, a = b, b = inner;
   }
   if (op == SymbolOp::subtract) {
     if (is(b, 0.0) || (is(b, -0.0) && never_minus_zero(a))) return becomes(a);
-    if (negated(b, inner)) op = SymbolOp::add, b = inner;
-    else if (is(a, -0.0)) op = SymbolOp::negate, a = b, b = {};
+    if (negated(b, inner))
+      op = SymbolOp::add, b = inner;
+    else if (is(a, -0.0))
+      op = SymbolOp::negate, a = b, b = {};
   }
   if (op == SymbolOp::multiply || op == SymbolOp::divide) {
     if (is(b, 1.0)) return becomes(a);
     if (op == SymbolOp::multiply && is(a, 1.0)) return becomes(b);
-    if (is(b, -1.0)) op = SymbolOp::negate, b = {};
-    else if (op == SymbolOp::multiply && is(a, -1.0)) op = SymbolOp::negate, a = b, b = {};
-    else if (negated(a, inner) && negated(b, inner_b)) a = inner, b = inner_b;
+    if (is(b, -1.0))
+      op = SymbolOp::negate, b = {};
+    else if (op == SymbolOp::multiply && is(a, -1.0))
+      op = SymbolOp::negate, a = b, b = {};
+    else if (negated(a, inner) && negated(b, inner_b))
+      a = inner, b = inner_b;
   }
   if (op == SymbolOp::negate && negated(a, inner)) return becomes(inner);
   if (op == SymbolOp::size) {
@@ -118,13 +148,22 @@ bool simplify(SymbolOp& op, SymbolNode<S>& a, SymbolNode<S>& b, const SymbolNode
 template <class S>
 bool never_minus_zero(SymbolOp op, const SymbolNode<S>& a, const SymbolNode<S>& b, const SymbolNode<S>& c) {
   switch (op) {
-    case SymbolOp::add: return never_minus_zero(a) || never_minus_zero(b);
-    case SymbolOp::subtract: return never_minus_zero(a);
-    case SymbolOp::multiply: return same(a, b);
-    case SymbolOp::size: case SymbolOp::two_to_the: case SymbolOp::exponent_of: return true;
-    case SymbolOp::root: return never_minus_zero(a);
-    case SymbolOp::select: return never_minus_zero(b) && never_minus_zero(c);
-    default: return false;
+    case SymbolOp::add:
+      return never_minus_zero(a) || never_minus_zero(b);
+    case SymbolOp::subtract:
+      return never_minus_zero(a);
+    case SymbolOp::multiply:
+      return same(a, b);
+    case SymbolOp::size:
+    case SymbolOp::two_to_the:
+    case SymbolOp::exponent_of:
+      return true;
+    case SymbolOp::root:
+      return never_minus_zero(a);
+    case SymbolOp::select:
+      return never_minus_zero(b) && never_minus_zero(c);
+    default:
+      return false;
   }
 }
 
@@ -135,11 +174,22 @@ bool commutes(SymbolOp op) {
 bool mask_operands(SymbolOp op) { return op == SymbolOp::both || op == SymbolOp::either || op == SymbolOp::opposite; }
 std::size_t operand_count(SymbolOp op) {
   switch (op) {
-    case SymbolOp::select: return 3;
-    case SymbolOp::negate: case SymbolOp::root: case SymbolOp::floor: case SymbolOp::size: case SymbolOp::two_to_the:
-    case SymbolOp::exponent_of: case SymbolOp::opposite: return 1;
-    case SymbolOp::constant: case SymbolOp::input: case SymbolOp::truth: return 0;
-    default: return 2;
+    case SymbolOp::select:
+      return 3;
+    case SymbolOp::negate:
+    case SymbolOp::root:
+    case SymbolOp::floor:
+    case SymbolOp::size:
+    case SymbolOp::two_to_the:
+    case SymbolOp::exponent_of:
+    case SymbolOp::opposite:
+      return 1;
+    case SymbolOp::constant:
+    case SymbolOp::input:
+    case SymbolOp::truth:
+      return 0;
+    default:
+      return 2;
   }
 }
 
@@ -147,7 +197,8 @@ std::size_t operand_count(SymbolOp op) {
 
 template <class S>
 std::uint32_t Graph<S>::node(Node n) {
-  const std::array<std::uint64_t, 5> key{static_cast<std::uint64_t>(n.op), n.a, n.b, n.c, std::bit_cast<BitsOf<S>>(n.value)};
+  const std::array<std::uint64_t, 5> key{static_cast<std::uint64_t>(n.op), n.a, n.b, n.c,
+                                         std::bit_cast<BitsOf<S>>(n.value)};
   const auto [place, fresh] = known_.try_emplace(key, static_cast<std::uint32_t>(nodes.size()));
   if (fresh) nodes.push_back(n);
   return place->second;
@@ -227,13 +278,13 @@ std::map<SymbolOp, std::size_t> Program<S>::operation_counts() const {
   return counts;
 }
 
-#define SLIPBENCH_SYMBOL(S)                                                                                      \
-  template class Graph<S>;                                                                                       \
+#define SLIPBENCH_SYMBOL(S)                                                                                     \
+  template class Graph<S>;                                                                                      \
   template SymbolNode<S> record<S>(SymbolOp, const SymbolNode<S>&, const SymbolNode<S>&, const SymbolNode<S>&); \
   template Symbol<S> Program<S>::input(const std::string&, const std::string&);                                 \
   template void Program<S>::output(const std::string&, const Symbol<S>&, const std::string&);                   \
   template void Program<S>::name(const std::string&, const Symbol<S>&);                                         \
-  template std::vector<bool> Program<S>::needed() const;                                                         \
+  template std::vector<bool> Program<S>::needed() const;                                                        \
   template std::map<SymbolOp, std::size_t> Program<S>::operation_counts() const;
 SLIPBENCH_SYMBOL(float)
 SLIPBENCH_SYMBOL(double)

@@ -26,8 +26,26 @@
 namespace slipbench {
 
 enum class SymbolOp : std::uint8_t {
-  constant, input, add, subtract, multiply, divide, negate, root, floor, size, two_to_the, exponent_of, select,
-  truth, less, less_equal, equal, both, either, opposite  // from `truth` on: masks
+  constant,
+  input,
+  add,
+  subtract,
+  multiply,
+  divide,
+  negate,
+  root,
+  floor,
+  size,
+  two_to_the,
+  exponent_of,
+  select,
+  truth,
+  less,
+  less_equal,
+  equal,
+  both,
+  either,
+  opposite  // from `truth` on: masks
 };
 
 template <class Scalar>
@@ -43,6 +61,10 @@ struct SymbolNode {
   Scalar value{};  // of a constant; masks: 0 or 1
 };
 
+// Records `op` on up to three operands, or folds it.
+template <class S>
+SymbolNode<S> record(SymbolOp op, const SymbolNode<S>& a, const SymbolNode<S>& b = {}, const SymbolNode<S>& c = {});
+
 template <class S>
 class SymbolMask {
  public:
@@ -51,13 +73,17 @@ class SymbolMask {
   explicit SymbolMask(const SymbolNode<S>& node) : node_(node) {}
   [[nodiscard]] const SymbolNode<S>& node() const { return node_; }
 
+  friend SymbolMask operator&(const SymbolMask& a, const SymbolMask& b) {
+    return SymbolMask(record<S>(SymbolOp::both, a.node(), b.node()));
+  }
+  friend SymbolMask operator|(const SymbolMask& a, const SymbolMask& b) {
+    return SymbolMask(record<S>(SymbolOp::either, a.node(), b.node()));
+  }
+  friend SymbolMask operator!(const SymbolMask& a) { return SymbolMask(record<S>(SymbolOp::opposite, a.node())); }
+
  private:
   SymbolNode<S> node_;
 };
-
-// Records `op` on up to three operands, or folds it.
-template <class S>
-SymbolNode<S> record(SymbolOp op, const SymbolNode<S>& a, const SymbolNode<S>& b = {}, const SymbolNode<S>& c = {});
 
 template <class S>
 class Symbol {
@@ -92,9 +118,6 @@ class Symbol {
   friend Mask operator>=(const Symbol& a, const Symbol& b) { return b <= a; }
   friend Mask operator==(const Symbol& a, const Symbol& b) { return compare(SymbolOp::equal, a, b); }
   friend Mask operator!=(const Symbol& a, const Symbol& b) { return !(a == b); }
-  friend Mask operator&(const Mask& a, const Mask& b) { return Mask(record<S>(SymbolOp::both, a.node(), b.node())); }
-  friend Mask operator|(const Mask& a, const Mask& b) { return Mask(record<S>(SymbolOp::either, a.node(), b.node())); }
-  friend Mask operator!(const Mask& a) { return Mask(record<S>(SymbolOp::opposite, a.node())); }
 
  private:
   static Symbol of(SymbolOp op, const Symbol& a) { return Symbol(record<S>(op, a.node_)); }

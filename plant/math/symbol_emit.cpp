@@ -42,14 +42,14 @@ const char* helper(SymbolOp op) {
 // The two exponent primitives of plant/math/elementary.hpp, by the same bit operations.
 template <class S>
 void emit_helper(std::ostream& out, SymbolOp op) {
-  out << "static " << C<S>::type << " " << helper<S>(op) << "(" << C<S>::type << " x) {\n  union { " << C<S>::type << " number; "
-      << C<S>::word << " bits; } u;\n";
+  out << "static " << C<S>::type << " " << helper<S>(op) << "(" << C<S>::type << " x) {\n  union { " << C<S>::type
+      << " number; " << C<S>::word << " bits; } u;\n";
   if (op == SymbolOp::two_to_the) {
     out << "  u.number = x + " << C<S>::exponent_offset << C<S>::suffix << ";\n  u.bits <<= " << C<S>::shift
         << ";\n  return u.number;\n}\n";
   } else {
-    out << "  u.number = x;\n  u.bits = (u.bits >> " << C<S>::shift << ") | " << C<S>::one_word << "(" << C<S>::exponent_bits
-        << ");\n  return u.number - " << C<S>::exponent_offset << C<S>::suffix << ";\n}\n";
+    out << "  u.number = x;\n  u.bits = (u.bits >> " << C<S>::shift << ") | " << C<S>::one_word << "("
+        << C<S>::exponent_bits << ");\n  return u.number - " << C<S>::exponent_offset << C<S>::suffix << ";\n}\n";
   }
 }
 
@@ -59,23 +59,43 @@ std::string expression(const typename Graph<S>::Node& n, const std::vector<std::
   const auto a = [&] { return name[n.a]; };
   const auto infix = [&](const char* sign) { return name[n.a] + sign + name[n.b]; };
   switch (n.op) {
-    case SymbolOp::add: return infix(" + ");
-    case SymbolOp::subtract: return infix(" - ");
-    case SymbolOp::multiply: return infix(" * ");
-    case SymbolOp::divide: return infix(" / ");
-    case SymbolOp::negate: return "-" + a();
-    case SymbolOp::root: return "sqrt" + call + "(" + a() + ")";
-    case SymbolOp::floor: return "floor" + call + "(" + a() + ")";
-    case SymbolOp::size: return "fabs" + call + "(" + a() + ")";
-    case SymbolOp::two_to_the: case SymbolOp::exponent_of: return helper<S>(n.op) + ("(" + a() + ")");
-    case SymbolOp::select: return a() + " ? " + name[n.b] + " : " + name[n.c];
-    case SymbolOp::less: return infix(" < ");
-    case SymbolOp::less_equal: return infix(" <= ");
-    case SymbolOp::equal: return infix(" == ");
-    case SymbolOp::both: return infix(" & ");
-    case SymbolOp::either: return infix(" | ");
-    case SymbolOp::opposite: return "!" + a();
-    case SymbolOp::constant: case SymbolOp::input: case SymbolOp::truth: break;
+    case SymbolOp::add:
+      return infix(" + ");
+    case SymbolOp::subtract:
+      return infix(" - ");
+    case SymbolOp::multiply:
+      return infix(" * ");
+    case SymbolOp::divide:
+      return infix(" / ");
+    case SymbolOp::negate:
+      return "-" + a();
+    case SymbolOp::root:
+      return "sqrt" + call + "(" + a() + ")";
+    case SymbolOp::floor:
+      return "floor" + call + "(" + a() + ")";
+    case SymbolOp::size:
+      return "fabs" + call + "(" + a() + ")";
+    case SymbolOp::two_to_the:
+    case SymbolOp::exponent_of:
+      return helper<S>(n.op) + ("(" + a() + ")");
+    case SymbolOp::select:
+      return a() + " ? " + name[n.b] + " : " + name[n.c];
+    case SymbolOp::less:
+      return infix(" < ");
+    case SymbolOp::less_equal:
+      return infix(" <= ");
+    case SymbolOp::equal:
+      return infix(" == ");
+    case SymbolOp::both:
+      return infix(" & ");
+    case SymbolOp::either:
+      return infix(" | ");
+    case SymbolOp::opposite:
+      return "!" + a();
+    case SymbolOp::constant:
+    case SymbolOp::input:
+    case SymbolOp::truth:
+      break;
   }
   return {};
 }
@@ -89,16 +109,18 @@ bool is_leaf(SymbolOp op) { return op == SymbolOp::constant || op == SymbolOp::i
 template <class S>
 std::string Program<S>::unique(std::string name) {
   static const std::set<std::string> reserved{
-      "auto", "break", "case", "char", "const", "continue", "default", "do", "double", "else", "enum", "extern", "float",
-      "for", "goto", "if", "inline", "int", "long", "register", "restrict", "return", "short", "signed", "sizeof", "static",
-      "struct", "switch", "typedef", "union", "unsigned", "void", "volatile", "while"};
+      "auto",   "break",    "case",     "char",     "const", "continue", "default", "do",     "double",
+      "else",   "enum",     "extern",   "float",    "for",   "goto",     "if",      "inline", "int",
+      "long",   "register", "restrict", "return",   "short", "signed",   "sizeof",  "static", "struct",
+      "switch", "typedef",  "union",    "unsigned", "void",  "volatile", "while"};
   for (char& c : name) {
     const bool fits = (c >= 'a' && c <= 'z') || (c >= 'A' && c <= 'Z') || (c >= '0' && c <= '9') || c == '_';
     if (!fits) c = '_';
   }
   if (name.empty() || (name[0] >= '0' && name[0] <= '9')) name = "x" + name;
   std::string candidate = name;
-  while (reserved.count(candidate) || taken_.count(candidate)) candidate = name + "_" + std::to_string(++taken_[name] + 1);
+  while (reserved.count(candidate) || taken_.count(candidate))
+    candidate = name + "_" + std::to_string(++taken_[name] + 1);
   taken_[candidate];
   return candidate;
 }
@@ -139,9 +161,12 @@ std::string Program<S>::emit_c(const std::string& function_name) const {
   }
   for (std::size_t i = 0; i < nodes.size(); ++i) {
     if (!need[i] || !name[i].empty()) continue;
-    if (nodes[i].op == SymbolOp::constant) name[i] = literal(nodes[i].value);
-    else if (nodes[i].op == SymbolOp::truth) name[i] = nodes[i].value != S(0) ? "1" : "0";
-    else name[i] = free_name((is_mask(nodes[i].op) ? "m" : "t") + std::to_string(++temporaries));
+    if (nodes[i].op == SymbolOp::constant)
+      name[i] = literal(nodes[i].value);
+    else if (nodes[i].op == SymbolOp::truth)
+      name[i] = nodes[i].value != S(0) ? "1" : "0";
+    else
+      name[i] = free_name((is_mask(nodes[i].op) ? "m" : "t") + std::to_string(++temporaries));
     if (name[i][0] == '-') name[i] = "(" + name[i] + ")";
   }
 
@@ -150,9 +175,10 @@ std::string Program<S>::emit_c(const std::string& function_name) const {
   const auto count = [&](SymbolOp op) { return counts.count(op) ? counts.at(op) : std::size_t{0}; };
   out << "/* " << function_name << ": straight-line C99 in " << C<S>::type << ", written by slipbench.\n"
       << " * " << count(SymbolOp::multiply) << " multiplications, " << count(SymbolOp::add) << " additions, "
-      << count(SymbolOp::subtract) << " subtractions, " << count(SymbolOp::divide) << " divisions, " << count(SymbolOp::root)
-      << " square roots.\n"
-      << " * Its bits are those of the simulation under IEEE 754 arithmetic, rounding to nearest, subnormals kept, and these flags:\n"
+      << count(SymbolOp::subtract) << " subtractions, " << count(SymbolOp::divide) << " divisions, "
+      << count(SymbolOp::root) << " square roots.\n"
+      << " * Its bits are those of the simulation under IEEE 754 arithmetic, rounding to nearest, subnormals kept, and "
+         "these flags:\n"
       << " *   -std=c99 -ffp-contract=off   (no -ffast-math, no -funsafe-math-optimizations, FLT_EVAL_METHOD 0)\n"
       << " * Every input is read before any output is written, so arrays may be the same memory. */\n"
       << "#include <math.h>\n#include <stdint.h>\n\n";
@@ -161,8 +187,8 @@ std::string Program<S>::emit_c(const std::string& function_name) const {
   }
   std::string signature = "void " + function_name + "(";
   for (std::size_t i = 0; i < arrays.size(); ++i) {
-    signature += (i ? ", " : "") + std::string(arrays[i].written ? "" : "const ") + C<S>::type + " " + arrays[i].name + "[" +
-                 std::to_string(arrays[i].size) + "]";
+    signature += (i ? ", " : "") + std::string(arrays[i].written ? "" : "const ") + C<S>::type + " " + arrays[i].name +
+                 "[" + std::to_string(arrays[i].size) + "]";
   }
   signature += arrays.empty() ? "void)" : ")";
   out << signature << ";\n\n" << signature << " {\n";
@@ -171,7 +197,8 @@ std::string Program<S>::emit_c(const std::string& function_name) const {
       out << "  /* " << port.array << "[" << port.element << "]: " << port.name << ", not needed */\n";
       continue;
     }
-    out << "  const " << C<S>::type << " " << name[port.node.id] << " = " << port.array << "[" << port.element << "];\n";
+    out << "  const " << C<S>::type << " " << name[port.node.id] << " = " << port.array << "[" << port.element
+        << "];\n";
   }
   for (const auto& array : arrays) {
     bool used = array.written;
@@ -180,12 +207,13 @@ std::string Program<S>::emit_c(const std::string& function_name) const {
   }
   for (std::size_t i = 0; i < nodes.size(); ++i) {
     if (!need[i] || is_leaf(nodes[i].op)) continue;
-    out << "  const " << (is_mask(nodes[i].op) ? "int" : C<S>::type) << " " << name[i] << " = " << expression<S>(nodes[i], name)
-        << ";\n";
+    out << "  const " << (is_mask(nodes[i].op) ? "int" : C<S>::type) << " " << name[i] << " = "
+        << expression<S>(nodes[i], name) << ";\n";
   }
   for (const auto& port : outputs_) {
-    out << "  " << port.array << "[" << port.element << "] = "
-        << (port.node.graph ? name[port.node.id] : literal(port.node.value)) << ";  /* " << port.name << " */\n";
+    out << "  " << port.array << "[" << port.element
+        << "] = " << (port.node.graph ? name[port.node.id] : literal(port.node.value)) << ";  /* " << port.name
+        << " */\n";
   }
   out << "}\n";
   return out.str();

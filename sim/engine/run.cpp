@@ -281,11 +281,13 @@ double Run::run_in() {
 
 void Run::go(std::span<RunObserver* const> observers) {
   const std::int64_t ticks = steps_ / steps_per_control_;
+  PlantRow row{};
   for (std::int64_t n = 0;; ++n) {
-    if (n % steps_per_control_ == 0) {
-      const std::int64_t k = n / steps_per_control_;
-      control_tick(k);
-      const PlantRow row = plant_row(n);
+    const bool control = n % steps_per_control_ == 0, trace = n % steps_per_trace_ == 0;
+    const std::int64_t k = n / steps_per_control_;
+    if (control) control_tick(k);
+    if ((control || trace) && !observers.empty()) row = plant_row(n);
+    if (control) {
       const TickView view{k, row[P::time], &row, estimates_, command_.clipped != 0.0};
       for (RunObserver* o : observers) o->control_tick(view);
       if (find_divergence(k)) break;
@@ -295,8 +297,7 @@ void Run::go(std::span<RunObserver* const> observers) {
         break;
       }
     }
-    if (n % steps_per_trace_ == 0) {
-      const PlantRow row = plant_row(n);
+    if (trace && !observers.empty()) {
       for (std::size_t i = 0; i < estimates_.size(); ++i) {
         const Estimate<double>& e = estimates_[i];
         const std::array<double, estimator_column_count> columns{e.speed / rad_s_per_rpm, e.rotor_flux, e.rotor_flux_angle,

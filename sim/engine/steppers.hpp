@@ -11,15 +11,24 @@
 #include <array>
 #include <boost/array.hpp>
 #include <boost/fusion/container/vector.hpp>
+#include <cstddef>
+#include <optional>
+#include <string_view>
+#include <tuple>
+#include <utility>
+
+// Odeint's table of default algebras pulls in uBLAS, and with it <iostream>: compile time, and start-up code in units built
+// for an instruction set that the processor may lack. We always name our algebra, so the table is declared, not included.
+#define BOOST_NUMERIC_ODEINT_ALGEBRA_ALGEBRA_DISPATCHER_HPP_INCLUDED
+namespace boost::numeric::odeint {
+template <class State>
+struct algebra_dispatcher;
+}
 #include <boost/numeric/odeint/algebra/array_algebra.hpp>
 #include <boost/numeric/odeint/stepper/euler.hpp>
 #include <boost/numeric/odeint/stepper/explicit_generic_rk.hpp>
 #include <boost/numeric/odeint/stepper/runge_kutta4.hpp>
 #include <boost/numeric/odeint/stepper/runge_kutta_cash_karp54_classic.hpp>
-#include <cstddef>
-#include <optional>
-#include <string_view>
-#include <utility>
 
 namespace slipbench {
 
@@ -38,17 +47,16 @@ constexpr int order_of(Stepper method) {
 
 namespace detail {
 
-// y = f_1 x_1 + f_2 x_2 + ...: left to right. Every method's first factor is 1. A term whose factor is zero is left out,
-// for every number type alike.
+// y = f_1 x_1 + f_2 x_2 + ...: left to right, no term left out. Every method's first factor is 1.
 template <std::size_t Terms>
 struct WeightedSum {
   std::array<double, Terms> factor;
 
   template <class Real, class... More>
   void operator()(Real& y, const Real& first, const More&... more) const {
-    Real sum = factor[0] == 1.0 ? first : Real(factor[0]) * first;
+    Real sum = Real(factor[0]) * first;
     std::size_t term = 1;
-    ((sum = factor[term] == 0.0 ? sum : sum + Real(factor[term]) * more, ++term), ...);
+    ((sum = sum + Real(factor[term++]) * more), ...);
     y = sum;
   }
   typedef void result_type;
@@ -56,10 +64,10 @@ struct WeightedSum {
 
 // What Odeint asks of its `Operations`: scale_sum1 .. scale_sumN, each constructed from its factors.
 struct Operations {
-#define SLIPBENCH_SCALE_SUM(terms)                                                                       \
-  template <class... Factor>                                                                             \
-  struct scale_sum##terms : WeightedSum<terms> {                                                         \
-    template <class... Given>                                                                            \
+#define SLIPBENCH_SCALE_SUM(terms)                                                                     \
+  template <class... Factor>                                                                           \
+  struct scale_sum##terms : WeightedSum<terms> {                                                       \
+    template <class... Given>                                                                          \
     explicit scale_sum##terms(Given... given) : WeightedSum<terms>{{static_cast<double>(given)...}} {} \
   };
   SLIPBENCH_SCALE_SUM(1)
@@ -74,15 +82,49 @@ struct Operations {
 
 namespace odeint = boost::numeric::odeint;
 
+// Odeint's array_algebra with its loops over the states written out: at -O2 the compiler would keep them, and every
+// intermediate in memory with them (1.7 times the time of a step).
+struct Algebra : odeint::array_algebra {
+  template <class Op, class Out, class... In>
+  static void all(Op op, Out& out, const In&... in) {
+    const auto one = [&](std::size_t i) __attribute__((always_inline)) { op(out[i], in[i]...); };
+    [&]<std::size_t... I>(std::index_sequence<I...>) __attribute__((always_inline)) { (one(I), ...); }
+    (std::make_index_sequence<std::tuple_size_v<Out>>{});
+  }
+  template <class O, class A, class Op>
+  static void for_each2(O& o, A& a, Op op) {
+    all(op, o, a);
+  }
+  template <class O, class A, class B, class Op>
+  static void for_each3(O& o, A& a, B& b, Op op) {
+    all(op, o, a, b);
+  }
+  template <class O, class A, class B, class C, class Op>
+  static void for_each4(O& o, A& a, B& b, C& c, Op op) {
+    all(op, o, a, b, c);
+  }
+  template <class O, class A, class B, class C, class D, class Op>
+  static void for_each5(O& o, A& a, B& b, C& c, D& d, Op op) {
+    all(op, o, a, b, c, d);
+  }
+  template <class O, class A, class B, class C, class D, class E, class Op>
+  static void for_each6(O& o, A& a, B& b, C& c, D& d, E& e, Op op) {
+    all(op, o, a, b, c, d, e);
+  }
+  template <class O, class A, class B, class C, class D, class E, class F, class Op>
+  static void for_each7(O& o, A& a, B& b, C& c, D& d, E& e, F& f, Op op) {
+    all(op, o, a, b, c, d, e, f);
+  }
+};
+
 template <class Real, std::size_t N>
 struct SteppersOf {
   using State = std::array<Real, N>;
-  using Euler = odeint::euler<State, double, State, double, odeint::array_algebra, Operations>;
-  using Rk4 = odeint::runge_kutta4<State, double, State, double, odeint::array_algebra, Operations>;
-  using CashKarp5 =
-      odeint::runge_kutta_cash_karp54_classic<State, double, State, double, odeint::array_algebra, Operations>;
+  using Euler = odeint::euler<State, double, State, double, Algebra, Operations>;
+  using Rk4 = odeint::runge_kutta4<State, double, State, double, Algebra, Operations>;
+  using CashKarp5 = odeint::runge_kutta_cash_karp54_classic<State, double, State, double, Algebra, Operations>;
   // x + h f(x + h/2 f(x, t), t + h/2), as a table of coefficients.
-  using TwoStages = odeint::explicit_generic_rk<2, 2, State, double, State, double, odeint::array_algebra, Operations>;
+  using TwoStages = odeint::explicit_generic_rk<2, 2, State, double, State, double, Algebra, Operations>;
   struct Midpoint : TwoStages {
     Midpoint()
         : TwoStages(boost::fusion::make_vector(boost::array<double, 1>{{0.5}}), boost::array<double, 2>{{0.0, 1.0}},
@@ -93,10 +135,14 @@ struct SteppersOf {
 template <Stepper M, class Real, std::size_t N>
 auto make_stepper() {
   using Of = SteppersOf<Real, N>;
-  if constexpr (M == Stepper::euler) return typename Of::Euler{};
-  else if constexpr (M == Stepper::midpoint) return typename Of::Midpoint{};
-  else if constexpr (M == Stepper::rk4) return typename Of::Rk4{};
-  else return typename Of::CashKarp5{};
+  if constexpr (M == Stepper::euler)
+    return typename Of::Euler{};
+  else if constexpr (M == Stepper::midpoint)
+    return typename Of::Midpoint{};
+  else if constexpr (M == Stepper::rk4)
+    return typename Of::Rk4{};
+  else
+    return typename Of::CashKarp5{};
 }
 
 }  // namespace detail
@@ -115,10 +161,14 @@ inline void odeint_step(System&& system, std::array<Real, N>& x, double t, doubl
 template <class Real, std::size_t N, class System>
 inline void odeint_step(Stepper method, System&& system, std::array<Real, N>& x, double t, double h) {
   switch (method) {
-    case Stepper::euler: return odeint_step<Stepper::euler>(system, x, t, h);
-    case Stepper::midpoint: return odeint_step<Stepper::midpoint>(system, x, t, h);
-    case Stepper::rk4: return odeint_step<Stepper::rk4>(system, x, t, h);
-    case Stepper::cash_karp5: return odeint_step<Stepper::cash_karp5>(system, x, t, h);
+    case Stepper::euler:
+      return odeint_step<Stepper::euler>(system, x, t, h);
+    case Stepper::midpoint:
+      return odeint_step<Stepper::midpoint>(system, x, t, h);
+    case Stepper::rk4:
+      return odeint_step<Stepper::rk4>(system, x, t, h);
+    case Stepper::cash_karp5:
+      return odeint_step<Stepper::cash_karp5>(system, x, t, h);
   }
 }
 

@@ -16,15 +16,15 @@ class OutFile {
   OutFile(const OutFile&) = delete;
   OutFile& operator=(const OutFile&) = delete;
 
-  void write(std::string_view text);   // never throws: a failure is kept for `finish`
+  void write(std::string_view text);  // never throws: a failure is kept for `finish`
   [[nodiscard]] bool failed() const { return error_ != 0; }
-  void finish();                       // throws OutsideError when any byte did not reach the file
+  void finish();  // throws OutsideError when any byte did not reach the file
   [[nodiscard]] const std::string& path() const { return path_; }
 
  private:
   std::string path_, working_path_;
   std::FILE* file_ = nullptr;
-  int error_ = 0;                      // first errno met
+  int error_ = 0;  // first errno met
 };
 
 }  // namespace slipbench

@@ -161,6 +161,10 @@ void check_drifts(const Scenario& s, const Node& root) {
       if (s.drifts[j].quantity == quantity)
         refuse_at(root, key, "'" + key + "': " + quantity + " drifts already in drift." + std::to_string(j));
     }
+    if (quantity == "dc_link" && s.on_mains()) refuse_at(root, key, "'" + key + "': there is no DC link on mains");
+    if (quantity == "inertia" && !s.loads.empty() && s.loads.front().kind == "imposed_speed") {
+      refuse_at(root, key, "'" + key + "': with an imposed speed the inertia does nothing");
+    }
     if ((quantity == "stator_leakage" && c.stator_leakage == 0.0) ||
         (quantity == "rotor_leakage" && c.rotor_leakage == 0.0)) {
       refuse_at(root, key, "'" + key + "': the " + quantity + " of this circuit is 0; a factor on it does nothing");

@@ -9,6 +9,8 @@
 namespace slipbench {
 namespace {
 
+constexpr std::size_t longest_list = 256;
+
 std::string joined(const std::string& shown, std::string_view name) {
   return shown.empty() ? std::string(name) : shown + "." + std::string(name);
 }
@@ -82,6 +84,12 @@ class Filler {
     if (node.kind != Node::Kind::array) {
       refuse(node.place, shown,
              "'" + shown + "' is " + found_text(node) + "; wanted is a list of tables, [[" + shown + "]]", "type");
+    }
+    if (node.children.size() > longest_list) {
+      refuse(
+          node.place, shown,
+          "'" + shown + "' is " + found_text(node) + "; wanted are at most " + std::to_string(longest_list) + " tables",
+          "range");
     }
     list.enter(scenario_, node.children.size());
     for (std::size_t i = 0; i < node.children.size(); ++i) {

@@ -111,7 +111,8 @@ void load_keys(std::vector<Key>& keys) {
   Rows drift(keys, "drift[]");
   drift.word("quantity", AT(drifts[i].quantity), "what changes")
       .must()
-      .words({"stator_resistance", "rotor_resistance", "magnetizing_inductance", "stator_leakage", "rotor_leakage"});
+      .words({"stator_resistance", "rotor_resistance", "magnetizing_inductance", "stator_leakage", "rotor_leakage",
+              "inertia", "dc_link"});
   drift.number("factor", AT(drifts[i].factor), "", positive(any_factor), "times the value at t = 0, over time").must();
 }
 

@@ -58,6 +58,7 @@ std::string Range::text() const {
   const std::string floor = (open ? "above " : "of at least ") + number_text(low);
   const std::string ceiling = "at most " + number_text(high);
   if (below) return above ? "" : "of " + ceiling;
+  if (low == high) return "equal to " + number_text(low);
   if (above) return floor;
   return open ? floor + " and " + ceiling : "from " + number_text(low) + " to " + number_text(high);
 }

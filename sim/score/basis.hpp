@@ -29,8 +29,8 @@ struct ScoreBasis {
   double control_period_s = 0.0;
   double rated_speed_rpm = 0.0, rated_rotor_flux_Wb = 0.0;
   double lost_error = 0.1, lost_for_s = 0.05, settled_error = 0.02;  // errors as shares of rated speed
-  std::vector<double> load_steps_s;   // jumps of `profile` loads, ascending
-  Circuit<double> circuit;            // true at t = 0; its inductances serve the rotor current
+  std::vector<double> load_steps_s;                                  // jumps of `profile` loads, ascending
+  Circuit<double> circuit;  // true at t = 0; its inductances serve the rotor current
   Profile magnetizing_factor{{}, 1.0, 1.0}, stator_leakage_factor{{}, 1.0, 1.0}, rotor_leakage_factor{{}, 1.0, 1.0};
   bool has_controller = false;
 };

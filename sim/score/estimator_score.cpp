@@ -8,7 +8,11 @@ namespace {
 
 constexpr double pi = 3.14159265358979323846;
 
-double wrapped_degrees(double angle_rad) { return std::remainder(angle_rad, 2.0 * pi) * (180.0 / pi); }
+// To [-180, 180): a figure, not a state, so the turn taken off need not be exact to the last bit.
+double wrapped_degrees(double angle_rad) {
+  const double turns = angle_rad * (0.5 / pi);
+  return 360.0 * (turns - std::floor(turns + 0.5));
+}
 
 Figure finite(double x) { return std::isfinite(x) ? Figure(x) : Figure(); }
 Figure root_mean(double sum_of_squares, double count) {

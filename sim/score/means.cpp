@@ -48,9 +48,9 @@ std::vector<NamedValue> ColumnMeans::means() const {
   for (std::size_t i = 0; i < names_.size(); ++i) {
     const bool measured = i >= plant_column_count && i < plant_column_count + measured_count_;
     const double count = measured ? rows_ : ticks_;
-    const double sum = measured                   ? row_sums_[i - plant_column_count]
+    const double sum = measured                 ? row_sums_[i - plant_column_count]
                        : i < plant_column_count ? tick_sums_[i]
-                                                  : tick_sums_[i - measured_count_];
+                                                : tick_sums_[i - measured_count_];
     all.push_back({names_[i], count > 0 ? sum / count : none});
   }
   return all;

@@ -32,7 +32,7 @@ class ColumnMeans : public RunObserver {
   double control_period_s_ = 0.0;
   std::size_t measured_count_ = 0;
   std::vector<std::string> names_;
-  std::vector<double> tick_sums_, row_sums_, last_;   // plant then estimators; measured; all
+  std::vector<double> tick_sums_, row_sums_, last_;  // plant then estimators; measured; all
   double ticks_ = 0, rows_ = 0;
 };
 

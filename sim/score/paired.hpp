@@ -14,9 +14,9 @@
 namespace slipbench {
 
 struct Interval {
-  std::size_t runs = 0;                 // that had a number
-  Figure mean;                          // empty: no run had one
-  Figure low, high;                     // empty: fewer than two
+  std::size_t runs = 0;  // that had a number
+  Figure mean;           // empty: no run had one
+  Figure low, high;      // empty: fewer than two
   [[nodiscard]] bool excludes_zero() const { return low && high && (*low > 0.0 || *high < 0.0); }
 };
 

@@ -13,7 +13,8 @@ namespace {
 constexpr double two_pi = 6.28318530717958647692;
 
 // Torque control at an imposed speed, flux up.
-ClosedLoop torque_drive(const PublishedMachine& truth, ControllerSetup setup, double speed, const Settings& given = {}) {
+ClosedLoop torque_drive(const PublishedMachine& truth, ControllerSetup setup, double speed,
+                        const Settings& given = {}) {
   setup.speed_control = false;
   setup.start_rotor_flux_Wb = setup.rotor_flux_reference_Wb;
   ClosedLoop loop(truth, setup, given);
@@ -25,8 +26,8 @@ ClosedLoop torque_drive(const PublishedMachine& truth, ControllerSetup setup, do
 
 }  // namespace
 
-// Sampled internal-model loop with one period's delay (current_control.hpp): i(k+1) = i(k) + alpha_c T (r(k-1) - i(k-1)). The
-// PI's zero is placed by forward Euler, at R T / L_sigma = 0.03 of a sample: 3 % of the step.
+// Sampled internal-model loop with one period's delay (current_control.hpp): i(k+1) = i(k) + alpha_c T (r(k-1) -
+// i(k-1)). The PI's zero is placed by forward Euler, at R T / L_sigma = 0.03 of a sample: 3 % of the step.
 TEST_CASE("current loop: step response is the internal-model loop's", "[controllers][published]") {
   const PublishedMachine truth = krause_3hp();
   for (const double speed : {0.0, 80.0}) {
@@ -53,9 +54,10 @@ TEST_CASE("current loop: step response is the internal-model loop's", "[controll
   }
 }
 
-// With matched parameters feedforward, angle advance and voltage leave the resistive drop alone to the integral: x = R i. A
-// half period's error of the advance would show as w T / 2 |u| = 2.9 V, the missing cross-coupling as w_s L_sigma i_q. Left:
-// the vector's standing still, (w T)^2 / 24 |u| = 0.01 V, and the ripple of the sampled current: 1 % of R |i| = 15 V.
+// With matched parameters feedforward, angle advance and voltage leave the resistive drop alone to the integral: x
+// = R i. A half period's error of the advance would show as w T / 2 |u| = 2.9 V, the missing cross-coupling as w_s
+// L_sigma i_q. Left: the vector's standing still, (w T)^2 / 24 |u| = 0.01 V, and the ripple of the sampled current:
+// 1 % of R |i| = 15 V.
 TEST_CASE("current loop: the integral carries the resistive drop alone", "[controllers][physics]") {
   for (const PublishedMachine& truth : published_machines()) {
     for (const int d : {0, 1, 2}) {
@@ -72,8 +74,8 @@ TEST_CASE("current loop: the integral carries the resistive drop alone", "[contr
   }
 }
 
-// A q step at rated speed moves i_d only by what the delay leaves of the cross-coupling: w_s times the i_q that passes within
-// (d + 1/2) T, w_s 1.5 T = 5.6 % of the step. Without decoupling it would be w_s / alpha_c = 15 %.
+// A q step at rated speed moves i_d only by what the delay leaves of the cross-coupling: w_s times the i_q that
+// passes within (d + 1/2) T, w_s 1.5 T = 5.6 % of the step. Without decoupling it would be w_s / alpha_c = 15 %.
 TEST_CASE("current loop: d and q are decoupled", "[controllers][physics]") {
   const PublishedMachine truth = krause_3hp();
   ClosedLoop loop = torque_drive(truth, setup_for(truth), truth.nameplate.speed_rad_s());
@@ -89,8 +91,8 @@ TEST_CASE("current loop: d and q are decoupled", "[controllers][physics]") {
   CHECK(moved < 0.056 * step_A);
 }
 
-// Integral action in the rotating frame: no error is left, whatever is believed. The loop's slowest pole after the zero,
-// R / L_sigma, is above 90 1/s: 0.5 s leave e^-45. What remains is slow flux motion: 1e-4 of the current.
+// Integral action in the rotating frame: no error is left, whatever is believed. The loop's slowest pole after the
+// zero, R / L_sigma, is above 90 1/s: 0.5 s leave e^-45. What remains is slow flux motion: 1e-4 of the current.
 TEST_CASE("current loop: no steady error with wrong parameters", "[controllers][physics]") {
   const PublishedMachine truth = krause_3hp();
   for (const double factor : {0.7, 1.3}) {
@@ -111,8 +113,9 @@ TEST_CASE("current loop: no steady error with wrong parameters", "[controllers][
 }
 
 // Set-points of rotor-flux orientation, computed from the circuit: i_d = psi / L_m, i_q = T L_r / (3/2 p L_m psi),
-// w_sl = R_r L_m i_q / (L_r psi), u_d, u_q. M1, psi 0.40 Wb, 11.9 N m, 1500 and 0 rpm. Means over a period, seen from the
-// true flux. The vector's standing still costs (w T)^2 / 24 = 5e-5; orientation to 0.01 degrees turns u_d by 2e-4 of |u|.
+// w_sl = R_r L_m i_q / (L_r psi), u_d, u_q. M1, psi 0.40 Wb, 11.9 N m, 1500 and 0 rpm. Means over a period, seen
+// from the true flux. The vector's standing still costs (w T)^2 / 24 = 5e-5; orientation to 0.01 degrees turns u_d
+// by 2e-4 of |u|.
 TEST_CASE("current loop: published set-points are reached", "[controllers][published]") {
   struct Row {
     double rpm, slip, w_e, u_d, u_q, u;
@@ -141,8 +144,8 @@ TEST_CASE("current loop: published set-points are reached", "[controllers][publi
 }
 
 // While the DC link is down to 60 % at rated speed the voltage limit holds; when it is back the currents must return
-// without swinging out. Bound on the current: the limit plus a tenth; on the return: within 5 % of where it was in 50 ms,
-// five times the current loop's zero L_sigma / R, which the back-calculation follows.
+// without swinging out. Bound on the current: the limit plus a tenth; on the return: within 5 % of where it was in
+// 50 ms, five times the current loop's zero L_sigma / R, which the back-calculation follows.
 TEST_CASE("current loop: voltage limit and anti-windup", "[controllers][physics]") {
   for (const PublishedMachine& truth : published_machines()) {
     for (const Modulation kind : {Modulation::space_vector, Modulation::sine, Modulation::discontinuous}) {
@@ -177,8 +180,9 @@ TEST_CASE("current loop: voltage limit and anti-windup", "[controllers][physics]
 }
 
 // Dead time 2 us, 10 kHz, 20 Hz stator frequency. Uncompensated, the voltage missing is the square wave's fundamental
-// (4/pi) V_dc t_d f_sw (S.-G. Jeong, M.-H. Park, 1991), its fifth a fifth of that; compensated, a tenth may be left: the
-// sign is the reference current's at the period's middle, true within a period's turn of a crossing, 0.7 degrees.
+// (4/pi) V_dc t_d f_sw (S.-G. Jeong, M.-H. Park, 1991), its fifth a fifth of that; compensated, a tenth may be
+// left: the sign is the reference current's at the period's middle, true within a period's turn of a crossing, 0.7
+// degrees.
 TEST_CASE("current loop: dead-time compensation takes out the error", "[controllers][published]") {
   const PublishedMachine truth = barut_3kW();
   double fundamental[2], fifth[2], ripple[2];

@@ -92,8 +92,8 @@ TEST_CASE("number types: lanes give the bits of double", "[controllers][number_t
   }
 }
 
-// Single precision fed the same measurements: rounding of 6e-8 in angle, flux and integrals; the integrals' own rounding
-// gathers over the speed loop's 26 ms: 2e-3 of full duty is far below a dead time's 2e-2.
+// Single precision fed the same measurements: rounding of 6e-8 in angle, flux and integrals; the integrals' own
+// rounding gathers over the speed loop's 26 ms: 2e-3 of full duty is far below a dead time's 2e-2.
 TEST_CASE("number types: float stays near double", "[controllers][number_types]") {
   const Log log = drive_log(krause_3hp(), Modulation::space_vector, 1);
   const auto c = Method::prepare(log.setup, {});

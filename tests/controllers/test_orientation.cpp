@@ -10,8 +10,8 @@ using namespace slipbench::test;
 namespace {
 
 // Rotor of the true circuit with a stator current I e^{j angle(t)} whose angle runs straight over a period: RK4 in 20.
-Vec2<double> rotor_after(const Circuit<double>& c, Vec2<double> psi, const Vec2<double>& i_dq, double angle, double turn,
-                         double electrical_speed, double T) {
+Vec2<double> rotor_after(const Circuit<double>& c, Vec2<double> psi, const Vec2<double>& i_dq, double angle,
+                         double turn, double electrical_speed, double T) {
   const double tau = c.rotor_inductance() / c.rotor_resistance, L_m = c.magnetizing_inductance;
   const int n = 20;
   const double h = T / n;
@@ -61,14 +61,15 @@ Detuned imposed_currents(double kappa, double x) {
   const Vec2<double> i = turn_forward(f.angle, i_dq);
   const double commanded = 0.4 * i_dq.y;  // psi* i_q*; the factor 3/2 p L_m / L_r is common
   const Vec2<double> model = s.rotor_flux;
-  return {cross(psi, i) / commanded, magnitude(psi) / 0.4, std::atan2(cross(psi, model), dot(psi, model)) * 57.295779513};
+  return {cross(psi, i) / commanded, magnitude(psi) / 0.4,
+          std::atan2(cross(psi, model), dot(psi, model)) * 57.295779513};
 }
 
 }  // namespace
 
-// Closed form of detuned indirect orientation: R. Krishnan, F.C. Doran, IEEE Trans. Ind. Appl. 23(4), 1987; figures of the
-// published table for kappa = tau_r / tau_r*, x = i_q* / i_d*. Demanded: 0.1 %. Six printed digits: 2e-6. The time
-// discretisation adds (w_s T)^2 / 12 at most, 2e-5 at 130 rad/s and 100 us: 5e-5 is asked.
+// Closed form of detuned indirect orientation: R. Krishnan, F.C. Doran, IEEE Trans. Ind. Appl. 23(4), 1987; figures
+// of the published table for kappa = tau_r / tau_r*, x = i_q* / i_d*. Demanded: 0.1 %. Six printed digits: 2e-6.
+// The time discretisation adds (w_s T)^2 / 12 at most, 2e-5 at 130 rad/s and 100 us: 5e-5 is asked.
 TEST_CASE("orientation: detuned torque, flux and angle equal the closed form", "[controllers][published]") {
   struct Row {
     double x, kappa, torque, flux, angle_deg;
@@ -80,17 +81,18 @@ TEST_CASE("orientation: detuned torque, flux and angle equal the closed form", "
                       {2.0, 1.5, 0.75, 0.707107, 8.1301},       {2.0, 2.0, 0.588235, 0.542326, 12.5288}};
   for (const Row& row : rows) {
     const Detuned got = imposed_currents(row.kappa, row.x);
-    INFO("kappa " << row.kappa << " x " << row.x << " T " << got.torque << " psi " << got.flux << " deg " << got.angle_deg);
+    INFO("kappa " << row.kappa << " x " << row.x << " T " << got.torque << " psi " << got.flux << " deg "
+                  << got.angle_deg);
     CHECK(got.torque == Approx(row.torque).epsilon(5e-5));
     CHECK(got.flux == Approx(row.flux).epsilon(5e-5));
-    // The table's angle is commanded frame behind true flux with the sign of atan(kappa x) - atan(x); ours is model less
-    // truth: the same sign, since a current that is further ahead of the true flux sees it further behind.
+    // The table's angle is commanded frame behind true flux with the sign of atan(kappa x) - atan(x); ours is model
+    // less truth: the same sign, since a current that is further ahead of the true flux sees it further behind.
     CHECK(got.angle_deg == Approx(row.angle_deg).margin(0.003));
   }
 }
 
-// The same through the whole loop: inverter, delay, current control. The frame and the torque demanded are the controller's
-// own; currents are those it commands. 0.1 % is demanded.
+// The same through the whole loop: inverter, delay, current control. The frame and the torque demanded are the
+// controller's own; currents are those it commands. 0.1 % is demanded.
 TEST_CASE("orientation: detuned drive in closed loop meets the closed form", "[controllers][published]") {
   for (const double kappa : {0.75, 1.5}) {
     const PublishedMachine truth = krause_3hp();
@@ -111,8 +113,8 @@ TEST_CASE("orientation: detuned drive in closed loop meets the closed form", "[c
   }
 }
 
-// Matched parameters: what is left is the time discretisation, of order (w_s T)^2 / 12 of the current's angle, after the
-// bow of the current within a period is taken out. Aim: 0.01 degrees.
+// Matched parameters: what is left is the time discretisation, of order (w_s T)^2 / 12 of the current's angle,
+// after the bow of the current within a period is taken out. Aim: 0.01 degrees.
 TEST_CASE("orientation: matched model lies on the true flux", "[controllers][physics]") {
   for (const PublishedMachine& truth : published_machines()) {
     for (const double share : {-0.5, 0.05, 0.5, 1.0}) {
@@ -131,7 +133,8 @@ TEST_CASE("orientation: matched model lies on the true flux", "[controllers][phy
   }
 }
 
-// Given the true flux, direct orientation is the matched indirect one up to that 0.01 degrees: 0.1 % of torque and flux.
+// Given the true flux, direct orientation is the matched indirect one up to that 0.01 degrees: 0.1 % of torque and
+// flux.
 TEST_CASE("orientation: direct with the true flux equals indirect", "[controllers][physics]") {
   const PublishedMachine truth = barut_3kW();
   ControllerSetup indirect = setup_for(truth), direct = indirect;
@@ -150,8 +153,8 @@ TEST_CASE("orientation: direct with the true flux equals indirect", "[controller
   CHECK(a.torque_now() == Approx(b.torque_now()).epsilon(1e-3));
 }
 
-// A run that starts magnetised: model, current and integrals stand, so nothing may move. Rounding and the first periods'
-// missing voltage leave little: 0.2 % of the flux.
+// A run that starts magnetised: model, current and integrals stand, so nothing may move. Rounding and the first
+// periods' missing voltage leave little: 0.2 % of the flux.
 TEST_CASE("orientation: a magnetised start stands still", "[controllers][physics]") {
   const PublishedMachine truth = krause_3hp();
   ControllerSetup setup = setup_for(truth);

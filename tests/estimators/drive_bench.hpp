@@ -1,5 +1,6 @@
-// A small drive to try estimators on: machine and shaft in Runge-Kutta sub-steps, a voltage held over each control period,
-// noisy currents, indirect rotor-flux orientation with a speed loop. Control computed at k acts over [k+1, k+2).
+// A small drive to try estimators on: machine and shaft in Runge-Kutta sub-steps, a voltage held over each
+// control period, noisy currents, indirect rotor-flux orientation with a speed loop. Control computed at k
+// acts over [k+1, k+2).
 #pragma once
 
 #include <cmath>
@@ -35,10 +36,10 @@ class DriveBench {
  public:
   std::function<double(double)> speed_reference = [](double) { return 0.0; };  // mechanical rad/s
   std::function<double(double)> load_torque = [](double) { return 0.0; };      // N m
-  int speed_from = -1;                // -1: the true speed; else the rider that closes the loop
-  double magnetising_s = 0.3;         // speed reference waits for the flux
-  double noise_share = 0.01;          // of rated peak current, rms a phase
-  double believed_R_r = 1.0;          // factor, for controller (riders have their own setup)
+  int speed_from = -1;         // -1: the true speed; else the rider that closes the loop
+  double magnetising_s = 0.3;  // speed reference waits for the flux
+  double noise_share = 0.01;   // of rated peak current, rms a phase
+  double believed_R_r = 1.0;   // factor, for controller (riders have their own setup)
   double current_bandwidth = rad_per_turn * 200.0, speed_bandwidth = rad_per_turn * 5.0;
 
   DriveBench(const PublishedMachine& machine, unsigned seed)
@@ -74,7 +75,8 @@ class DriveBench {
       const double w_r = c.pole_pairs * held_speed;
       const double flux_goal = flux_reference_ * std::min(1.0, w_rated / std::max(std::fabs(w_r), 1.0));
       flux_ref += (flux_goal - flux_ref) * T_ / 0.01;
-      const double i_d = std::min(flux_ref / c.magnetizing_inductance + (flux_goal - flux_ref) / (0.01 * R_R), most_current);
+      const double i_d =
+          std::min(flux_ref / c.magnetizing_inductance + (flux_goal - flux_ref) / (0.01 * R_R), most_current);
       const double goal = t < magnetising_s ? 0.0 : speed_reference(t - magnetising_s);
       const double kp = machine_.inertia * speed_bandwidth, error = goal - held_speed;
       const double wanted = kp * error + speed_integral;
@@ -118,7 +120,7 @@ class DriveBench {
     const double h = T_ / steps, load = load_torque(t - magnetising_s);
     for (int n = 0; n < steps; ++n) {
       const Full x{psi_, speed_}, k1 = slope(x, u, load), k2 = slope(plus(x, h / 2, k1), u, load),
-                 k3 = slope(plus(x, h / 2, k2), u, load), k4 = slope(plus(x, h, k3), u, load);
+                                  k3 = slope(plus(x, h / 2, k2), u, load), k4 = slope(plus(x, h, k3), u, load);
       const Full next = plus(plus(plus(plus(x, h / 6, k1), h / 3, k2), h / 3, k3), h / 6, k4);
       psi_ = next.psi;
       speed_ = next.speed;

@@ -1,5 +1,5 @@
-// Linearised error dynamics of an observer at a steady operating point, discretised as the code itself is: the Jacobian of
-// `step` in the frame that turns with the flux, by central differences, and its eigenvalues.
+// Linearised error dynamics of an observer at a steady operating point, discretised as the code itself is:
+// the Jacobian of `step` in the frame that turns with the flux, by central differences, and its eigenvalues.
 #pragma once
 
 #include <Eigen/Dense>
@@ -15,11 +15,12 @@ namespace slipbench::tests {
 
 // A steady state of the machine with stepwise held voltage: everything turns by w_s T a period.
 struct SteadyPoint {
-  double w_s, w_r;            // electrical rad/s
-  Vec2<double> flux, current, voltage;   // at k = 0, voltage over [-1, 0)
+  double w_s, w_r;                      // electrical rad/s
+  Vec2<double> flux, current, voltage;  // at k = 0, voltage over [-1, 0)
 };
 
-// Flux along alpha; the held voltage's steady state is solved exactly on the machine's series (complex 2 x 2).
+// Flux along alpha; the held voltage's steady state is solved exactly on the machine's series (complex 2 x
+// 2).
 inline SteadyPoint steady_point(const BelievedMachine<double>& m, double flux, double torque, double w_r) {
   using C = std::complex<double>;
   const double i_q = torque / (m.torque_factor * flux), w_s = w_r + m.R_R * i_q / flux;
@@ -48,6 +49,7 @@ inline Vec2<double> turned(const Vec2<double>& a, double by) {
 inline Luenberger::State<double> turned(Luenberger::State<double> s, double by) {
   s.x.current = turned(s.x.current, by);
   s.x.flux = turned(s.x.flux, by);
+  s.angle += by;
   return s;
 }
 inline ReducedOrder::State<double> turned(ReducedOrder::State<double> s, double by) {
@@ -59,7 +61,7 @@ inline ReducedOrder::State<double> turned(ReducedOrder::State<double> s, double 
 inline void settle(Luenberger::State<double>& s, const SteadyPoint& p) {
   s.x = {p.current, p.flux};
   s.speed = p.w_r;
-  s.frequency = p.w_s;
+  s.frequency = s.frequency_between = p.w_s;
   s.started = 1.0;
 }
 inline void settle(ReducedOrder::State<double>& s, const SteadyPoint& p) {

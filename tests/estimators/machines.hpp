@@ -15,8 +15,8 @@ struct PublishedMachine {
   double inertia;
 };
 
-// P.C. Krause, O. Wasynczuk, S.D. Sudhoff, "Analysis of Electric Machinery and Drive Systems", 2nd ed. 2002, Table 4.10-1:
-// 3 hp, 220 V, 60 Hz, 4 poles, 1710 rpm; reactances at 60 Hz. Torque here is power over speed.
+// P.C. Krause, O. Wasynczuk, S.D. Sudhoff, "Analysis of Electric Machinery and Drive Systems", 2nd ed. 2002,
+// Table 4.10-1: 3 hp, 220 V, 60 Hz, 4 poles, 1710 rpm; reactances at 60 Hz. Torque here is power over speed.
 inline PublishedMachine krause_3hp() {
   constexpr double w = 376.99111843077518862;
   return {"Krause 3 hp", {2, 0.435, 0.816, 0.754 / w, 0.754 / w, 26.13 / w}, {2238, 220, 5.8, 60, 1710, 12.5}, 0.089};
@@ -27,10 +27,11 @@ inline PublishedMachine barut_3kW() {
 }
 // M. Hinkkanen, IEEE Trans. Ind. Electron. 51(5), 2004, 1049-1055 (from memory): inverse-gamma circuit.
 inline PublishedMachine hinkkanen_2kW() {
-  return {"Hinkkanen 2.2 kW", from_inverse_gamma(2, 3.67, 1.65, 0.0209, 0.264), {2200, 400, 5.0, 50, 1430, 14.6}, 0.0155};
+  return {
+      "Hinkkanen 2.2 kW", from_inverse_gamma(2, 3.67, 1.65, 0.0209, 0.264), {2200, 400, 5.0, 50, 1430, 14.6}, 0.0155};
 }
-// R. Krishnan, "Electric Motor Drives: Modeling, Analysis, and Control", 2001, ch. 5 and 8 examples. Speed and current at the
-// circuit's slip for 5 hp are this file's.
+// R. Krishnan, "Electric Motor Drives: Modeling, Analysis, and Control", 2001, ch. 5 and 8 examples. Speed
+// and current at the circuit's slip for 5 hp are this file's.
 inline PublishedMachine krishnan_5hp() {
   return {"Krishnan 5 hp", {2, 0.277, 0.183, 0.0015, 0.00226, 0.0538}, {3730, 200, 14, 60, 1760, 20.2}, 0.0165};
 }

@@ -1,5 +1,6 @@
-// The estimators closing the loop of a drive without a speed sensor: matched parameters, current noise of 1 % of rated peak,
-// torque steps, generating down to 0.5 Hz, reversal, and the known price of a wrong rotor resistance.
+// The estimators closing the loop of a drive without a speed sensor: matched parameters, current noise of 1 %
+// of rated peak, torque steps, generating down to 0.5 Hz, reversal, and the known price of a wrong rotor
+// resistance.
 #include <catch2/catch.hpp>
 
 #include "estimators/methods.hpp"
@@ -26,11 +27,12 @@ struct Point {
   std::string name;
   double speed, torque;  // mechanical rad/s, N m
 };
-// Motoring and generating at shares of rated speed, 0.7 of rated torque (less in proportion above rated speed), and generating
-// with the stator at +-0.5 Hz.
+// Motoring and generating at shares of rated speed, 0.7 of rated torque (less in proportion above rated
+// speed), and generating with the stator at +-0.5 Hz.
 Point at_speed(const PublishedMachine& machine, double share, double sense) {
   const double torque = 0.7 * machine.plate.torque_Nm / std::max(1.0, share);
-  return {(sense > 0 ? "motoring " : "generating ") + std::to_string(share), share * machine.plate.speed_rad_s(), sense * torque};
+  return {(sense > 0 ? "motoring " : "generating ") + std::to_string(share), share * machine.plate.speed_rad_s(),
+          sense * torque};
 }
 Point at_half_hertz(const PublishedMachine& machine, double sense) {
   const double torque = 0.7 * machine.plate.torque_Nm;
@@ -54,7 +56,8 @@ void check_point(const PublishedMachine& machine, const Point& point, int loop) 
     if (truth.time > 3.3) least_trust = std::min(least_trust, e.trust);
   });
   INFO(machine.name << ", " << riders[std::size_t(loop)].name << " in the loop, " << point.name << ": steady rms "
-                    << 100 * steady.rms() << " %, most " << 100 * steady.most << " %, step " << 100 * after_step.rms() << " %");
+                    << 100 * steady.rms() << " %, most " << 100 * steady.most << " %, step " << 100 * after_step.rms()
+                    << " %");
   // The project's own demands: 1 % of rated speed steady, 3 % rms for 0.5 s after a torque step.
   CHECK(steady.rms() < 0.01);
   CHECK(steady.most < 0.01);
@@ -85,8 +88,9 @@ TEST_CASE("estimators: each holds a sensorless drive at every operating point", 
   }
 }
 
-// Bias of speed with rotor resistance believed wrong: slip frequency (1 - believed / true) / pole pairs. The flux is right all
-// the same (R_R and alpha scale together, and the d-axis balance R_R i_d = alpha psi does not change), so the slip alone is wrong.
+// Bias of speed with rotor resistance believed wrong: slip frequency (1 - believed / true) / pole pairs. The
+// flux is right all the same (R_R and alpha scale together, and the d-axis balance R_R i_d = alpha psi does
+// not change), so the slip alone is wrong.
 TEST_CASE("estimators: a wrong rotor resistance costs the slip's share and no more", "[estimators][drive]") {
   for (const PublishedMachine& machine : {barut_3kW(), krishnan_5hp()}) {
     for (const double believed : {0.5, 1.5}) {
@@ -121,7 +125,9 @@ TEST_CASE("estimators: a loaded drive reverses through zero speed without a sens
       const double rated = machine.plate.speed_rad_s();
       DriveBench bench(machine, 3);
       bench.speed_from = loop;
-      bench.speed_reference = [&](double t) { return 0.6 * rated * (t < 1 ? std::min(1.0, t / 0.5) : std::max(-1.0, 3.0 - 2.0 * t)); };
+      bench.speed_reference = [&](double t) {
+        return 0.6 * rated * (t < 1 ? std::min(1.0, t / 0.5) : std::max(-1.0, 3.0 - 2.0 * t));
+      };
       bench.load_torque = [&](double t) { return t > 0.7 ? 0.7 * machine.plate.torque_Nm : 0.0; };
       std::vector<Rider> riders = all_riders(setup_of(machine));
       SpeedScore way{0.9, 2.6, rated}, after{2.6, 3.4, rated};

@@ -1,5 +1,5 @@
-// Stability of the observers' linearised error dynamics, as discretised, and a published boundary of instability that the
-// same linearisation must find when the gain is taken away.
+// Stability of the observers' linearised error dynamics, as discretised, and a published boundary of
+// instability that the same linearisation must find when the gain is taken away.
 #include <catch2/catch.hpp>
 
 #include "tests/estimators/error_dynamics.hpp"
@@ -21,14 +21,15 @@ struct Map {
   }
 };
 
-// |speed| to 150 % and |torque| to 150 % of rated, flux weakened above rated speed, |stator frequency| >= 0.5 Hz; and the line
-// of 0.5 Hz itself, both ways round, at full flux.
+// |speed| to 150 % and |torque| to 150 % of rated, flux weakened above rated speed, |stator frequency| >= 0.5
+// Hz; and the line of 0.5 Hz itself, both ways round, at full flux.
 template <class Method>
 Map stability_map(const PublishedMachine& machine) {
   const EstimatorSetup setup = setup_of(machine);
   const auto c = Method::prepare(setup, {});
   const BelievedMachine<double>& m = c.machine;
-  const double flux = nominal_rotor_flux(setup), rated = machine.plate.speed_rad_s() * m.pole_pairs, least = rad_per_turn * 0.5;
+  const double flux = nominal_rotor_flux(setup), rated = machine.plate.speed_rad_s() * m.pole_pairs,
+               least = rad_per_turn * 0.5;
   Map map;
   for (int speed = -150; speed <= 150; speed += 5) {
     for (int torque = -150; torque <= 150; torque += 10) {
@@ -64,7 +65,8 @@ double slowest_at_zero_gain(const PublishedMachine& machine, double w_s, double 
 
 }  // namespace
 
-TEST_CASE("luenberger: error dynamics are stable wherever the stator frequency is 0.5 Hz or more", "[estimators][stability]") {
+TEST_CASE("luenberger: error dynamics are stable wherever the stator frequency is 0.5 Hz or more",
+          "[estimators][stability]") {
   for (const PublishedMachine& machine : published_machines()) {
     const Map map = stability_map<Luenberger>(machine);
     INFO(machine.name << ": " << map.points << " points, slowest " << map.slowest << " 1/s");
@@ -89,9 +91,10 @@ TEST_CASE("reduced_order: error dynamics are stable wherever the stator frequenc
   }
 }
 
-// Published: region of instability of the speed-adaptive full-order observer at zero gain; the boundary is w_s (-T_s / T_r) in
-// slip. H. Kubota et al., IEEE Trans. Ind. Appl. 38(4), 2002, 1081-1086; M. Hinkkanen, J. Luomi, IEEE Trans. Ind. Electron. 51(6),
-// 2004, 1318-1328. Values for psi = 0.9 Wb, k_i = 2000: computed independently from the continuous equations.
+// Published: region of instability of the speed-adaptive full-order observer at zero gain; the boundary is
+// w_s (-T_s / T_r) in slip. H. Kubota et al., IEEE Trans. Ind. Appl. 38(4), 2002, 1081-1086; M. Hinkkanen, J.
+// Luomi, IEEE Trans. Ind. Electron. 51(6), 2004, 1318-1328. Values for psi = 0.9 Wb, k_i = 2000: computed
+// independently from the continuous equations.
 TEST_CASE("luenberger: zero gain shows the published generating instability", "[estimators][published]") {
   const PublishedMachine machine = hinkkanen_2kW();
   struct Row {

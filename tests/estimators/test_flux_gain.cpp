@@ -2,14 +2,17 @@
 #include <catch2/catch.hpp>
 #include <complex>
 
-#include "estimators/flux_gain.hpp"
+#include "estimators/believed_machine.hpp"
+#include "tests/estimators/machines.hpp"
 
 using namespace slipbench;
+using namespace slipbench::tests;
 using C = std::complex<double>;
 
 namespace {
 
-// Rate of the error e = psi_hat - psi, seen from the estimated flux turning at w_s, for a given current and w_r.
+// Rate of the error e = psi_hat - psi, seen from the estimated flux turning at w_s, for a given current and
+// w_r.
 C error_rate(C psi_hat, C error, C current, double w_s, double w_r, double R_R, double alpha, C g) {
   const C j(0.0, 1.0), psi = psi_hat - error, along = psi_hat / std::abs(psi_hat);
   const C emf = R_R * current - (alpha - j * w_r) * psi;
@@ -21,11 +24,14 @@ C error_rate(C psi_hat, C error, C current, double w_s, double w_r, double R_R, 
 }  // namespace
 
 TEST_CASE("flux gain: trace and determinant of the error dynamics are the chosen ones", "[estimators][closed_form]") {
-  const double alpha = 9.2, R_R = 1.93, zeta = 0.7, stiffness = 1.0, cap_Hz = 15.0;
-  const FluxGain<double> k = flux_gain_for(alpha, zeta, stiffness, cap_Hz);
+  const double zeta = 0.7, stiffness = 1.0, cap_Hz = 15.0;
+  const EstimatorSetup setup = setup_of(barut_3kW());
+  FluxGain<double> k = flux_gain_for(setup, zeta, stiffness, cap_Hz);
+  k.most_slip = 1e9;  // the law itself, any slip
+  const double alpha = believe(setup).alpha, R_R = believe(setup).R_R;
   for (double w_s : {-500.0, -60.0, -3.14, 0.0, 3.14, 20.0, 400.0}) {
     for (double w_r : {-450.0, -10.0, 0.0, 3.0, 80.0, 500.0}) {
-      const Vec2<double> g = flux_gain(k, w_s, w_r);
+      const Vec2<double> g = flux_gain(k, 0.85, w_s, w_r);  // at nominal flux
       // Error dynamics are linear: columns from unit errors, any current and flux direction.
       const C psi_hat = 0.85 * std::polar(1.0, 0.6), current(4.0, -7.0), along = psi_hat / std::abs(psi_hat);
       const C x = error_rate(psi_hat, 1e-3 * along, current, w_s, w_r, R_R, alpha, {g.x, g.y}) / 1e-3;
@@ -41,4 +47,15 @@ TEST_CASE("flux gain: trace and determinant of the error dynamics are the chosen
       CHECK(std::isfinite(g.y));
     }
   }
+}
+
+TEST_CASE("flux gain: fades with the flux and stays bounded at impossible slips", "[estimators]") {
+  const EstimatorSetup setup = setup_of(krishnan_5hp());
+  const FluxGain<double> k = flux_gain_for(setup, 0.7, 1.0, 15.0);
+  const double flux = nominal_rotor_flux(setup), w_s = 300.0;
+  const Vec2<double> full = flux_gain(k, flux, w_s, w_s - 5.0), quarter = flux_gain(k, 0.25 * flux, w_s, w_s - 5.0);
+  CHECK(quarter.x == Approx(0.25 * full.x));
+  CHECK(quarter.y == Approx(0.25 * full.y));
+  CHECK(magnitude(flux_gain(k, flux, w_s, 0.0)) < 2.0 * magnitude(full));  // not 2 zeta w_cap / alpha = 40 times
+  CHECK(magnitude(flux_gain(k, 0.0, w_s, w_s)) == 0.0);
 }

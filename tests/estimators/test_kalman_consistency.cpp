@@ -1,11 +1,12 @@
-// Is the filter as sure as it has a right to be? Plant equal to the filter's own discrete model, process noise of the
-// filter's Q, x0 drawn from P0: normalised errors must follow chi-square. And: the covariance stays positive for good.
+// Is the filter as sure as it has a right to be? Plant equal to the filter's own discrete model, process
+// noise of the filter's Q, x0 drawn from P0: normalised errors must follow chi-square. And: the covariance
+// stays positive for good.
 #include <Eigen/Dense>
 #include <catch2/catch.hpp>
 #include <random>
 
-#include "tests/estimators/error_dynamics.hpp"
 #include "estimators/extended_kalman.hpp"
+#include "tests/estimators/error_dynamics.hpp"
 
 using namespace slipbench;
 using namespace slipbench::tests;
@@ -102,16 +103,16 @@ bool nis_inside(double nis, double n) { return std::fabs(nis - 2.0) < 1.959964 *
 
 }  // namespace
 
-// 95 % band of the mean of 50 chi-square values of 5 degrees: chi2(250) / 50. Y. Bar-Shalom, X.R. Li, T. Kirubarajan,
-// "Estimation with Applications to Tracking and Navigation", 2001, sec. 5.4.
+// 95 % band of the mean of 50 chi-square values of 5 degrees: chi2(250) / 50. Y. Bar-Shalom, X.R. Li, T.
+// Kirubarajan, "Estimation with Applications to Tracking and Navigation", 2001, sec. 5.4.
 TEST_CASE("extended_kalman: normalised errors follow chi-square on its own model", "[estimators][consistency]") {
   constexpr int runs = 50, ticks = 1000;
   for (const int sensors : {3, 2}) {
     const Consistency c = consistency(sensors, sensors, runs, ticks, 2);
     const double share = share_inside(c.nees, 4.161956, 5.913773);
     INFO(sensors << " sensors: NEES inside at " << 100.0 * share << " % of ticks, NIS " << c.nis);
-    // 95 % is what an exact filter gets on average; ticks are correlated over some 10 ms, so single seeds scatter (0.91 to
-    // 0.98). The seed is fixed; the average over many is the next test.
+    // 95 % is what an exact filter gets on average; ticks are correlated over some 10 ms, so single seeds
+    // scatter (0.91 to 0.98). The seed is fixed; the average over many is the next test.
     CHECK(share >= 0.95);
     CHECK(nis_inside(c.nis, double(runs) * ticks));
   }
@@ -131,7 +132,8 @@ TEST_CASE("extended_kalman: normalised errors over twenty seeds", "[estimators][
   }
 }
 
-TEST_CASE("extended_kalman: a filter told wrongly about its sensors is found inconsistent", "[estimators][consistency]") {
+TEST_CASE("extended_kalman: a filter told wrongly about its sensors is found inconsistent",
+          "[estimators][consistency]") {
   constexpr int runs = 50, ticks = 1000;
   const Consistency c = consistency(3, 2, runs, ticks, 2);
   CHECK_FALSE(nis_inside(c.nis, double(runs) * ticks));
@@ -139,7 +141,8 @@ TEST_CASE("extended_kalman: a filter told wrongly about its sensors is found inc
 
 namespace {
 
-// A machine in steady rotation with noise, over and over (or dead: noise alone); smallest correlation eigenvalue met, looked at now and then.
+// A machine in steady rotation with noise, over and over (or dead: noise alone); smallest correlation
+// eigenvalue met, looked at now and then.
 template <class Real>
 double least_over(std::int64_t steps, double shaft, bool live = true) {
   const EstimatorSetup setup = setup_of(barut_3kW());
@@ -174,7 +177,8 @@ double least_over(std::int64_t steps, double shaft, bool live = true) {
 
 }  // namespace
 
-// Symmetric by construction: one triangle is kept. Positive: the smallest eigenvalue of the correlation matrix.
+// Symmetric by construction: one triangle is kept. Positive: the smallest eigenvalue of the correlation
+// matrix.
 TEST_CASE("extended_kalman: covariance stays positive", "[estimators][kalman]") {
   for (const double shaft : {0.0, 1.0}) {
     // Measured 0.3 and steady: 0.1 tells a drift from scatter.

@@ -1,5 +1,5 @@
-// The filter's model: hand-written Jacobian against automatic differentiation, the sandwich product against dense
-// matrices, the sensors' noise against its own mixing, the series against the matrix exponential.
+// The filter's model: hand-written Jacobian against automatic differentiation, the sandwich product against
+// dense matrices, the sensors' noise against its own mixing, the series against the matrix exponential.
 #include <Eigen/Dense>
 #include <catch2/catch.hpp>
 #include <random>
@@ -48,8 +48,10 @@ TEST_CASE("extended_kalman: hand-written Jacobian equals automatic differentiati
       const auto model = ExtendedKalman::prepare(setup, given).model;
       const auto dual_model = in_number<KalmanModel<D>, D>(model);
       for (int draw = 0; draw < 50; ++draw) {
-        const KalmanVector<double> x{{20.0 * any(random), 20.0 * any(random)}, {any(random), any(random)},
-                                     600.0 * any(random), 20.0 * any(random)};
+        const KalmanVector<double> x{{20.0 * any(random), 20.0 * any(random)},
+                                     {any(random), any(random)},
+                                     600.0 * any(random),
+                                     20.0 * any(random)};
         const Vec2<double> u{300.0 * any(random), 300.0 * any(random)};
         auto dual = in_number<KalmanVector<D>, D>(x);
         std::size_t index = 0;
@@ -60,7 +62,8 @@ TEST_CASE("extended_kalman: hand-written Jacobian equals automatic differentiati
         each_number(next.x, [&](const D& number) {
           for (Eigen::Index c = 0; c < 6; ++c) {
             // Same polynomial, other order of sums: a few roundings of the row's largest entry.
-            CHECK(hand(row, c) == Approx(number.slope[std::size_t(c)]).margin(1e-14 * (1.0 + hand.row(row).cwiseAbs().maxCoeff())));
+            CHECK(hand(row, c) ==
+                  Approx(number.slope[std::size_t(c)]).margin(1e-14 * (1.0 + hand.row(row).cwiseAbs().maxCoeff())));
           }
           ++row;
         });
@@ -71,7 +74,8 @@ TEST_CASE("extended_kalman: hand-written Jacobian equals automatic differentiati
 
 TEST_CASE("extended_kalman: covariance prediction equals the dense product", "[estimators][kalman]") {
   const auto model = ExtendedKalman::prepare(setup_of(barut_3kW()), {}).model;
-  const auto F = predict_with_jacobian(model, KalmanVector<double>{{5.0, -3.0}, {0.8, 0.1}, 290.0, 5.0}, {100.0, 250.0}).F;
+  const auto F =
+      predict_with_jacobian(model, KalmanVector<double>{{5.0, -3.0}, {0.8, 0.1}, 290.0, 5.0}, {100.0, 250.0}).F;
   const Matrix6 root = Matrix6::Random(), full = root * root.transpose();
   Symmetric6<double> P;
   for (std::size_t r = 0; r < 6; ++r) {
@@ -81,7 +85,8 @@ TEST_CASE("extended_kalman: covariance prediction equals the dense product", "[e
   CHECK((dense(sandwich(F, P)) - wanted).cwiseAbs().maxCoeff() < 1e-13 * wanted.cwiseAbs().maxCoeff());  // rounding
 }
 
-// Exact solution: exponential of the complex 2 x 2, by Eigen's own (Pade) matrix functions, with constant voltage.
+// Exact solution: exponential of the complex 2 x 2, by Eigen's own (Pade) matrix functions, with constant
+// voltage.
 TEST_CASE("believed machine: a period's series agrees with the matrix exponential", "[estimators][closed_form]") {
   using C = std::complex<double>;
   for (const PublishedMachine& machine : published_machines()) {
@@ -96,8 +101,9 @@ TEST_CASE("believed machine: a period's series agrees with the matrix exponentia
     A(1, 1) = -e;
     const Eigen::Vector3cd x{C(5.0, -8.0), C(0.4, 0.6), C(-150.0, 200.0)}, exact = (m.period * A).exp() * x;
     const auto next = ahead(m, {{5.0, -8.0}, {0.4, 0.6}}, {-150.0, 200.0}, w_r).state;
-    // The first term left out is (|A| T)^4 / 24 of the state; |A| T < 0.2 with all entries in play: 1e-4 of 1 A at most
-    // for current, whose row is 1 / L_sigma larger, and (w T)^4 / 24 = 4e-7 of 1 Wb, twice over, for flux.
+    // The first term left out is (|A| T)^4 / 24 of the state; |A| T < 0.2 with all entries in play: 1e-4 of 1
+    // A at most for current, whose row is 1 / L_sigma larger, and (w T)^4 / 24 = 4e-7 of 1 Wb, twice over,
+    // for flux.
     CHECK(std::abs(exact(0) - C(next.current.x, next.current.y)) < 5e-4);
     CHECK(std::abs(exact(1) - C(next.flux.x, next.flux.y)) < 2e-6);
   }

@@ -28,16 +28,20 @@ TEST_CASE("methods: kinds and settings are well formed", "[estimators][contract]
       // The key ends in its unit, written without signs: "N m" as Nm, "rad/s" as rad_s.
       std::string unit;
       for (const char letter : s.unit) {
-        if (letter == '/') unit += '_';
-        else if (letter != ' ') unit += letter;
+        if (letter == '/')
+          unit += '_';
+        else if (letter != ' ')
+          unit += letter;
       }
       CHECK(s.name.ends_with(unit));
     }
   });
-  CHECK(kinds == std::set<std::string_view>{"luenberger", "reduced_order", "extended_kalman"});  // kinds the scenario contract names
+  CHECK(kinds == std::set<std::string_view>{"luenberger", "reduced_order",
+                                            "extended_kalman"});  // kinds the scenario contract names
 }
 
-TEST_CASE("methods: constants are finite at every corner of every setting's range that a drive would use", "[estimators][contract]") {
+TEST_CASE("methods: constants are finite at every corner of every setting's range that a drive would use",
+          "[estimators][contract]") {
   const EstimatorSetup setup = setup_of(krause_3hp());
   each_estimator_method([&]<class Method>() {
     for (const Setting& s : Method::settings) {
@@ -75,16 +79,20 @@ TEST_CASE("methods: covariance is filled by the filter alone", "[estimators][con
   });
 }
 
-// Flux of the T circuit at rated voltage, frequency and speed, by the textbook phasor circuit solved with complex numbers.
+// Flux of the T circuit at rated voltage, frequency and speed, by the textbook phasor circuit solved with
+// complex numbers.
 TEST_CASE("methods: nominal flux is the circuit's", "[estimators][closed_form]") {
   using C = std::complex<double>;
   for (const PublishedMachine& machine : published_machines()) {
     const EstimatorSetup setup = setup_of(machine);
     const Circuit<double>& c = machine.circuit;
     const double w = machine.plate.angular_frequency(), slip = 1.0 - c.pole_pairs * machine.plate.speed_rad_s() / w;
-    const C j(0.0, 1.0), z_m = j * w * c.magnetizing_inductance, z_r = c.rotor_resistance / slip + j * w * c.rotor_leakage;
-    const C i_s = machine.plate.phase_peak_V() / (c.stator_resistance + j * w * c.stator_leakage + z_m * z_r / (z_m + z_r));
+    const C j(0.0, 1.0), z_m = j * w * c.magnetizing_inductance,
+                         z_r = c.rotor_resistance / slip + j * w * c.rotor_leakage;
+    const C i_s =
+        machine.plate.phase_peak_V() / (c.stator_resistance + j * w * c.stator_leakage + z_m * z_r / (z_m + z_r));
     const C i_r = -i_s * z_m / (z_m + z_r), psi_r = c.magnetizing_inductance * i_s + c.rotor_inductance() * i_r;
-    CHECK(nominal_rotor_flux(setup) * believe(setup).per_flux_ratio == Approx(std::abs(psi_r)).epsilon(1e-12));  // rounding
+    CHECK(nominal_rotor_flux(setup) * believe(setup).per_flux_ratio ==
+          Approx(std::abs(psi_r)).epsilon(1e-12));  // rounding
   }
 }

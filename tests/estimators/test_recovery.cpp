@@ -1,5 +1,5 @@
-// Starting and recovering: from nothing, at standstill, woken up on a running machine, on mains-like transients, and on
-// input that makes no sense.
+// Starting and recovering: from nothing, at standstill, woken up on a running machine, on mains-like
+// transients, and on input that makes no sense.
 #include <catch2/catch.hpp>
 #include <limits>
 
@@ -14,8 +14,8 @@ namespace {
 bool sane(const Estimate<double>& e) {
   bool finite = true;
   each_number(e, [&](const double& x) { finite = finite && std::isfinite(x); });
-  return finite && e.trust >= 0.0 && e.trust <= 1.0 && e.rotor_flux >= 0.0 && e.rotor_flux_angle >= -3.14159265358979324 &&
-         e.rotor_flux_angle < 3.14159265358979324;
+  return finite && e.trust >= 0.0 && e.trust <= 1.0 && e.rotor_flux >= 0.0 &&
+         e.rotor_flux_angle >= -3.14159265358979324 && e.rotor_flux_angle < 3.14159265358979324;
 }
 
 template <class F>
@@ -112,6 +112,39 @@ TEST_CASE("estimators: woken up on a running machine they find it", "[estimators
   }
 }
 
+// Believing anything at all - flux none, half or full along the wrong axis, speed rated either way - about a
+// machine that runs.
+TEST_CASE("estimators: begun with a wrong belief they come right", "[estimators][recovery]") {
+  const PublishedMachine machine = krause_3hp();
+  const double rated = machine.plate.speed_rad_s(), flux = nominal_rotor_flux(setup_of(machine));
+  for (const double share : {0.1, 0.6, -0.6}) {
+    std::vector<Rider> inner, one{{"none", {}}};
+    for (const double part : {0.0, 0.5, 1.0}) {
+      for (const double turn : {-1.0, 0.0, 1.0}) {
+        EstimatorSetup wrong = setup_of(machine);
+        wrong.start_rotor_flux_Wb = part * flux;
+        wrong.start_speed_rad_s = turn * rated;
+        each_estimator_method([&]<class Method>() { inner.push_back(rider<Method>(wrong)); });
+      }
+    }
+    std::vector<Estimate<double>> estimates(inner.size());
+    one[0].step = [&](const Sample<double>& s) {
+      for (std::size_t n = 0; n < inner.size() && s.tick >= 12000; ++n) estimates[n] = inner[n].step(s);
+      return Estimate<double>{};
+    };
+    DriveBench bench(machine, 3);
+    bench.speed_reference = [&](double t) { return share * rated * std::min(1.0, 2.0 * t); };
+    bench.load_torque = [&](double t) { return t > 0.5 ? 0.5 * machine.plate.torque_Nm : 0.0; };
+    double true_speed = 0.0;
+    bench.run(2.4, one, [&](const Truth& truth, const std::vector<Estimate<double>>&) { true_speed = truth.speed; });
+    for (std::size_t n = 0; n < inner.size(); ++n) {
+      INFO(inner[n].name << " at " << share << ", belief " << n / 3);
+      // 1.2 s later, some fourteen rotor time constants.
+      CHECK(std::fabs(estimates[n].speed - true_speed) < 0.02 * rated);
+    }
+  }
+}
+
 TEST_CASE("estimators: any finite input gives finite, bounded answers, and they recover", "[estimators][recovery]") {
   const PublishedMachine machine = hinkkanen_2kW();
   const EstimatorSetup setup = setup_of(machine);
@@ -129,7 +162,8 @@ TEST_CASE("estimators: any finite input gives finite, bounded answers, and they 
       const Estimate<double> e = r.step(s);
       REQUIRE(sane(e));
       // Held inside three times rated, synchronous.
-      REQUIRE(std::fabs(e.speed) <= 3.0 * machine.plate.angular_frequency() / machine.circuit.pole_pairs * (1.0 + 1e-12));
+      REQUIRE(std::fabs(e.speed) <=
+              3.0 * machine.plate.angular_frequency() / machine.circuit.pole_pairs * (1.0 + 1e-12));
     }
   });
 }

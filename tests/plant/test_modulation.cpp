@@ -13,7 +13,9 @@ namespace {
 constexpr double pi = 3.14159265358979323846;
 constexpr Modulation kinds[] = {Modulation::space_vector, Modulation::sine, Modulation::discontinuous};
 
-Vec2<double> vector_at(double amplitude, double angle) { return {amplitude * std::cos(angle), amplitude * std::sin(angle)}; }
+Vec2<double> vector_at(double amplitude, double angle) {
+  return {amplitude * std::cos(angle), amplitude * std::sin(angle)};
+}
 
 // Amplitude of harmonic h over one turn of x(angle), n samples at the middles of equal steps.
 template <class F>
@@ -28,8 +30,8 @@ double harmonic(int h, int n, F x) {
 
 }  // namespace
 
-// H.W. van der Broeck, H.-C. Skudelny, G. Stanke, IEEE Trans. Ind. Appl. 24(1), 1988: V = 0.5 V_dc, 20 degrees, T_s = 100 us.
-// Twelve printed decimals of microseconds: 1e-11.
+// H.W. van der Broeck, H.-C. Skudelny, G. Stanke, IEEE Trans. Ind. Appl. 24(1), 1988: V = 0.5 V_dc, 20 degrees, T_s
+// = 100 us. Twelve printed decimals of microseconds: 1e-11.
 TEST_CASE("space vector modulation: dwell times", "[plant][published]") {
   const double V_dc = 540.0, T_s = 100.0;
   const Phases<double> d = modulate(Modulation::space_vector, vector_at(0.5 * V_dc, 20.0 * pi / 180.0), V_dc);
@@ -39,8 +41,8 @@ TEST_CASE("space vector modulation: dwell times", "[plant][published]") {
   CHECK(T_s * d.c == Approx(0.5 * 14.713146804755).epsilon(1e-11));
 }
 
-// Linear up to 1/2 (sine) and 1/sqrt 3 of the link (others; same source): the mean applied is the command to rounding (a few
-// ulp of 540 V, 1e-12 of it), and 0.1 % more is not reached at every angle.
+// Linear up to 1/2 (sine) and 1/sqrt 3 of the link (others; same source): the mean applied is the command to
+// rounding (a few ulp of 540 V, 1e-12 of it), and 0.1 % more is not reached at every angle.
 TEST_CASE("modulation: linear limits", "[plant][published]") {
   CHECK(linear_limit(Modulation::sine) == 0.5);
   CHECK(linear_limit(Modulation::space_vector) == Approx(0.5773502691896).epsilon(1e-12));
@@ -63,16 +65,15 @@ TEST_CASE("modulation: linear limits", "[plant][published]") {
   }
 }
 
-// The clamp ends in six-step: fundamental 2/pi of the link (same source), from below. Sampled at n points the square wave's
-// fundamental is exact to (6 pi / n)^2 / 6 = 5e-8.
+// The clamp ends in six-step: fundamental 2/pi of the link (same source), from below. Sampled at n points the
+// square wave's fundamental is exact to (6 pi / n)^2 / 6 = 5e-8.
 TEST_CASE("modulation: the clamped fundamental nears six-step from below", "[plant][published]") {
   const int n = 36000;
   for (const Modulation kind : kinds) {
     double before = 0.0;
     for (const double amplitude : {0.5, 0.6, 0.8, 2.0, 20.0, 2000.0}) {
-      const double h1 = harmonic(1, n, [&](double angle) {
-        return applied_voltage(modulate(kind, vector_at(amplitude, angle), 1.0), 1.0).x;
-      });
+      const double h1 = harmonic(
+          1, n, [&](double angle) { return applied_voltage(modulate(kind, vector_at(amplitude, angle), 1.0), 1.0).x; });
       INFO("kind " << static_cast<int>(kind) << ", command " << amplitude << ", fundamental " << h1);
       CHECK(h1 <= 0.6366197723676 * (1.0 + 1e-7));
       CHECK(h1 >= before - 1e-7);
@@ -128,8 +129,8 @@ TEST_CASE("discontinuous modulation: one leg is tied at any angle", "[plant][phy
   }
 }
 
-// Small turns move the duties of space-vector and sine modulation, and the mean voltage of all three, by small amounts: at
-// most the amplitude times the turn; twice that with the common mode.
+// Small turns move the duties of space-vector and sine modulation, and the mean voltage of all three, by small
+// amounts: at most the amplitude times the turn; twice that with the common mode.
 TEST_CASE("modulation: continuous in the angle", "[plant][physics]") {
   const double turn = 1e-4, amplitude = 0.65;
   for (const Modulation kind : kinds) {

@@ -40,7 +40,8 @@ void add_machine_facts(std::vector<Fact>& facts, const MachineSettings& machine)
   add("rated_torque_Nm", "torque on the nameplate", plate.torque_Nm, "N m");
   add("circuit_current_A", "current of the circuit there, rms", length(rated.current) / std::sqrt(2.0), "A");
   add("rated_current_A", "current on the nameplate, rms", plate.current_A, "A");
-  add("circuit_power_factor", "power factor of the circuit there", power_in / (1.5 * length(rated.voltage) * length(rated.current)), "");
+  add("circuit_power_factor", "power factor of the circuit there",
+      power_in / (1.5 * length(rated.voltage) * length(rated.current)), "");
   add("circuit_shaft_power_W", "shaft power of the circuit there", rated.torque * plate.speed_rad_s(), "W");
   add("rated_power_W", "power on the nameplate", plate.power_W, "W");
   add("no_load_current_A", "current of the circuit at no load, rms", length(idle.current) / std::sqrt(2.0), "A");
@@ -49,8 +50,12 @@ void add_machine_facts(std::vector<Fact>& facts, const MachineSettings& machine)
 }
 
 void add_scenario_facts(std::vector<Fact>& facts, const Scenario& s) {
-  const auto add_text = [&](const char* key, const char* label, std::string text) { facts.push_back({key, label, 0.0, std::move(text), ""}); };
-  const auto add = [&](const char* key, const char* label, double value, const char* unit) { facts.push_back({key, label, value, "", unit}); };
+  const auto add_text = [&](const char* key, const char* label, std::string text) {
+    facts.push_back({key, label, 0.0, std::move(text), ""});
+  };
+  const auto add = [&](const char* key, const char* label, double value, const char* unit) {
+    facts.push_back({key, label, value, "", unit});
+  };
   add("duration_s", "duration", s.run.duration_s, "s");
   add("plant_step_s", "plant step", s.run.plant_step_s, "s");
   add("control_period_s", "control period", s.run.control_period_s, "s");
@@ -77,10 +82,11 @@ std::string check_summary(const CheckDocument& document) {
   table.column("", "", Table::Align::left);
   table.column("", "", Table::Align::left);
   for (const Fact& fact : document.facts) {
-    table.row({fact.label, fact.text.empty() ? significant(fact.number) + (fact.unit.empty() ? "" : " " + fact.unit) : fact.text});
+    table.row({fact.label,
+               fact.text.empty() ? plain(fact.number, 5) + (fact.unit.empty() ? "" : " " + fact.unit) : fact.text});
   }
-  return fmt::format("{}: a valid {}{}\n{}", document.file, document.kind, document.title.empty() ? "" : ", \"" + document.title + "\"",
-                     table.text());
+  return fmt::format("{}: a valid {}{}\n{}", document.file, document.kind,
+                     document.title.empty() ? "" : ", \"" + document.title + "\"", table.text());
 }
 
 }  // namespace
@@ -101,8 +107,11 @@ int check_verb(const Request& request) {
     document.kind = "machine file";
     add_machine_facts(document.facts, read_machine(request.file, request.overrides));
   } else {
-    throw InputError(request.file, "", "this is " + kind_text(kind) + ", which this version does not read yet; check takes a "
-                     "scenario or a machine file", "kind");
+    throw InputError(request.file, "",
+                     "this is " + kind_text(kind) +
+                         ", which this version does not read yet; check takes a "
+                         "scenario or a machine file",
+                     "kind");
   }
   if (request.json) {
     print(json_document(document));

@@ -39,7 +39,8 @@ std::vector<ComparisonJob> jobs_of(const Request& request, const Scenario& scena
   }
   if (scenario.controller.kind.empty()) {
     throw InputError("command line", "--in-loop",
-                     "--in-loop: this scenario has no [controller], so there is no loop for an estimator to close", "usage");
+                     "--in-loop: this scenario has no [controller], so there is no loop for an estimator to close",
+                     "usage");
   }
   for (std::size_t i = 0; i < scenario.estimators.size(); ++i) jobs.push_back({closed_by(request, scenario, i), {i}});
   return jobs;
@@ -51,7 +52,8 @@ int compare_verb(const Request& request) {
   want_scenario(request);
   const Scenario scenario = read_scenario(request.file, request.overrides, request.seed);
   if (scenario.estimators.empty()) {
-    throw InputError(request.file, "estimator", "compare judges estimators, and this scenario has no [[estimator]]", "missing");
+    throw InputError(request.file, "estimator", "compare judges estimators, and this scenario has no [[estimator]]",
+                     "missing");
   }
   const std::vector<ComparisonJob> jobs = jobs_of(request, scenario);
   std::unique_ptr<OutFile> figure_file;

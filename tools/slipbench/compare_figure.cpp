@@ -18,9 +18,12 @@ constexpr std::size_t most_dots = 400;  // of single runs in one row: more would
 struct PanelName {
   std::string_view figure, heading;
 };
-constexpr PanelName riding[] = {{"speed_rmse_rpm", "speed error, rms, rpm"}, {"speed_bias_rpm", "speed bias, rpm"},
-                                {"angle_rmse_deg", "flux angle error, rms, deg"}, {"torque_rmse_Nm", "torque error, rms, N m"}};
-constexpr PanelName looped[] = {{"speed_rmse_rpm", "speed error, rms, rpm"}, {"speed_bias_rpm", "speed bias, rpm"},
+constexpr PanelName riding[] = {{"speed_rmse_rpm", "speed error, rms, rpm"},
+                                {"speed_bias_rpm", "speed bias, rpm"},
+                                {"angle_rmse_deg", "flux angle error, rms, deg"},
+                                {"torque_rmse_Nm", "torque error, rms, N m"}};
+constexpr PanelName looped[] = {{"speed_rmse_rpm", "speed error, rms, rpm"},
+                                {"speed_bias_rpm", "speed bias, rpm"},
                                 {"angle_rmse_deg", "flux angle error, rms, deg"},
                                 {"speed_tracking_rmse_rpm", "speed tracking error, rms, rpm"}};
 
@@ -64,7 +67,8 @@ std::string panel(const Comparison& c, const PanelName& name, double left, doubl
     }
     const double at = x.at(*interval.mean), half = 3.6 * static_cast<double>(number.size());
     out += svg::circle(at, middle, 3.6, svg::colour(e));
-    out += svg::text(std::clamp(at, left + half, left + panel_width - half), middle - 12, number, {11, "middle", svg::ink});
+    out += svg::text(std::clamp(at, left + half, left + panel_width - half), middle - 12, number,
+                     {11, "middle", svg::ink});
   }
   return out;
 }
@@ -79,15 +83,20 @@ std::string compare_figure(const Comparison& c, const Scenario& scenario) {
   const double width = names + 4 * panel_width + 3 * gap + 36;
   const std::string title = scenario.title.empty() ? "Comparison" : scenario.title;
   std::string body = svg::text(24, 32, title, {17, "start", svg::ink, true});
-  body += svg::text(24, 53, fmt::format("{} noise runs, {}, seed {}; large dot and bar: mean and its 95 % interval; small dots: runs",
-                                        c.runs(), c.in_loop ? "each estimator closing the loop in turn" : "all estimators riding along",
-                                        scenario.seed), {12, "start", svg::soft_ink});
+  body += svg::text(
+      24, 53,
+      fmt::format("{} noise runs, {}, seed {}; large dot and bar: mean and its 95 % interval; small dots: runs",
+                  c.runs(), c.in_loop ? "each estimator closing the loop in turn" : "all estimators riding along",
+                  scenario.seed),
+      {12, "start", svg::soft_ink});
   for (std::size_t e = 0; e < c.estimators.size(); ++e) {
     const double row = top + row_height * static_cast<double>(e);
     if (e % 2 == 0) body += svg::rectangle(12, row, width - 24, row_height, "#f7f7f7");
     body += svg::text(24, row + row_height / 2 + 3, c.estimators[e].name, {13, "start", svg::colour(e), true});
     const std::size_t lost = c.estimators[e].lost_runs();
-    if (lost > 0) body += svg::text(24, row + row_height / 2 + 18, fmt::format("lost in {} of {}", lost, c.runs()), {11, "start", svg::soft_ink});
+    if (lost > 0)
+      body += svg::text(24, row + row_height / 2 + 18, fmt::format("lost in {} of {}", lost, c.runs()),
+                        {11, "start", svg::soft_ink});
   }
   double left = names;
   for (const PanelName& name : c.in_loop ? looped : riding) {

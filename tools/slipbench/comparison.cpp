@@ -58,7 +58,8 @@ void enter(Comparison& c, const ComparisonJob& job, const SingleRun& single, std
 Comparison blank(const std::vector<ComparisonJob>& jobs, std::uint32_t runs, bool in_loop) {
   Comparison c;
   c.in_loop = in_loop;
-  for (const auto& entry : estimator_figures) c.figure_names.push_back(entry.name), c.figure_units.push_back(entry.unit);
+  for (const auto& entry : estimator_figures)
+    c.figure_names.push_back(entry.name), c.figure_units.push_back(entry.unit);
   if (in_loop) {
     for (const auto& entry : drive_figures) c.figure_names.push_back(entry.name), c.figure_units.push_back(entry.unit);
   }
@@ -95,11 +96,11 @@ Interval Comparison::difference(std::size_t a, std::size_t b, std::size_t figure
   return paired_difference(estimators[a].values[figure], estimators[b].values[figure]);
 }
 
-Comparison compare_estimators(const std::vector<ComparisonJob>& jobs, std::uint32_t runs, bool in_loop, unsigned threads,
-                              const std::function<bool(double)>& keep_going) {
+Comparison compare_estimators(const std::vector<ComparisonJob>& jobs, std::uint32_t runs, bool in_loop,
+                              unsigned threads, const std::function<bool(double)>& keep_going) {
   const auto begun = std::chrono::steady_clock::now();
   Comparison c = blank(jobs, runs, in_loop);
-  const std::size_t tasks = jobs.size() * runs;   // task = run * jobs + job, so that a stop leaves whole runs
+  const std::size_t tasks = jobs.size() * runs;  // task = run * jobs + job, so that a stop leaves whole runs
   c.threads = std::max(1u, std::min(threads == 0 ? std::thread::hardware_concurrency() : threads,
                                     static_cast<unsigned>(std::min<std::size_t>(tasks, 1024))));
   std::atomic<std::size_t> next{0};

@@ -30,7 +30,9 @@ Json bounds(const Interval& interval) {
   return interval.low ? Json::array({value_of(interval.low), value_of(interval.high)}) : Json(nullptr);
 }
 
-std::string text_of(const Json& document) { return document.dump(2, ' ', false, Json::error_handler_t::replace) + "\n"; }
+std::string text_of(const Json& document) {
+  return document.dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
+}
 
 }  // namespace
 
@@ -72,7 +74,8 @@ std::string json_document(const Comparison& c) {
     Json entry = Json::object();
     for (std::size_t f = 0; f < c.figure_names.size(); ++f) {
       const Interval interval = c.interval(e, f);
-      entry[std::string(c.figure_names[f])] = {{"mean", value_of(interval.mean)}, {"ci95", bounds(interval)}, {"runs", interval.runs}};
+      entry[std::string(c.figure_names[f])] = {
+          {"mean", value_of(interval.mean)}, {"ci95", bounds(interval)}, {"runs", interval.runs}};
     }
     entry["lost_runs"] = c.estimators[e].lost_runs();
     entry["diverged_runs"] = c.estimators[e].diverged_runs();
@@ -80,8 +83,11 @@ std::string json_document(const Comparison& c) {
     for (std::size_t b = e + 1; b < c.estimators.size(); ++b) {
       for (std::size_t f = 0; f < c.figure_names.size(); ++f) {
         const Interval d = c.difference(e, b, f);
-        document["differences"].push_back({{"a", c.estimators[e].name}, {"b", c.estimators[b].name},
-                                           {"figure", c.figure_names[f]}, {"mean", value_of(d.mean)}, {"ci95", bounds(d)}});
+        document["differences"].push_back({{"a", c.estimators[e].name},
+                                           {"b", c.estimators[b].name},
+                                           {"figure", c.figure_names[f]},
+                                           {"mean", value_of(d.mean)},
+                                           {"ci95", bounds(d)}});
       }
     }
   }
@@ -89,7 +95,11 @@ std::string json_document(const Comparison& c) {
 }
 
 std::string json_document(const CheckDocument& check) {
-  Json document = {{"slipbench", SLIPBENCH_VERSION}, {"file", check.file}, {"kind", check.kind}, {"title", check.title}, {"valid", true}};
+  Json document = {{"slipbench", SLIPBENCH_VERSION},
+                   {"file", check.file},
+                   {"kind", check.kind},
+                   {"title", check.title},
+                   {"valid", true}};
   document["facts"] = Json::object();
   for (const Fact& fact : check.facts) {
     document["facts"][fact.key] = fact.text.empty() ? value_of(fact.number) : Json(fact.text);
@@ -98,7 +108,8 @@ std::string json_document(const CheckDocument& check) {
 }
 
 std::string json_document(const ErrorDocument& error) {
-  return text_of({{"error", {{"place", error.place}, {"key", error.key}, {"message", error.message}, {"code", error.code}}}});
+  return text_of(
+      {{"error", {{"place", error.place}, {"key", error.key}, {"message", error.message}, {"code", error.code}}}});
 }
 
 }  // namespace slipbench

@@ -19,7 +19,7 @@ struct ErrorDocument {
 struct Fact {
   std::string key, label;
   double number = 0.0;
-  std::string text, unit;   // text not empty: a text fact
+  std::string text, unit;  // text not empty: a text fact
 };
 struct CheckDocument {
   std::string file, kind, title;

@@ -70,7 +70,8 @@ Whole whole_number(std::string_view option, const std::string& text, Whole low, 
 [[noreturn]] void refuse_verb(const std::string& word) {
   std::vector<std::string_view> names;
   for (const VerbRow& row : verb_rows) names.push_back(row.name);
-  refuse(word, fmt::format("unknown verb '{}'; there are {}; the nearest is '{}'", word, listed(names), nearest(word, names)));
+  refuse(word, fmt::format("unknown verb '{}'; there are {}; the nearest is '{}'", word, listed(names),
+                           nearest(word, names)));
 }
 
 bool is_verb(std::string_view word) {
@@ -148,14 +149,18 @@ CommandLine parse_command_line(const std::vector<std::string>& arguments) {
   for (const VerbRow& verb : verb_rows) {
     CLI::App* sub = app.add_subcommand(std::string(verb.name), std::string(verb.meaning));
     sub->allow_extras();
-    sub->add_option("FILE", given.file, verb.name == "check" ? "scenario or machine file" : "scenario file")->type_name("");
+    sub->add_option("FILE", given.file, verb.name == "check" ? "scenario or machine file" : "scenario file")
+        ->type_name("");
     for (const OptionRow& row : option_rows) {
       if (!means_something(row, verb.name)) continue;
       if (row.value.empty()) {
         sub->add_flag(std::string(row.name), given.flags[row.name], std::string(row.meaning));
       } else {  // one value each time it is given, so that FILE may follow
         sub->add_option(std::string(row.name), given.values[row.name], std::string(row.meaning))
-            ->type_name("")->option_text(std::string(row.value))->type_size(1)->allow_extra_args(false);
+            ->type_name("")
+            ->option_text(std::string(row.value))
+            ->type_size(1)
+            ->allow_extra_args(false);
       }
     }
     sub->footer(fmt::format("Example:\n  {}\n\n{}", verb.example, caution));
@@ -175,7 +180,8 @@ CommandLine parse_command_line(const std::vector<std::string>& arguments) {
   } catch (const CLI::CallForVersion& version) {
     return {{}, std::string(version.what()) + "\n"};
   } catch (const CLI::ExtrasError&) {
-    refuse(arguments.front(), fmt::format("'{}' in front of the verb; the order is: slipbench VERB FILE [options]", arguments.front()));
+    refuse(arguments.front(),
+           fmt::format("'{}' in front of the verb; the order is: slipbench VERB FILE [options]", arguments.front()));
   } catch (const CLI::ArgumentMismatch& error) {
     const std::string text = error.what(), name = text.substr(0, text.find(':'));
     refuse(name, fmt::format("{} needs a value", name));

@@ -12,19 +12,19 @@ namespace slipbench {
 
 struct Request {
   std::string verb, file;
-  std::vector<Override> overrides;         // --set
-  std::optional<std::uint64_t> seed;       // --seed
+  std::vector<Override> overrides;    // --set
+  std::optional<std::uint64_t> seed;  // --seed
   bool json = false, quiet = false, progress = false;
-  std::string trace, figure;               // "": none
-  std::uint32_t noise_run = 0;             // run: --run R
-  std::uint32_t runs = 20;                 // compare: --runs N
+  std::string trace, figure;    // "": none
+  std::uint32_t noise_run = 0;  // run: --run R
+  std::uint32_t runs = 20;      // compare: --runs N
   bool in_loop = false;
-  unsigned threads = 0;                    // 0: all cores
+  unsigned threads = 0;  // 0: all cores
 };
 
 struct CommandLine {
   std::optional<Request> request;
-  std::string text;                        // help or version, to be printed instead of doing anything
+  std::string text;  // help or version, to be printed instead of doing anything
 };
 
 // `arguments` without the program's name. Throws InputError with code "usage", place "command line".

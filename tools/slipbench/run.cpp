@@ -77,7 +77,8 @@ int run_verb(const Request& request) {
 
   if (trace) {
     trace->finish();
-    result.files.push_back(fmt::format("trace:  {} ({} rows, {} columns)", request.trace, trace->rows(), trace->columns()));
+    result.files.push_back(
+        fmt::format("trace:  {} ({} rows, {} columns)", request.trace, trace->rows(), trace->columns()));
   }
   if (figure_file) {
     figure_file->write(figure.svg(scenario, estimator_score.figures()));

@@ -13,8 +13,8 @@ namespace slipbench {
 
 namespace {
 
-constexpr double width = 960, height = 600, left = 76, right = 936, speed_top = 104, speed_bottom = 352, error_top = 396,
-                 error_bottom = 546;
+constexpr double width = 960, height = 600, left = 76, right = 936, speed_top = 104, speed_bottom = 352,
+                 error_top = 396, error_bottom = 546;
 constexpr std::size_t byte_budget = 150000, bytes_a_point = 11;
 
 struct Range {
@@ -37,7 +37,8 @@ struct Plane {
     return svg::px(std::clamp(svg::Axis{low, high, bottom, top}.at(value), top - 400.0, bottom + 400.0));
   }
   [[nodiscard]] static std::string x(std::size_t column, const Envelope& signal) {
-    return svg::px(left + (right - left) * (static_cast<double>(column) + 0.5) / static_cast<double>(signal.bins().size()));
+    return svg::px(left +
+                   (right - left) * (static_cast<double>(column) + 0.5) / static_cast<double>(signal.bins().size()));
   }
 };
 
@@ -65,7 +66,8 @@ std::string mean_line(const Envelope& signal, const Plane& plane) {
 std::string band(const Envelope& signal, const Plane& plane, std::string_view fill) {
   std::string points;
   each_stretch(signal, [&](std::size_t first, std::size_t end) {
-    for (std::size_t i = first; i < end; ++i) points += (i == first ? "M" : "L") + Plane::x(i, signal) + "," + plane.y(signal.bins()[i].high);
+    for (std::size_t i = first; i < end; ++i)
+      points += (i == first ? "M" : "L") + Plane::x(i, signal) + "," + plane.y(signal.bins()[i].high);
     for (std::size_t i = end; i-- > first;) points += "L" + Plane::x(i, signal) + "," + plane.y(signal.bins()[i].low);
     points += "Z";
   });
@@ -75,11 +77,13 @@ std::string band(const Envelope& signal, const Plane& plane, std::string_view fi
 
 std::string path(const std::string& points, std::string_view stroke, double stroke_width, std::string_view dashes) {
   if (points.empty()) return "";
-  return fmt::format("<path d=\"{}\" fill=\"none\" stroke=\"{}\" stroke-width=\"{}\" stroke-linejoin=\"round\"{}/>\n", points, stroke,
-                     stroke_width, dashes.empty() ? "" : fmt::format(" stroke-dasharray=\"{}\"", dashes));
+  return fmt::format("<path d=\"{}\" fill=\"none\" stroke=\"{}\" stroke-width=\"{}\" stroke-linejoin=\"round\"{}/>\n",
+                     points, stroke, stroke_width,
+                     dashes.empty() ? "" : fmt::format(" stroke-dasharray=\"{}\"", dashes));
 }
 
-std::string panel(const svg::Axis& x, const svg::Axis& y, const svg::Ticks& x_ticks, std::string_view name, bool x_labels) {
+std::string panel(const svg::Axis& x, const svg::Axis& y, const svg::Ticks& x_ticks, std::string_view name,
+                  bool x_labels) {
   std::string out;
   const svg::Ticks y_ticks = svg::ticks(y.low, y.high, 5);
   for (const double t : x_ticks.values) out += svg::line(x.at(t), y.from_px, x.at(t), y.to_px, svg::grid);
@@ -89,7 +93,8 @@ std::string panel(const svg::Axis& x, const svg::Axis& y, const svg::Ticks& x_ti
     out += svg::text(x.from_px - 8, y.at(v) + 4, y_ticks.label(v), {11, "end", svg::soft_ink});
   }
   if (x_labels) {
-    for (const double t : x_ticks.values) out += svg::text(x.at(t), y.from_px + 18, x_ticks.label(t), {11, "middle", svg::soft_ink});
+    for (const double t : x_ticks.values)
+      out += svg::text(x.at(t), y.from_px + 18, x_ticks.label(t), {11, "middle", svg::soft_ink});
     out += svg::text((x.from_px + x.to_px) / 2, y.from_px + 38, "time, s", {12, "middle"});
   }
   return out + svg::text(x.from_px, y.to_px - 9, name, {12, "start", svg::ink, true});
@@ -99,19 +104,21 @@ std::string panel(const svg::Axis& x, const svg::Axis& y, const svg::Ticks& x_ti
 
 void RunFigure::begin(const RunInfo& info) {
   info_ = info;
-  const std::size_t points = 2 + 4 * info.estimator_names.size();  // a column: truth, reference; estimate, error, its band
+  const std::size_t points =
+      2 + 4 * info.estimator_names.size();  // a column: truth, reference; estimate, error, its band
   const auto ticks = static_cast<std::size_t>(info.duration_s / info.control_period_s) + 1;
   const std::size_t columns = std::min(ticks, std::clamp(byte_budget / (points * bytes_a_point), std::size_t{100},
                                                          static_cast<std::size_t>(right - left)));
   truth_ = reference_ = Envelope(columns);
   estimates_.assign(info.estimator_names.size(), Envelope(columns));
   errors_ = estimates_;
-  window_error_.assign(info.estimator_names.size(), 0.0);
+  window_error_.assign(info.estimator_names.size(), {0.0, 0.0});
 }
 
 void RunFigure::control_tick(const TickView& view) {
   const std::size_t columns = truth_.bins().size();
-  const auto column = std::min(columns - 1, static_cast<std::size_t>(view.time_s / info_.duration_s * static_cast<double>(columns)));
+  const auto column =
+      std::min(columns - 1, static_cast<std::size_t>(view.time_s / info_.duration_s * static_cast<double>(columns)));
   const double speed = (*view.plant)[P::speed_rpm];
   truth_.add(column, speed);
   reference_.add(column, (*view.plant)[P::speed_reference_rpm]);
@@ -120,7 +127,10 @@ void RunFigure::control_tick(const TickView& view) {
     const double estimate = view.estimates[i].speed * (30.0 / 3.14159265358979323846);
     estimates_[i].add(column, estimate);
     errors_[i].add(column, estimate - speed);
-    if (scored && std::fabs(estimate - speed) > window_error_[i]) window_error_[i] = std::fabs(estimate - speed);
+    if (!scored) continue;
+    auto& [least, greatest] = window_error_[i];
+    if (estimate - speed < least) least = estimate - speed;
+    if (estimate - speed > greatest) greatest = estimate - speed;
   }
 }
 
@@ -128,16 +138,15 @@ std::string RunFigure::svg(const Scenario& scenario, const std::vector<Estimator
   Range speed, error;
   speed.take(truth_);
   speed.take(reference_);
-  double scale = 0.0;
+  // The scale of the errors is set by the scored ones of estimators that kept lock, so that a lost one hides no other.
   for (std::size_t i = 0; i < errors_.size(); ++i) {
-    if (i < figures.size() && !figures[i].lost_at_s) scale = std::max(scale, window_error_[i]);
+    if (i < figures.size() && figures[i].lost_at_s) continue;
+    error.low = std::min(error.low, window_error_[i][0]), error.high = std::max(error.high, window_error_[i][1]);
   }
-  if (scale > 0.0) {
-    error = {-1.25 * scale, 1.25 * scale};
-  } else {
+  if (!(error.high > error.low)) {
     for (const Envelope& e : errors_) error.take(e);
-    error.widen();
   }
+  error.widen();
   const double room = 0.5 * (speed.high - speed.low) + 1.0;  // a lost estimate may not flatten the true speed
   for (const Envelope& e : estimates_) {
     Range its;
@@ -149,38 +158,47 @@ std::string RunFigure::svg(const Scenario& scenario, const std::vector<Estimator
 
   const svg::Axis x{0.0, info_.duration_s, left, right};
   const svg::Ticks x_ticks = svg::ticks(0.0, info_.duration_s, 10);
-  std::string body = svg::text(left, 32, scenario.title.empty() ? "Run" : scenario.title, {17, "start", svg::ink, true});
-  body += svg::text(left, 52, fmt::format("seed {}, scored from {} s to {} s", scenario.seed, significant(window_.from_s, 3),
-                                          significant(window_.to_s, 3)), {12, "start", svg::soft_ink});
+  std::string body =
+      svg::text(left, 32, scenario.title.empty() ? "Run" : scenario.title, {17, "start", svg::ink, true});
+  body += svg::text(
+      left, 52,
+      fmt::format("seed {}, scored from {} s to {} s", scenario.seed, plain(window_.from_s), plain(window_.to_s)),
+      {12, "start", svg::soft_ink});
   for (const double top : {speed_top, error_top}) {  // what is not scored lies under a grey wash
     const double bottom = top == speed_top ? speed_bottom : error_bottom;
-    const double from = x.at(std::clamp(window_.from_s, 0.0, info_.duration_s)), to = x.at(std::clamp(window_.to_s, 0.0, info_.duration_s));
+    const double from = x.at(std::clamp(window_.from_s, 0.0, info_.duration_s)),
+                 to = x.at(std::clamp(window_.to_s, 0.0, info_.duration_s));
     if (from > left + 0.5) body += svg::rectangle(left, top, from - left, bottom - top, "#f3f3f3");
     if (to < right - 0.5) body += svg::rectangle(to, top, right - to, bottom - top, "#f3f3f3");
   }
   body += panel(x, {speed.low, speed.high, speed_bottom, speed_top}, x_ticks, "speed, rpm", false);
   body += panel(x, {error.low, error.high, error_bottom, error_top}, x_ticks, "estimated minus true speed, rpm", true);
-  body += fmt::format("<clipPath id=\"a\"><rect x=\"{0}\" y=\"{2}\" width=\"{1}\" height=\"{3}\"/></clipPath>\n"
-                      "<clipPath id=\"b\"><rect x=\"{0}\" y=\"{4}\" width=\"{1}\" height=\"{5}\"/></clipPath>\n", left, right - left,
-                      speed_top, speed_bottom - speed_top, error_top, error_bottom - error_top);
-  const Plane speed_plane{speed.low, speed.high, speed_top, speed_bottom}, error_plane{error.low, error.high, error_top, error_bottom};
+  body += fmt::format(
+      "<clipPath id=\"a\"><rect x=\"{0}\" y=\"{2}\" width=\"{1}\" height=\"{3}\"/></clipPath>\n"
+      "<clipPath id=\"b\"><rect x=\"{0}\" y=\"{4}\" width=\"{1}\" height=\"{5}\"/></clipPath>\n",
+      left, right - left, speed_top, speed_bottom - speed_top, error_top, error_bottom - error_top);
+  const Plane speed_plane{speed.low, speed.high, speed_top, speed_bottom},
+      error_plane{error.low, error.high, error_top, error_bottom};
   const std::string reference = mean_line(reference_, speed_plane);
   for (const double step : load_steps_s_) {
     if (step < 0.0 || step > info_.duration_s) continue;
     body += svg::line(x.at(step), speed_top, x.at(step), error_bottom, svg::soft_ink, 1.0, "1 3");
     body += svg::text(x.at(step) + 4, speed_bottom - 6, "load step", {11, "start", svg::soft_ink});
   }
-  body += "<g clip-path=\"url(#a)\">\n" + path(mean_line(truth_, speed_plane), svg::ink, 3.4, "") + path(reference, "#c8c8c8", 1.6, "5 3");
+  body += "<g clip-path=\"url(#a)\">\n" + path(mean_line(truth_, speed_plane), svg::ink, 3.4, "") +
+          path(reference, "#c8c8c8", 1.6, "5 3");
   for (std::size_t i = 0; i < estimates_.size(); ++i) {
     body += path(mean_line(estimates_[i], speed_plane), svg::colour(i), 1.2, svg::dash(i));
   }
   body += "</g>\n<g clip-path=\"url(#b)\">\n";
   for (std::size_t i = 0; i < errors_.size(); ++i) body += band(errors_[i], error_plane, svg::colour(i));
-  for (std::size_t i = 0; i < errors_.size(); ++i) body += path(mean_line(errors_[i], error_plane), svg::colour(i), 1.4, svg::dash(i));
+  for (std::size_t i = 0; i < errors_.size(); ++i)
+    body += path(mean_line(errors_[i], error_plane), svg::colour(i), 1.4, svg::dash(i));
   body += "</g>\n";
 
   double at = left;
-  const auto legend = [&](std::string_view name, std::string_view stroke, double stroke_width, std::string_view dashes) {
+  const auto legend = [&](std::string_view name, std::string_view stroke, double stroke_width,
+                          std::string_view dashes) {
     body += svg::line(at, 72, at + 26, 72, stroke, stroke_width, dashes) + svg::text(at + 32, 76, name, {12});
     at += 32 + 7.4 * static_cast<double>(name.size()) + 22;
   };
@@ -191,7 +209,8 @@ std::string RunFigure::svg(const Scenario& scenario, const std::vector<Estimator
     if (i >= figures.size() || !figures[i].lost_at_s) continue;
     const double lost = x.at(*figures[i].lost_at_s);
     body += svg::line(lost, error_top, lost, error_bottom, svg::colour(i), 1.2, "3 2");
-    body += svg::text(lost + 4, error_top + 14 + 13 * static_cast<double>(i % 6), info_.estimator_names[i] + " lost", {11, "start", svg::colour(i)});
+    body += svg::text(lost + 4, error_top + 14 + 13 * static_cast<double>(i % 6), info_.estimator_names[i] + " lost",
+                      {11, "start", svg::colour(i)});
   }
   Range whole;
   for (const Envelope& e : errors_) whole.take(e);

@@ -15,7 +15,8 @@ namespace slipbench {
 class RunFigure : public RunObserver {
  public:
   // load_steps_s: times to be marked.
-  RunFigure(ScoreWindow window, std::vector<double> load_steps_s) : window_(window), load_steps_s_(std::move(load_steps_s)) {}
+  RunFigure(ScoreWindow window, std::vector<double> load_steps_s)
+      : window_(window), load_steps_s_(std::move(load_steps_s)) {}
   void begin(const RunInfo& info) override;
   void control_tick(const TickView& view) override;
   [[nodiscard]] std::string svg(const Scenario& scenario, const std::vector<EstimatorFigures>& figures) const;
@@ -26,7 +27,7 @@ class RunFigure : public RunObserver {
   RunInfo info_;
   Envelope truth_, reference_;
   std::vector<Envelope> estimates_, errors_;
-  std::vector<double> window_error_;  // largest |error| inside the score window
+  std::vector<std::array<double, 2>> window_error_;  // least and greatest in the score window, zero included
 };
 
 }  // namespace slipbench

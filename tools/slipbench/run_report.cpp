@@ -57,7 +57,7 @@ std::string estimator_text(const RunResult& result) {
     const EstimatorFigures& f = e.figures;
     table.row({e.name, significant(f.speed_rmse_rpm), significant(f.speed_bias_rpm), significant(f.speed_max_error_rpm),
                significant(f.flux_rmse_Wb), significant(f.angle_rmse_deg), significant(f.torque_rmse_Nm),
-               significant(f.settled_at_s), f.lost_at_s ? significant(f.lost_at_s) : "-", significant(e.step_ns, 3)});
+               plain(f.settled_at_s, 4), plain(f.lost_at_s, 4), significant(e.step_ns, 3)});
   }
   return table.text();
 }
@@ -65,12 +65,13 @@ std::string estimator_text(const RunResult& result) {
 std::string status_text(const RunResult& result) {
   std::string text;
   if (result.outcome.diverged) {
-    text += fmt::format("DIVERGED at {} s: {}\n", significant(result.outcome.diverged_at_s), result.outcome.diverged_what);
+    text += fmt::format("DIVERGED at {} s: {}\n", plain(result.outcome.diverged_at_s), result.outcome.diverged_what);
   }
   for (const EstimatorResult& e : result.estimators) {
-    if (e.figures.lost_at_s) text += fmt::format("LOST: {} at {} s\n", e.name, significant(e.figures.lost_at_s));
+    if (e.figures.lost_at_s) text += fmt::format("LOST: {} at {} s\n", e.name, plain(e.figures.lost_at_s, 4));
   }
-  if (result.interrupted) text += fmt::format("INTERRUPTED at {} s; what was done is kept\n", significant(result.outcome.simulated_s));
+  if (result.interrupted)
+    text += fmt::format("INTERRUPTED at {} s; what was done is kept\n", plain(result.outcome.simulated_s, 4));
   if (result.outcome.clipped_samples > 0) {
     text += fmt::format("{} readings of a sensor were at the end of its range\n", result.outcome.clipped_samples);
   }
@@ -84,9 +85,9 @@ std::string run_summary(const RunResult& result) {
   const RunOutcome& o = result.outcome;
   std::string text = fmt::format("{}\n", s.title.empty() ? s.path : s.title);
   text += fmt::format("{} s simulated in {} s ({} times real time), seed {}, scored from {} s to {} s\n\n",
-                      significant(o.simulated_s, 3), significant(o.wall_s, 3),
-                      significant(o.wall_s > 0.0 ? o.simulated_s / o.wall_s : 0.0, 2), s.seed, significant(s.score.from_s, 3),
-                      significant(s.score.to_s, 3));
+                      plain(o.simulated_s), significant(o.wall_s, 3),
+                      significant(o.wall_s > 0.0 ? o.simulated_s / o.wall_s : 0.0, 2), s.seed, plain(s.score.from_s),
+                      plain(s.score.to_s));
   text += "Drive\n" + drive_text(result);
   if (!result.estimators.empty()) text += "\nEstimates against the truth\n" + estimator_text(result);
   const std::string status = status_text(result);

@@ -19,13 +19,13 @@ struct EstimatorResult {
 struct RunResult {
   const Scenario* scenario = nullptr;
   RunOutcome outcome;
-  std::string status;                     // done | diverged | lost
+  std::string status;  // done | diverged | lost
   bool interrupted = false;
   std::vector<NamedValue> final, mean;
   DriveFigures drive;
   std::vector<EstimatorResult> estimators;
   std::string plant_digest;
-  std::vector<std::string> files;         // "trace: run.csv (2001 rows, 41 columns)"
+  std::vector<std::string> files;  // "trace: run.csv (2001 rows, 41 columns)"
 };
 
 // The summary that a person reads.

@@ -14,11 +14,20 @@ std::string escaped(std::string_view text) {
   std::string out;
   for (const char c : text) {
     switch (c) {
-      case '&': out += "&amp;"; break;
-      case '<': out += "&lt;"; break;
-      case '>': out += "&gt;"; break;
-      case '"': out += "&quot;"; break;
-      default: out += static_cast<unsigned char>(c) < 0x20 || c == 0x7f ? ' ' : c;  // XML has no control characters
+      case '&':
+        out += "&amp;";
+        break;
+      case '<':
+        out += "&lt;";
+        break;
+      case '>':
+        out += "&gt;";
+        break;
+      case '"':
+        out += "&quot;";
+        break;
+      default:
+        out += static_cast<unsigned char>(c) < 0x20 || c == 0x7f ? ' ' : c;  // XML has no control characters
     }
   }
   return out;
@@ -34,24 +43,28 @@ std::string document(double width, double height, const std::string& title, cons
   return fmt::format(
       "<?xml version=\"1.0\" encoding=\"UTF-8\"?>\n"
       "<svg xmlns=\"http://www.w3.org/2000/svg\" width=\"{0}\" height=\"{1}\" viewBox=\"0 0 {0} {1}\" "
-      "font-family=\"'DejaVu Sans', 'Helvetica Neue', Arial, sans-serif\" role=\"img\">\n<title>{2}</title>\n{3}{4}</svg>\n",
+      "font-family=\"'DejaVu Sans', 'Helvetica Neue', Arial, sans-serif\" "
+      "role=\"img\">\n<title>{2}</title>\n{3}{4}</svg>\n",
       px(width), px(height), escaped(title), rectangle(0, 0, width, height, "#ffffff"), body);
 }
 
 std::string text(double x, double y, std::string_view words, const TextStyle& style) {
-  return fmt::format("<text x=\"{}\" y=\"{}\" font-size=\"{}\" fill=\"{}\"{}{}>{}</text>\n", px(x), px(y), px(style.size),
-                     style.fill, style.anchor == "start" ? "" : fmt::format(" text-anchor=\"{}\"", style.anchor),
+  return fmt::format("<text x=\"{}\" y=\"{}\" font-size=\"{}\" fill=\"{}\"{}{}>{}</text>\n", px(x), px(y),
+                     px(style.size), style.fill,
+                     style.anchor == "start" ? "" : fmt::format(" text-anchor=\"{}\"", style.anchor),
                      style.bold ? " font-weight=\"bold\"" : "", escaped(words));
 }
 
-std::string line(double x1, double y1, double x2, double y2, std::string_view stroke, double width, std::string_view dashes) {
-  return fmt::format("<line x1=\"{}\" y1=\"{}\" x2=\"{}\" y2=\"{}\" stroke=\"{}\" stroke-width=\"{}\"{}/>\n", px(x1), px(y1),
-                     px(x2), px(y2), stroke, px(width), dashes.empty() ? "" : fmt::format(" stroke-dasharray=\"{}\"", dashes));
+std::string line(double x1, double y1, double x2, double y2, std::string_view stroke, double width,
+                 std::string_view dashes) {
+  return fmt::format("<line x1=\"{}\" y1=\"{}\" x2=\"{}\" y2=\"{}\" stroke=\"{}\" stroke-width=\"{}\"{}/>\n", px(x1),
+                     px(y1), px(x2), px(y2), stroke, px(width),
+                     dashes.empty() ? "" : fmt::format(" stroke-dasharray=\"{}\"", dashes));
 }
 
 std::string rectangle(double x, double y, double width, double height, std::string_view fill, double opacity) {
-  return fmt::format("<rect x=\"{}\" y=\"{}\" width=\"{}\" height=\"{}\" fill=\"{}\"{}/>\n", px(x), px(y), px(width), px(height),
-                     fill, opacity < 1.0 ? fmt::format(" fill-opacity=\"{:.2f}\"", opacity) : "");
+  return fmt::format("<rect x=\"{}\" y=\"{}\" width=\"{}\" height=\"{}\" fill=\"{}\"{}/>\n", px(x), px(y), px(width),
+                     px(height), fill, opacity < 1.0 ? fmt::format(" fill-opacity=\"{:.2f}\"", opacity) : "");
 }
 
 std::string circle(double x, double y, double radius, std::string_view fill, double opacity) {

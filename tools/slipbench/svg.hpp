@@ -10,14 +10,15 @@
 
 namespace slipbench::svg {
 
-inline constexpr std::array<std::string_view, 6> palette = {"#0072B2", "#D55E00", "#009E73", "#CC79A7", "#E69F00", "#56B4E9"};
+inline constexpr std::array<std::string_view, 6> palette = {"#0072B2", "#D55E00", "#009E73",
+                                                            "#CC79A7", "#E69F00", "#56B4E9"};
 inline constexpr std::string_view ink = "#222222", soft_ink = "#5c5c5c", grid = "#e3e3e3", frame = "#9a9a9a";
 // Colour of the n-th estimator; dash pattern from the seventh on ("" before).
 std::string_view colour(std::size_t n);
 std::string_view dash(std::size_t n);
 
 std::string escaped(std::string_view text);
-std::string px(double value);                       // one decimal, no trailing zero
+std::string px(double value);  // one decimal, no trailing zero
 
 std::string document(double width, double height, const std::string& title, const std::string& body);
 struct TextStyle {

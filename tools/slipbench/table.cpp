@@ -14,7 +14,9 @@ std::size_t width_of(const std::string& text) {  // code points: a continuation 
       std::count_if(text.begin(), text.end(), [](char c) { return (static_cast<unsigned char>(c) & 0xC0u) != 0x80u; }));
 }
 
-int exponent_of(double number) { return number == 0.0 ? 0 : static_cast<int>(std::floor(std::log10(std::fabs(number)))); }
+int exponent_of(double number) {
+  return number == 0.0 ? 0 : static_cast<int>(std::floor(std::log10(std::fabs(number))));
+}
 
 }  // namespace
 
@@ -66,10 +68,14 @@ std::string significant(std::optional<double> number, int digits) {
   return text;
 }
 
+std::string plain(std::optional<double> number, int digits) {
+  return number && !std::isnan(*number) ? fmt::format("{:.{}g}", *number, digits) : "-";
+}
+
 std::string plus_minus(double mean, double half_width) {
   if (!std::isfinite(mean) || !std::isfinite(half_width)) return significant(mean);
-  const double scale = half_width > 0.0 ? half_width : mean;
-  const int decimals = std::clamp((half_width > 0.0 ? 1 : 3) - exponent_of(scale), 0, 9);
+  const int of_mean = 3 - exponent_of(mean), of_half = -exponent_of(half_width);
+  const int decimals = std::clamp(half_width > 0.0 ? std::min(of_half + 1, std::max(of_half, of_mean)) : of_mean, 0, 9);
   return fmt::format("{:.{}f} ± {:.{}f}", mean, decimals, half_width, decimals);
 }
 

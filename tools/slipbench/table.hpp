@@ -25,7 +25,9 @@ class Table {
 
 // A number with `digits` significant digits, no exponent between 1e-4 and 1e7; "-" for none.
 std::string significant(std::optional<double> number, int digits = 4);
-// "3.214 ± 0.051": as many decimals as show two digits of the half width.
+// A given number as it was given, more or less: up to `digits` significant digits without trailing zeros; "-" for none.
+std::string plain(std::optional<double> number, int digits = 6);
+// "3.214 ± 0.051": as many decimals as show two digits of the half width, or one where the mean has four without.
 std::string plus_minus(double mean, double half_width);
 
 }  // namespace slipbench

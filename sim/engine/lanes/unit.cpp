@@ -39,20 +39,34 @@ template <Stepper method>
 
 Pack value_of(LanesFunction function, const Pack& a, const Pack& b) {
   switch (function) {
-    case LanesFunction::sincos_sin: return sincos(a).sin;
-    case LanesFunction::sincos_cos: return sincos(a).cos;
-    case LanesFunction::turns_sin: return sincos_turns(a).sin;
-    case LanesFunction::turns_cos: return sincos_turns(a).cos;
-    case LanesFunction::atan2: return atan2(a, b);
-    case LanesFunction::exp: return exp(a);
-    case LanesFunction::log: return log(a);
-    case LanesFunction::wrap_angle: return wrap_angle(a);
-    case LanesFunction::sqrt: return sqrt(a);
-    case LanesFunction::floor: return floor(a);
-    case LanesFunction::fabs: return fabs(a);
-    case LanesFunction::quotient: return a / b;
-    case LanesFunction::smaller: return min(a, b);
-    case LanesFunction::larger: return select((b < a) | ((a != a) & (b == b)), a, max(a, b));
+    case LanesFunction::sincos_sin:
+      return sincos(a).sin;
+    case LanesFunction::sincos_cos:
+      return sincos(a).cos;
+    case LanesFunction::turns_sin:
+      return sincos_turns(a).sin;
+    case LanesFunction::turns_cos:
+      return sincos_turns(a).cos;
+    case LanesFunction::atan2:
+      return atan2(a, b);
+    case LanesFunction::exp:
+      return exp(a);
+    case LanesFunction::log:
+      return log(a);
+    case LanesFunction::wrap_angle:
+      return wrap_angle(a);
+    case LanesFunction::sqrt:
+      return sqrt(a);
+    case LanesFunction::floor:
+      return floor(a);
+    case LanesFunction::fabs:
+      return fabs(a);
+    case LanesFunction::quotient:
+      return a / b;
+    case LanesFunction::smaller:
+      return min(a, b);
+    case LanesFunction::larger:
+      return select((b < a) | ((a != a) & (b == b)), a, max(a, b));
   }
   return a;
 }
@@ -69,14 +83,21 @@ void functions(const LanesJob& job) {
 extern "C" void SLIPBENCH_ENTRY(slipbench::LanesJob* job) {
   using namespace slipbench;
   switch (job->work) {
-    case LanesWork::width: job->cases = Pack::width; return;
-    case LanesWork::function: return functions(*job);
+    case LanesWork::width:
+      job->cases = Pack::width;
+      return;
+    case LanesWork::function:
+      return functions(*job);
     case LanesWork::machine_steps:
       switch (static_cast<Stepper>(job->stepper)) {
-        case Stepper::euler: return machine_steps<Stepper::euler>(*job);
-        case Stepper::midpoint: return machine_steps<Stepper::midpoint>(*job);
-        case Stepper::rk4: return machine_steps<Stepper::rk4>(*job);
-        case Stepper::cash_karp5: return machine_steps<Stepper::cash_karp5>(*job);
+        case Stepper::euler:
+          return machine_steps<Stepper::euler>(*job);
+        case Stepper::midpoint:
+          return machine_steps<Stepper::midpoint>(*job);
+        case Stepper::rk4:
+          return machine_steps<Stepper::rk4>(*job);
+        case Stepper::cash_karp5:
+          return machine_steps<Stepper::cash_karp5>(*job);
       }
   }
 }

@@ -1,6 +1,6 @@
 // The CSV trace: numbers read back to the bit, the file appears when it is complete, bad paths are found at once.
-#include <catch2/catch.hpp>
 #include <unistd.h>
+#include <catch2/catch.hpp>
 
 #include <cmath>
 #include <cstdlib>
@@ -65,7 +65,8 @@ TEST_CASE("csv number: the shortest text, and it reads back to the bit", "[recor
   CHECK(text_of(2.0) == "2");
   CHECK(text_of(-0.0) == "-0");
   CHECK(text_of(-std::numeric_limits<double>::quiet_NaN()) == "nan");
-  std::uint64_t bits = 88172645463325252u;  // xorshift64 (G. Marsaglia, "Xorshift RNGs", 2003): any spread of bits will do
+  std::uint64_t bits =
+      88172645463325252u;  // xorshift64 (G. Marsaglia, "Xorshift RNGs", 2003): any spread of bits will do
   for (int i = 0; i < 20000; ++i) {
     bits ^= bits << 13, bits ^= bits >> 7, bits ^= bits << 17;
     const double number = std::bit_cast<double>(bits);
@@ -91,11 +92,13 @@ TEST_CASE("csv trace: header and rows in contract order", "[record][contract]") 
   std::getline(lines, header);
   std::getline(lines, row);
   CHECK_FALSE(std::getline(lines, rest));
-  CHECK(header ==
-        "time_s,speed_rpm,speed_reference_rpm,torque_Nm,load_torque_Nm,stator_frequency_Hz,u_alpha_V,u_beta_V,i_alpha_A,"
-        "i_beta_A,i_d_A,i_q_A,i_a_A,i_b_A,i_c_A,rotor_flux_Wb,rotor_flux_angle_rad,rotor_flux_reference_Wb,dc_link_V,"
-        "stator_resistance_ohm,rotor_resistance_ohm,measured.i_a_A,ekf.speed_rpm,ekf.rotor_flux_Wb,ekf.rotor_flux_angle_rad,"
-        "ekf.torque_Nm,ekf.trust");
+  CHECK(
+      header ==
+      "time_s,speed_rpm,speed_reference_rpm,torque_Nm,load_torque_Nm,stator_frequency_Hz,u_alpha_V,u_beta_V,i_alpha_A,"
+      "i_beta_A,i_d_A,i_q_A,i_a_A,i_b_A,i_c_A,rotor_flux_Wb,rotor_flux_angle_rad,rotor_flux_reference_Wb,dc_link_V,"
+      "stator_resistance_ohm,rotor_resistance_ohm,measured.i_a_A,ekf.speed_rpm,ekf.rotor_flux_Wb,ekf.rotor_flux_angle_"
+      "rad,"
+      "ekf.torque_Nm,ekf.trust");
   const auto cells = split(row);
   REQUIRE(cells.size() == split(header).size());
   CHECK(cells[0] == "0.25");

@@ -27,7 +27,8 @@ TEST_CASE("digest: numbers enter as little-endian float64, NaN in one form", "[r
   CHECK(sha.hex() == "cbafaab80f198b3b1a74548d1224c5bda41dd10507fc16d58fddd5431ddca7ae");
 }
 
-TEST_CASE("digest: each estimator has its own, untouched by its neighbours and by measured columns", "[record][property]") {
+TEST_CASE("digest: each estimator has its own, untouched by its neighbours and by measured columns",
+          "[record][property]") {
   PlantRow plant{};
   plant[P::speed_rpm] = 12.5;
   const std::vector<double> one = {1, 2, 3, 4, 5}, both = {1, 2, 3, 4, 5, 6, 7, 8, 9, 10}, measured = {0.5};

@@ -36,7 +36,8 @@ TEST_CASE("sha256: the pieces in which bytes arrive do not matter", "[record][pr
   for (int i = 0; i < 1000; ++i) text += static_cast<char>(i * 37 % 251);
   for (const std::size_t piece : {1u, 7u, 63u, 64u, 65u, 200u}) {
     Sha256 sha;
-    for (std::size_t at = 0; at < text.size(); at += piece) sha.add(bytes(text).subspan(at, std::min(piece, text.size() - at)));
+    for (std::size_t at = 0; at < text.size(); at += piece)
+      sha.add(bytes(text).subspan(at, std::min(piece, text.size() - at)));
     CHECK(sha.hex() == digest(text));
   }
 }

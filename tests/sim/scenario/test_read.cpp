@@ -139,6 +139,7 @@ TEST_CASE("scenario: line endings, byte-order mark, order of tables do not matte
   std::string text = mains_text(), dos;
   for (const char c : text) dos += c == '\n' ? std::string("\r\n") : std::string(1, c);
   CHECK(read("\xef\xbb\xbf" + dos).run.duration_s == 0.1);
+  CHECK(read("title = \"\"\"\\\n  \u00e9tat\"\"\"\n" + text).title == "\u00e9tat");
   const std::size_t cut = text.find("[machine]");
   CHECK(read(text.substr(cut) + text.substr(0, cut)).run.duration_s == 0.1);
 }

@@ -14,8 +14,10 @@ TEST_CASE("--set: replaces, creates, appends", "[scenario][set]") {
   CHECK(read(text, {{"title", "two words"}}).title == "two words");
   CHECK(read(text, {{"title", "\"quoted\""}}).title == "quoted");
   CHECK(read(text, {{"run.method", "euler"}}).run.method == "euler");
-  CHECK(read(text, {{"estimator.1.kind", "reduced_order"}, {"estimator.1", "{name = \"fast_1\", kind = \"reduced_order\"}"}})
-            .estimators[1].kind == "reduced_order");
+  CHECK(read(text,
+             {{"estimator.1.kind", "reduced_order"}, {"estimator.1", "{name = \"fast_1\", kind = \"reduced_order\"}"}})
+            .estimators[1]
+            .kind == "reduced_order");
   CHECK(read(text, {{"belief.stator_resistance", "1.1"}}).belief.stator_resistance == 1.1);
   CHECK(read(text, {{"load.0.torque_Nm.2.1", "9"}}).loads[0].torque_profile[2][1] == 9.0);
   CHECK(read(text, {{"load.0.torque_Nm.3", "[1.0, 4]"}}).loads[0].torque_profile.size() == 4);
@@ -25,7 +27,8 @@ TEST_CASE("--set: replaces, creates, appends", "[scenario][set]") {
   const Scenario more = read(text, {{"estimator.2.name", "third"}, {"estimator.2.kind", "reduced_order"}});
   REQUIRE(more.estimators.size() == 3);
   CHECK(more.estimators[2].name == "third");
-  const Scenario fresh = read(mains_text(), {{"load.0.kind", "fan"}, {"load.0.rated_torque_Nm", "3"}, {"load.0.rated_speed_rpm", "1400"}});
+  const Scenario fresh =
+      read(mains_text(), {{"load.0.kind", "fan"}, {"load.0.rated_torque_Nm", "3"}, {"load.0.rated_speed_rpm", "1400"}});
   REQUIRE(fresh.loads.size() == 1);
   CHECK(fresh.loads[0].rated_torque_Nm == 3.0);
   CHECK(read(mains_text(), {{"sensors.voltage.noise_V", "0.5"}}).sensors.voltage.present);
@@ -33,8 +36,12 @@ TEST_CASE("--set: replaces, creates, appends", "[scenario][set]") {
 
 TEST_CASE("--set: relations are checked once, with all of it in place", "[scenario][set]") {
   // Neither half alone is a whole multiple.
-  CHECK(read(whole_text(), {{"run.plant_step_s", "7e-6"}, {"run.control_period_s", "105e-6"}, {"run.trace_period_s", "1.05e-3"},
-                            {"run.duration_s", "2.1"}, {"supply.switching_frequency_Hz", "9523.809523809523"}, {"sensors.speed.window_s", "2.1e-3"}})
+  CHECK(read(whole_text(), {{"run.plant_step_s", "7e-6"},
+                            {"run.control_period_s", "105e-6"},
+                            {"run.trace_period_s", "1.05e-3"},
+                            {"run.duration_s", "2.1"},
+                            {"supply.switching_frequency_Hz", "9523.809523809523"},
+                            {"sensors.speed.window_s", "2.1e-3"}})
             .run.plant_step_s == 7e-6);
   CHECK(error_of(whole_text(), {{"run.plant_step_s", "7e-6"}}).key() == "run.control_period_s");
 }
@@ -99,7 +106,7 @@ TEST_CASE("set_number: one number of a scenario that has been read", "[scenario]
   CHECK_FALSE(set_number(s, "load.9.torque_Nm", 3.0));                     // no such load
   CHECK_FALSE(set_number(s, "estimator.0.adaptation_bandwidth_Hz", 3.0));  // of another kind
   CHECK_FALSE(set_number(s, "run.method", 3.0));
-  CHECK_FALSE(set_number(s, "run.plant_step_s", 1e-5));                    // structural
+  CHECK_FALSE(set_number(s, "run.plant_step_s", 1e-5));  // structural
   CHECK_FALSE(set_number(s, "nothing", 3.0));
   CHECK_THROWS_AS(set_number(s, "belief.rotor_resistance", -1.0), InputError);
   CHECK_THROWS_AS(set_number(s, "belief.rotor_resistance", std::nan("")), InputError);

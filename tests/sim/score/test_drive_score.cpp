@@ -63,7 +63,8 @@ TEST_CASE("drive score: a speed dip of known depth and decay", "[score][closed_f
   CHECK(*f.recovery_s == Approx(next_tick - 0.3).epsilon(1e-9));  // times of ticks, in rounding
 }
 
-TEST_CASE("drive score: the worst of several load steps; one that is not recovered leaves no recovery", "[score][closed_form]") {
+TEST_CASE("drive score: the worst of several load steps; one that is not recovered leaves no recovery",
+          "[score][closed_form]") {
   ScoreBasis b = basis();
   b.load_steps_s = {0.2, 0.6};
   b.window.from_s = 0.1;
@@ -72,7 +73,8 @@ TEST_CASE("drive score: the worst of several load steps; one that is not recover
     Stream{}.feed(score, [&](double t, PlantRow& plant, std::vector<Estimate<double>>&, bool&) {
       const double k = std::round(t * 1e3);
       plant[P::speed_reference_rpm] = 1000.0;
-      plant[P::speed_rpm] = 1000.0 - (k >= 200 && k < 250 ? 40.0 : 0.0) + (k >= 600 && k < 600 + second_ms ? 70.0 : 0.0);
+      plant[P::speed_rpm] =
+          1000.0 - (k >= 200 && k < 250 ? 40.0 : 0.0) + (k >= 600 && k < 600 + second_ms ? 70.0 : 0.0);
     });
     return score.figures();
   };
@@ -82,7 +84,8 @@ TEST_CASE("drive score: the worst of several load steps; one that is not recover
   CHECK_FALSE(run(1000).recovery_s);
 }
 
-TEST_CASE("drive score: without a reference there is no tracking, and the dip counts from the speed at the step", "[score][edge]") {
+TEST_CASE("drive score: without a reference there is no tracking, and the dip counts from the speed at the step",
+          "[score][edge]") {
   ScoreBasis b = basis();
   b.load_steps_s = {0.5};
   b.has_controller = false;
@@ -105,7 +108,8 @@ TEST_CASE("drive score: copper loss equals the equivalent circuit's", "[score][c
   const auto& c = b.circuit;
   using Complex = std::complex<double>;
   const double w = 2.0 * pi * 60.0, slip = 0.05;
-  const Complex j(0, 1), z_m = j * w * c.magnetizing_inductance, z_r = c.rotor_resistance / slip + j * w * c.rotor_leakage;
+  const Complex j(0, 1), z_m = j * w * c.magnetizing_inductance,
+                         z_r = c.rotor_resistance / slip + j * w * c.rotor_leakage;
   const Complex z = c.stator_resistance + j * w * c.stator_leakage + z_m * z_r / (z_m + z_r);
   const Complex i_s = 127.0 / z, i_r = -i_s * z_m / (z_m + z_r);  // rms; the rotor current into its terminals
   const double loss = 3.0 * (c.stator_resistance * std::norm(i_s) + c.rotor_resistance * std::norm(i_r));

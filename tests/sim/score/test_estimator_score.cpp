@@ -38,14 +38,16 @@ EstimatorFigures with_speed_error(const ScoreBasis& b, const std::function<doubl
 
 }  // namespace
 
-TEST_CASE("estimator score: a constant and a whole number of sine periods give their closed forms", "[score][closed_form]") {
+TEST_CASE("estimator score: a constant and a whole number of sine periods give their closed forms",
+          "[score][closed_form]") {
   // e = 3 + 8 sin(2 pi 5 t) over 1000 ticks of whole periods: bias 3, mean square 9 + 32, and tick 1000 lies beyond.
   ScoreBasis b = basis();
   b.window.to_s = 0.999;
   const EstimatorFigures f = with_speed_error(b, [](double t) { return 3.0 + 8.0 * std::sin(2.0 * pi * 5.0 * t); });
-  CHECK(*f.speed_bias_rpm == Approx(3.0).epsilon(0).margin(900 * rounding));       // of the 900 rpm taken off
+  CHECK(*f.speed_bias_rpm == Approx(3.0).epsilon(0).margin(900 * rounding));  // of the 900 rpm taken off
   CHECK(*f.speed_rmse_rpm == Approx(std::sqrt(41.0)).epsilon(0).margin(900 * rounding));
-  CHECK(*f.speed_max_error_rpm == Approx(11.0).epsilon(0).margin(900 * rounding));  // the sine's peak is a tick (t = 0.05)
+  CHECK(*f.speed_max_error_rpm ==
+        Approx(11.0).epsilon(0).margin(900 * rounding));  // the sine's peak is a tick (t = 0.05)
 }
 
 TEST_CASE("estimator score: the window's ends are inside", "[score][closed_form]") {
@@ -62,7 +64,8 @@ TEST_CASE("estimator score: the window's ends are inside", "[score][closed_form]
   }
 }
 
-TEST_CASE("estimator score: an angle error wraps, and is left out below a tenth of the rated flux", "[score][closed_form]") {
+TEST_CASE("estimator score: an angle error wraps, and is left out below a tenth of the rated flux",
+          "[score][closed_form]") {
   EstimatorScore score(basis());
   Stream{}.feed(score, [](double t, PlantRow& plant, std::vector<Estimate<double>>& e, bool&) {
     const bool fluxless = t < 0.4995;
@@ -117,7 +120,8 @@ TEST_CASE("estimator score: settled from the first tick that stays in the band",
 }
 
 TEST_CASE("estimator score: an estimate that is no number is lost at once and has no rms", "[score][edge]") {
-  const EstimatorFigures f = with_speed_error(basis(), [](double t) { return t > 0.4 && t < 0.4015 ? no_number : 0.0; });
+  const EstimatorFigures f =
+      with_speed_error(basis(), [](double t) { return t > 0.4 && t < 0.4015 ? no_number : 0.0; });
   CHECK(*f.lost_at_s == Approx(0.401).epsilon(rounding));
   CHECK_FALSE(f.speed_rmse_rpm);
   CHECK_FALSE(f.speed_bias_rpm);

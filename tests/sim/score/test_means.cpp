@@ -43,10 +43,10 @@ TEST_CASE("column means: plant, measured and estimator columns by name, over the
   };
   const auto all = means.means();
   REQUIRE(all.size() == plant_column_count + 1 + 10);
-  CHECK(value(all, "torque_Nm") == 5.0);                                 // ticks 2..8
-  CHECK(std::isnan(value(all, "speed_reference_rpm")));                  // one NaN: no mean
-  CHECK(value(all, "measured.i_a_A") == 30.0);                           // rows 4, 16, 36, 64
-  CHECK(value(all, "two.speed_rpm") == Approx(150.0).epsilon(1e-14));    // a change of unit, two roundings a term
+  CHECK(value(all, "torque_Nm") == 5.0);                               // ticks 2..8
+  CHECK(std::isnan(value(all, "speed_reference_rpm")));                // one NaN: no mean
+  CHECK(value(all, "measured.i_a_A") == 30.0);                         // rows 4, 16, 36, 64
+  CHECK(value(all, "two.speed_rpm") == Approx(150.0).epsilon(1e-14));  // a change of unit, two roundings a term
   CHECK(value(all, "two.trust") == 0.5);
   CHECK(value(all, "one.speed_rpm") == 0.0);
   const auto last = means.last();

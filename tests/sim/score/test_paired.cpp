@@ -38,7 +38,8 @@ TEST_CASE("mean interval: a worked example", "[score][closed_form]") {
   const Interval interval = mean_interval(values);
   CHECK(interval.runs == 5);
   CHECK(*interval.mean == 3.0);
-  CHECK(*interval.high - 3.0 == Approx(2.776 * std::sqrt(0.5)).epsilon(0).margin(4e-4));  // half a digit of t, times 0.71
+  CHECK(*interval.high - 3.0 ==
+        Approx(2.776 * std::sqrt(0.5)).epsilon(0).margin(4e-4));  // half a digit of t, times 0.71
   CHECK(3.0 - *interval.low == Approx(*interval.high - 3.0).epsilon(1e-14));
   CHECK(interval.excludes_zero());
 }

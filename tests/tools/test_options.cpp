@@ -1,0 +1,81 @@
+// The command line: what is understood, what is refused and how.
+#include <catch2/catch.hpp>
+
+#include "tools/slipbench/options.hpp"
+
+using namespace slipbench;
+
+namespace {
+
+std::string refusal(const std::vector<std::string>& arguments) {
+  try {
+    parse_command_line(arguments);
+  } catch (const InputError& error) {
+    CHECK(error.place() == "command line");
+    CHECK(error.code() == "usage");
+    return error.message();
+  }
+  FAIL("accepted");
+  return "";
+}
+
+}  // namespace
+
+TEST_CASE("command line: verb, file and options in any order after the verb", "[tools][contract]") {
+  const auto line =
+      parse_command_line({"run", "--set", "run.duration_s=1.0", "a.toml", "--seed", "18446744073709551615", "--set",
+                          "load.0.torque_Nm=[[0, 0], [1, 2]]", "--json", "--trace=t.csv", "--set=title=a=b"});
+  REQUIRE(line.request);
+  CHECK(line.request->verb == "run");
+  CHECK(line.request->file == "a.toml");
+  CHECK(*line.request->seed == 18446744073709551615u);
+  CHECK(line.request->json);
+  CHECK(line.request->trace == "t.csv");
+  REQUIRE(line.request->overrides.size() == 3);
+  CHECK(line.request->overrides[1].key == "load.0.torque_Nm");
+  CHECK(line.request->overrides[1].value == "[[0, 0], [1, 2]]");
+  CHECK(line.request->overrides[2].value == "a=b");
+  const auto compare = parse_command_line({"compare", "a.toml", "--runs", "7", "--in-loop", "--threads", "3"});
+  CHECK(compare.request->runs == 7);
+  CHECK(compare.request->in_loop);
+  CHECK(compare.request->threads == 3);
+  CHECK_FALSE(compare.request->seed);
+}
+
+TEST_CASE("command line: help shows an example and the cautions for every verb", "[tools][contract]") {
+  for (const std::string verb : {"run", "check", "compare"}) {
+    const std::string text = parse_command_line({verb, "--help"}).text;
+    CHECK_THAT(text, Catch::Contains("Example:\n  slipbench " + verb + " "));
+    CHECK_THAT(text, Catch::Contains("Caution: a simulation does not replace commissioning by qualified people"));
+  }
+  CHECK_THAT(parse_command_line({"--help"}).text, Catch::Contains("slipbench compare "));
+  CHECK_THAT(parse_command_line({"--version"}).text, Catch::StartsWith("slipbench "));
+}
+
+TEST_CASE("command line: mistakes are named, with the nearest known word", "[tools][edge]") {
+  using Catch::Contains;
+  CHECK_THAT(refusal({}), Contains("a verb is needed"));
+  CHECK_THAT(refusal({"rnu", "a.toml"}),
+             Contains("unknown verb 'rnu'") && Contains("run, check, compare") && Contains("nearest is 'run'"));
+  CHECK_THAT(refusal({"--json", "run", "a.toml"}), Contains("in front of the verb"));
+  CHECK_THAT(refusal({"run"}), Contains("needs a FILE"));
+  CHECK_THAT(refusal({"run", ""}), Contains("needs a FILE"));
+  CHECK_THAT(refusal({"run", "a.toml", "b.toml"}), Contains("'b.toml' is one argument too many"));
+  CHECK_THAT(refusal({"run", "a.toml", "--sead", "1"}),
+             Contains("unknown option '--sead'") && Contains("nearest is --seed"));
+  CHECK_THAT(refusal({"run", "--runs", "20", "a.toml"}), Contains("--runs means nothing for run"));
+  CHECK_THAT(refusal({"check", "a.toml", "--trace", "x.csv"}), Contains("--trace means nothing for check"));
+  CHECK_THAT(refusal({"compare", "a.toml", "--trace", "x.csv"}), Contains("--trace means nothing for compare"));
+  CHECK_THAT(refusal({"run", "a.toml", "--seed"}), Contains("--seed needs a value"));
+  CHECK_THAT(refusal({"run", "a.toml", "--seed", "1", "--seed", "2"}), Contains("more than once"));
+  for (const std::string bad : {"-1", "1.5", "x", "18446744073709551616", ""}) {
+    CHECK_THAT(refusal({"run", "a.toml", "--seed=" + bad}), Contains("--seed"));
+  }
+  CHECK_THAT(refusal({"compare", "a.toml", "--runs", "0"}), Contains("whole number from 1"));
+  CHECK_THAT(refusal({"run", "a.toml", "--set", "noequals"}), Contains("KEY=VALUE"));
+  CHECK_THAT(refusal({"run", "a.toml", "--set", "=3"}), Contains("KEY=VALUE"));
+  CHECK_THAT(refusal({"run", "a.toml", "--trace", "x.h5"}), Contains("HDF5") && Contains("CSV"));
+  CHECK_THAT(refusal({"run", "a.toml", "--trace", "x.txt"}), Contains(".csv"));
+  CHECK_THAT(refusal({"run", "a.toml", "--trace", ""}), Contains("name of a file"));
+  CHECK_THAT(refusal({"run", "a.toml", "--figure", "x.png"}), Contains(".svg"));
+}
