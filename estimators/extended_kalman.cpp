@@ -51,7 +51,7 @@ ExtendedKalman::State<double> ExtendedKalman::begin(const EstimatorSetup& setup,
   State<double> s;
   s.x.flux = {setup.start_rotor_flux_Wb / c.model.machine.per_flux_ratio, 0.0};
   s.x.speed = setup.start_speed_rad_s * c.model.machine.pole_pairs;
-  for (std::size_t n = 0; n < 6; ++n) s.P(n, n) = square(c.start_deviation[start_kind[n]]);
+  for (std::size_t n = 0; n < 6; ++n) s.P.set(n, n, square(c.start_deviation[start_kind[n]]));
   return s;
 }
 

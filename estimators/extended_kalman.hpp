@@ -4,7 +4,7 @@
 //   (i, psi)+ = series of estimators/believed_machine.hpp at w_r with the held voltage
 //   w_r+      = w_r + T p / J (torque - T_load - b w_r / p)     with load_torque = 1;    w_r+ = w_r with 0: a random walk
 //   P-  = F P F' + Q,   y = i_measured - i-,   S = P-_ii + R,   K = P-_(.,i) S^-1
-//   x   = x- + K y,     P = (1 - K H) P- (1 - K H)' + K R K'    (Joseph's form, one triangle kept)
+//   x   = x- + K y,     P = (1 - K H) P- (1 - K H)' + K R K'    (Joseph's form, each entry once: symmetric)
 //
 // F is written by hand below. R for three current sensors of variance s^2 is (2/3) s^2 1, for two s^2 [1,
 // 1/sqrt3; 1/sqrt3, 5/3] (alpha = i_a, beta = (i_a + 2 i_b) / sqrt3: correlated). The speed's and the load's
@@ -90,7 +90,7 @@ struct ExtendedKalman {
     const KalmanPrediction<Real> next = predict_with_jacobian(c.model, x, voltage);
     x = next.x;
     P = sandwich(next.F, P);
-    for (std::size_t n = 0; n < 6; ++n) P(n, n) = P(n, n) + c.process[n];
+    for (std::size_t n = 0; n < 6; ++n) P.set(n, n, P(n, n) + c.process[n]);
   }
 
   // Innovation y and its covariance S (11, 12, 22), for consistency tests.
@@ -113,7 +113,7 @@ struct ExtendedKalman {
     const Real s11 = per_det * in.S_diagonal.y, s12 = -per_det * in.S_cross, s22 = per_det * in.S_diagonal.x;
     Mat<Real, 6, 2> K;
     for (std::size_t n = 0; n < 6; ++n) {
-      K[n] = {P.at(n, 0) * s11 + P.at(n, 1) * s12, P.at(n, 0) * s12 + P.at(n, 1) * s22};
+      K[n] = {P(n, 0) * s11 + P(n, 1) * s12, P(n, 0) * s12 + P(n, 1) * s22};
     }
     const auto gain = [&](std::size_t n) { return K[n][0] * in.y.x + K[n][1] * in.y.y; };
     x.current = x.current + Vec2<Real>{gain(0), gain(1)};
@@ -124,13 +124,13 @@ struct ExtendedKalman {
     // M = (1 - K H) P-, then P = M (1 - K H)' + K R K'.
     Mat<Real, 6, 6> M;
     for (std::size_t r = 0; r < 6; ++r) {
-      for (std::size_t n = 0; n < 6; ++n) M[r][n] = P.at(r, n) - (K[r][0] * P.at(0, n) + K[r][1] * P.at(1, n));
+      for (std::size_t n = 0; n < 6; ++n) M[r][n] = P(r, n) - (K[r][0] * P(0, n) + K[r][1] * P(1, n));
     }
     for (std::size_t r = 0; r < 6; ++r) {
       const Real kr0 = K[r][0] * c.noise_diagonal.x + K[r][1] * c.noise_cross;
       const Real kr1 = K[r][0] * c.noise_cross + K[r][1] * c.noise_diagonal.y;
       for (std::size_t n = r; n < 6; ++n) {
-        P(r, n) = (M[r][n] - (M[r][0] * K[n][0] + M[r][1] * K[n][1])) + (kr0 * K[n][0] + kr1 * K[n][1]);
+        P.set(r, n, (M[r][n] - (M[r][0] * K[n][0] + M[r][1] * K[n][1])) + (kr0 * K[n][0] + kr1 * K[n][1]));
       }
     }
     return in;
@@ -147,7 +147,7 @@ struct ExtendedKalman {
     for (std::size_t r = 0; r < 6; ++r) {
       for (std::size_t n = r; n < 6; ++n) {
         const Real fresh = r == n ? square(c.start_deviation[start_kind[r]]) : zero;
-        s.P(r, n) = select(lost, fresh, s.P(r, n));
+        s.P.set(r, n, select(lost, fresh, s.P(r, n)));
       }
     }
   }
@@ -161,7 +161,9 @@ struct ExtendedKalman {
     Symmetric6<Real> P = s.P;
     predict(x, P, Vec2<Real>{sample.u_alpha, sample.u_beta}, c);
     s.x = select(first, s.x, x);
-    for (std::size_t n = 0; n < P.upper.size(); ++n) s.P.upper[n] = select(first, s.P.upper[n], P.upper[n]);
+    for (std::size_t r = 0; r < 6; ++r) {
+      for (std::size_t n = r; n < 6; ++n) s.P.set(r, n, select(first, s.P(r, n), P(r, n)));
+    }
     const Vec2<Real> i{sample.i_alpha, sample.i_beta};
     const Innovation<Real> in = correct(s.x, s.P, i, c);
     s.surprise = s.surprise + c.surprise_share * (min(in.normalised(), Real(1000.0)) - s.surprise);

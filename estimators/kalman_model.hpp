@@ -1,5 +1,5 @@
 // What the extended Kalman filter believes about a step ahead: the discrete model, its Jacobian written by
-// hand, and the symmetric matrices it works on (upper triangle alone, so symmetric by construction).
+// hand, and the symmetric matrices it works on.
 //
 // With A(w) = A0 + w A1 and the held voltage, f = A x + b u, the series x + T f + T^2/2 A f + T^3/6 A^2 f
 // gives
@@ -33,15 +33,13 @@ struct KalmanModel {
   SLIPBENCH_FIELDS(machine, speed_per_torque, damping)
 };
 
-// Symmetric 6 x 6, upper triangle row by row. (r, c) needs r <= c; at(r, c) takes either order.
+// Symmetric 6 x 6: each entry is computed once and written to both places, so symmetric by construction.
 template <class Real>
 struct Symmetric6 {
-  std::array<Real, 21> upper{};
-  SLIPBENCH_FIELDS(upper)
-  static constexpr std::size_t place(std::size_t r, std::size_t c) { return r * (11 - r) / 2 + c; }
-  Real& operator()(std::size_t r, std::size_t c) { return upper[place(r, c)]; }
-  const Real& operator()(std::size_t r, std::size_t c) const { return upper[place(r, c)]; }
-  const Real& at(std::size_t r, std::size_t c) const { return r <= c ? upper[place(r, c)] : upper[place(c, r)]; }
+  Mat<Real, 6, 6> entry{};
+  SLIPBENCH_FIELDS(entry)
+  const Real& operator()(std::size_t r, std::size_t c) const { return entry[r][c]; }
+  void set(std::size_t r, std::size_t c, const Real& value) { entry[r][c] = entry[c][r] = value; }
 };
 
 // The Jacobian's parts that are neither 0 nor 1.
@@ -114,28 +112,28 @@ Symmetric6<Real> sandwich(const KalmanJacobian<Real>& F, const Symmetric6<Real>&
   Mat<Real, 6, 6> FP;
   for (std::size_t c = 0; c < 6; ++c) {
     for (std::size_t r = 0; r < 4; ++r) {
-      Real sum = F.electrical[r][0] * P.at(0, c);
-      for (std::size_t k = 1; k < 5; ++k) sum = sum + F.electrical[r][k] * P.at(k, c);
+      Real sum = F.electrical[r][0] * P(0, c);
+      for (std::size_t k = 1; k < 5; ++k) sum = sum + F.electrical[r][k] * P(k, c);
       FP[r][c] = sum;
     }
-    Real sum = F.speed[0] * P.at(0, c);
-    for (std::size_t k = 1; k < 6; ++k) sum = sum + F.speed[k] * P.at(k, c);
+    Real sum = F.speed[0] * P(0, c);
+    for (std::size_t k = 1; k < 6; ++k) sum = sum + F.speed[k] * P(k, c);
     FP[4][c] = sum;
-    FP[5][c] = P.at(5, c);
+    FP[5][c] = P(5, c);
   }
   Symmetric6<Real> out;
   for (std::size_t r = 0; r < 6; ++r) {
     for (std::size_t c = r; c < 4; ++c) {
       Real sum = FP[r][0] * F.electrical[c][0];
       for (std::size_t k = 1; k < 5; ++k) sum = sum + FP[r][k] * F.electrical[c][k];
-      out(r, c) = sum;
+      out.set(r, c, sum);
     }
     if (r <= 4) {
       Real sum = FP[r][0] * F.speed[0];
       for (std::size_t k = 1; k < 6; ++k) sum = sum + FP[r][k] * F.speed[k];
-      out(r, 4) = sum;
+      out.set(r, 4, sum);
     }
-    out(r, 5) = FP[r][5];
+    out.set(r, 5, FP[r][5]);
   }
   return out;
 }
@@ -145,11 +143,8 @@ template <class Real>
 void bound_variance(Symmetric6<Real>& P, std::size_t n, const Real& most) {
   const Real tiny(1e-30), one(1.0);
   const Real scale = select(P(n, n) > most, sqrt(most / max(P(n, n), tiny)), one);
-  for (std::size_t k = 0; k < 6; ++k) {
-    Real& entry = k <= n ? P(k, n) : P(n, k);
-    entry = scale * entry;
-  }
-  P(n, n) = scale * P(n, n);
+  for (std::size_t k = 0; k < 6; ++k) P.set(n, k, scale * P(n, k));
+  P.set(n, n, scale * P(n, n));
 }
 
 }  // namespace slipbench

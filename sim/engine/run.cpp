@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <chrono>
 #include <cmath>
+#include <stdexcept>
 
 #include "plant/steady_state.hpp"
 #include "sim/scenario/input_error.hpp"
@@ -134,7 +135,11 @@ void Run::place_at_start() {
   }
   for (const auto& estimator : s.estimators) estimators_.push_back(make_estimator(estimator.kind, e, estimator.settings));
   if (!s.on_mains()) {
-    controller_ = make_controller(s.controller.kind, c, s.controller.settings);
+    try {
+      controller_ = make_controller(s.controller.kind, c, s.controller.settings);
+    } catch (const std::invalid_argument& unfit) {
+      throw InputError(s.path, "controller", std::string("the controller cannot be set up: ") + unfit.what(), "controller");
+    }
     pending_.assign(static_cast<std::size_t>(s.controller.delay_periods), duty_);
   }
   plant_.apply(duty_);

@@ -22,8 +22,10 @@ void check_estimator_names(const Scenario& s, const Node& root) {
                     "\"; a name is made of 1 to 64 letters, digits and _: it heads columns",
                 "range");
     }
-    if (name == "measured")
-      refuse_at(root, key, "'" + key + "' is \"measured\", which stands for the sensors; take another", "range");
+    if (name == "measured" || name == "plant") {
+      const char* taken = name == "plant" ? "the truth" : "the sensors";
+      refuse_at(root, key, "'" + key + "' is \"" + name + "\", which stands for " + taken + "; take another", "range");
+    }
     for (std::size_t j = 0; j < i; ++j) {
       if (s.estimators[j].name == name)
         refuse_at(root, key, "'" + key + "': the name \"" + name + "\" is taken by estimator." + std::to_string(j));

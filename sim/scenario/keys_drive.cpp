@@ -60,7 +60,7 @@ void control_keys(std::vector<Key>& keys) {
       .words({"indirect", "direct"});
   k.word("flux_from", AT(controller.flux_from), "estimator that gives the flux (direct orientation)");
   k.word("speed_from", AT(controller.speed_from), "\"measured\", or an estimator's name: sensorless");
-  k.number("delay_periods", AT(controller.delay_periods), "", {0, 4}, "control periods from sample to voltage");
+  k.number("delay_periods", AT(controller.delay_periods), "", {0, 2}, "control periods from sample to voltage");
   k.word("dead_time_compensation", AT(controller.dead_time_compensation), "add the believed inverter error");
   Rows estimator(keys, "estimator[]");
   estimator.word("name", AT(estimators[i].name), "letters, digits, _; unique").must();

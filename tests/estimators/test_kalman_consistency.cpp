@@ -22,7 +22,7 @@ Vector5 vector_of(const KalmanVector<double>& x) {
 Matrix5 matrix_of(const Symmetric6<double>& P) {
   Matrix5 out;
   for (std::size_t r = 0; r < 5; ++r) {
-    for (std::size_t c = 0; c < 5; ++c) out(Eigen::Index(r), Eigen::Index(c)) = P.at(r, c);
+    for (std::size_t c = 0; c < 5; ++c) out(Eigen::Index(r), Eigen::Index(c)) = P(r, c);
   }
   return out;
 }
@@ -33,7 +33,7 @@ double least_correlation(const Symmetric6<Real>& P, Eigen::Index n) {
   for (Eigen::Index r = 0; r < n; ++r) {
     for (Eigen::Index c = 0; c < n; ++c) {
       const auto a = std::size_t(r), b = std::size_t(c);
-      C(r, c) = double(P.at(a, b)) / std::sqrt(double(P(a, a)) * double(P(b, b)));
+      C(r, c) = double(P(a, b)) / std::sqrt(double(P(a, a)) * double(P(b, b)));
     }
   }
   return C.selfadjointView<Eigen::Upper>().eigenvalues().minCoeff();
@@ -177,7 +177,7 @@ double least_over(std::int64_t steps, double shaft, bool live = true) {
 
 }  // namespace
 
-// Symmetric by construction: one triangle is kept. Positive: the smallest eigenvalue of the correlation
+// Symmetric by construction: each entry is computed once. Positive: the smallest eigenvalue of the correlation
 // matrix.
 TEST_CASE("extended_kalman: covariance stays positive", "[estimators][kalman]") {
   for (const double shaft : {0.0, 1.0}) {

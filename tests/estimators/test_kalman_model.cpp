@@ -28,7 +28,7 @@ Matrix6 dense(const KalmanJacobian<double>& F) {
 Matrix6 dense(const Symmetric6<double>& P) {
   Matrix6 out;
   for (std::size_t r = 0; r < 6; ++r) {
-    for (std::size_t c = 0; c < 6; ++c) out(Eigen::Index(r), Eigen::Index(c)) = P.at(r, c);
+    for (std::size_t c = 0; c < 6; ++c) out(Eigen::Index(r), Eigen::Index(c)) = P(r, c);
   }
   return out;
 }
@@ -79,7 +79,7 @@ TEST_CASE("extended_kalman: covariance prediction equals the dense product", "[e
   const Matrix6 root = Matrix6::Random(), full = root * root.transpose();
   Symmetric6<double> P;
   for (std::size_t r = 0; r < 6; ++r) {
-    for (std::size_t c = r; c < 6; ++c) P(r, c) = full(Eigen::Index(r), Eigen::Index(c));
+    for (std::size_t c = r; c < 6; ++c) P.set(r, c, full(Eigen::Index(r), Eigen::Index(c)));
   }
   const Matrix6 wanted = dense(F) * full * dense(F).transpose();
   CHECK((dense(sandwich(F, P)) - wanted).cwiseAbs().maxCoeff() < 1e-13 * wanted.cwiseAbs().maxCoeff());  // rounding
