@@ -30,6 +30,7 @@ struct Drive {
   Supply supply = Supply::mains;   // structural
   bool speed_imposed = false;      // structural: a dynamometer holds the speed, the shaft equation is off
   bool inverter_ideal = false;     // structural: no dead time, no drop
+  bool opposed = true;             // structural: Coulomb friction or a constant torque acts somewhere
 
   Machine<Real> machine{};
   Shaft<Real> shaft{};
@@ -55,29 +56,49 @@ void apply_duty(const Drive<Real>& d, DriveInput<Real>& in, const Phases<Real>& 
   in.leg_error_size = leg_error_size(d.leg, duty, dc_link);
 }
 
+// What the supply gives at time t before leg errors: it does not depend on the state.
 template <class Real>
-Vec2<Real> stator_voltage(const Drive<Real>& d, const DriveInput<Real>& in, const Vec2<Real>& current, double t) {
-  if (d.supply == Supply::mains) return mains_voltage(d.mains, t);
-  if (d.inverter_ideal) return in.ideal_voltage;
-  return in.ideal_voltage + clarke(leg_errors(d.leg, phases_of(current), in.leg_error_size));
+Vec2<Real> source_voltage(const Drive<Real>& d, const DriveInput<Real>& in, double t) {
+  return d.supply == Supply::mains ? mains_voltage(d.mains, t) : in.ideal_voltage;
+}
+
+template <class Real>
+Vec2<Real> stator_voltage(const Drive<Real>& d, const DriveInput<Real>& in, const Vec2<Real>& source,
+                          const Vec2<Real>& current) {
+  if (d.supply == Supply::mains || d.inverter_ideal) return source;
+  return source + clarke(leg_errors(d.leg, phases_of(current), in.leg_error_size));
 }
 
 template <class Real>
 Real total_load(const Drive<Real>& d, const DriveInput<Real>& in, const Real& speed, double t) {
-  return load_torque(d.load, in.load_profile.at(t), speed) + in.noise_torque;
+  const Real steady = in.load_profile.at(t) + in.noise_torque + fan_torque(d.load, speed);
+  return d.opposed ? steady + opposing_torque(d.load, speed) : steady;
+}
+
+// Load and friction together.
+template <class Real>
+Real total_resistance(const Drive<Real>& d, const DriveInput<Real>& in, const Real& speed, double t) {
+  const Real steady = total_load(d, in, speed, t) + viscous_friction(d.shaft, speed);
+  return d.opposed ? steady + coulomb_friction(d.shaft, speed) : steady;
+}
+
+template <class Real>
+DriveState<Real> drive_derivative(const Drive<Real>& d, const DriveInput<Real>& in, const Vec2<Real>& source,
+                                  const DriveState<Real>& x, double t) {
+  const MachineFlux<Real> psi = flux_of(x);
+  const Vec2<Real> i_s = stator_current(d.machine, psi);
+  const Real speed = d.speed_imposed ? in.imposed_speed.at(t) : x[4];
+  const Vec2<Real> u = stator_voltage(d, in, source, i_s);
+  const MachineFlux<Real> dpsi = flux_derivative(d.machine, psi, i_s, u, d.machine.pole_pairs * speed);
+  const Real dspeed = d.speed_imposed
+                          ? in.imposed_speed.slope
+                          : d.shaft.per_inertia * (torque(d.machine, psi, i_s) - total_resistance(d, in, speed, t));
+  return {dpsi.stator.x, dpsi.stator.y, dpsi.rotor.x, dpsi.rotor.y, dspeed, speed};
 }
 
 template <class Real>
 DriveState<Real> drive_derivative(const Drive<Real>& d, const DriveInput<Real>& in, const DriveState<Real>& x, double t) {
-  const MachineFlux<Real> psi = flux_of(x);
-  const Vec2<Real> i_s = stator_current(d.machine, psi);
-  const Real speed = d.speed_imposed ? in.imposed_speed.at(t) : x[4];
-  const Vec2<Real> u = stator_voltage(d, in, i_s, t);
-  const MachineFlux<Real> dpsi = flux_derivative(d.machine, psi, i_s, u, d.machine.pole_pairs * speed);
-  const Real dspeed = d.speed_imposed
-                          ? in.imposed_speed.slope
-                          : acceleration(d.shaft, torque(d.machine, psi, i_s), total_load(d, in, speed, t), speed);
-  return {dpsi.stator.x, dpsi.stator.y, dpsi.rotor.x, dpsi.rotor.y, dspeed, speed};
+  return drive_derivative(d, in, source_voltage(d, in, t), x, t);
 }
 
 }  // namespace slipbench

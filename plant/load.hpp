@@ -19,10 +19,13 @@ struct Load {
   SLIPBENCH_FIELDS(opposing, per_width, fan)
 };
 
-// `profile`: the sum of all profiles at this time.
 template <class Real>
-Real load_torque(const Load<Real>& load, const Real& profile, const Real& speed) {
-  return profile + load.opposing * sat(speed * load.per_width) + load.fan * speed * fabs(speed);
+Real opposing_torque(const Load<Real>& load, const Real& speed) {
+  return load.opposing * sat(speed * load.per_width);
+}
+template <class Real>
+Real fan_torque(const Load<Real>& load, const Real& speed) {
+  return load.fan * speed * fabs(speed);
 }
 
 }  // namespace slipbench

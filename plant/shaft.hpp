@@ -21,13 +21,12 @@ struct Shaft {
 };
 
 template <class Real>
-Real friction(const Shaft<Real>& s, const Real& speed) {
-  return s.viscous * speed + s.coulomb * sat(speed * s.per_width);
+Real viscous_friction(const Shaft<Real>& s, const Real& speed) {
+  return s.viscous * speed;
 }
-
 template <class Real>
-Real acceleration(const Shaft<Real>& s, const Real& torque, const Real& load_torque, const Real& speed) {
-  return s.per_inertia * (torque - load_torque - friction(s, speed));
+Real coulomb_friction(const Shaft<Real>& s, const Real& speed) {
+  return s.coulomb * sat(speed * s.per_width);
 }
 
 }  // namespace slipbench

@@ -20,11 +20,18 @@ constexpr double Circuit<double>::* circuit_member(std::string_view quantity) {
   return nullptr;
 }
 
-// Everything of one step in one function: the calls of four stages would cost as much as their arithmetic.
+// Everything of one step in one function: the calls of four stages would cost as much as their arithmetic. Stages at one
+// time share the supply's voltage.
 [[gnu::flatten]] void advance(const Drive<double>& drive, const DriveInput<double>& input, Stepper method,
                               DriveState<double>& x, double t, double h) {
+  Vec2<double> source = source_voltage(drive, input, t);
+  double source_time = t;
   const auto system = [&](const DriveState<double>& at, DriveState<double>& dx, double time) {
-    dx = drive_derivative(drive, input, at, time);
+    if (time != source_time) {
+      source = source_voltage(drive, input, time);
+      source_time = time;
+    }
+    dx = drive_derivative(drive, input, source, at, time);
   };
   odeint_step(method, system, x, t, h);
 }
@@ -58,6 +65,7 @@ Plant::Plant(const Scenario& s, std::uint32_t noise_run)
     drive_.inverter_ideal = s.supply.dead_time_s == 0.0 && s.supply.device_drop_V == 0.0;
     drive_.leg = leg_error(s.supply.dead_time_s, s.supply.switching_frequency_Hz, s.supply.device_drop_V, s.supply.zero_current_width_A);
   }
+  drive_.opposed = drive_.load.opposing != 0.0 || drive_.shaft.coulomb != 0.0;
   for (const auto& d : s.drifts) {
     drifts_.push_back({circuit_member(d.quantity), d.quantity == "inertia", d.quantity == "dc_link", Profile(d.factor, 1.0, 1.0)});
   }
@@ -134,14 +142,15 @@ void Plant::step(std::int64_t n) {
 }
 
 Vec2<double> Plant::voltage_at(std::int64_t n) const {
-  return stator_voltage(drive_, input_, stator_current(drive_.machine, flux_of(x_)), static_cast<double>(n) * step_s_);
+  const Vec2<double> source = source_voltage(drive_, input_, static_cast<double>(n) * step_s_);
+  return stator_voltage(drive_, input_, source, stator_current(drive_.machine, flux_of(x_)));
 }
 
 double Plant::load_at_start(double speed) const {
   DriveInput<double> in = input_;
   in.load_profile = {};
   for (Profile p : loads_) in.load_profile.value += p.line_at(0.0).at(0.0);
-  return total_load(drive_, in, speed, 0.0) + friction(drive_.shaft, speed);
+  return total_resistance(drive_, in, speed, 0.0);
 }
 
 PlantRow Plant::row(std::int64_t n) {

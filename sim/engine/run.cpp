@@ -287,10 +287,18 @@ double Run::run_in() {
 void Run::go(std::span<RunObserver* const> observers) {
   const std::int64_t ticks = steps_ / steps_per_control_;
   PlantRow row{};
-  for (std::int64_t n = 0;; ++n) {
-    const bool control = n % steps_per_control_ == 0, trace = n % steps_per_trace_ == 0;
-    const std::int64_t k = n / steps_per_control_;
-    if (control) control_tick(k);
+  std::int64_t k = -1, trace_rows = -1, to_control = 0, to_trace = 0;  // counted, since dividing costs as much as a stage
+  std::int64_t n = 0;
+  for (;; ++n, --to_control, --to_trace) {
+    const bool control = to_control == 0, trace = to_trace == 0;
+    if (control) {
+      to_control = steps_per_control_;
+      control_tick(++k);
+    }
+    if (trace) {
+      to_trace = steps_per_trace_;
+      ++trace_rows;
+    }
     if ((control || trace) && !observers.empty()) row = plant_row(n);
     if (control) {
       const TickView view{k, row[P::time], &row, estimates_, command_.clipped != 0.0};
@@ -309,13 +317,13 @@ void Run::go(std::span<RunObserver* const> observers) {
                                                                  e.torque, e.trust};
         std::copy(columns.begin(), columns.end(), estimate_row_.begin() + static_cast<std::ptrdiff_t>(i * columns.size()));
       }
-      const RowView view{n / steps_per_trace_, &row, sensors_.values(), estimate_row_};
+      const RowView view{trace_rows, &row, sensors_.values(), estimate_row_};
       for (RunObserver* o : observers) o->trace_row(view);
     }
-    outcome.simulated_s = static_cast<double>(n) * scenario_.run.plant_step_s;
     if (n == steps_) break;
     plant_steps(n, 1);
   }
+  outcome.simulated_s = static_cast<double>(n) * scenario_.run.plant_step_s;
   outcome.clipped_samples = sensors_.clipped();
   outcome.step_ns.assign(step_seconds_.size(), 0.0);
   for (std::size_t i = 0; i < step_seconds_.size(); ++i) {

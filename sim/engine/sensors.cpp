@@ -46,6 +46,8 @@ Sensors::Sensors(const Scenario& s, std::uint32_t noise_run)
   timing_ = speed_sensor_timing(data, steps_per_tick_, s.run.control_period_s);
   speed_ = prepare_speed_sensor(data, s.run.plant_step_s);
   values_.assign(columns().size(), nan);
+  tracks_ = has_speed_ || current_.front().filtered || (has_voltage_ && voltage_.front().filtered) ||
+            (has_dc_link_ && dc_link_.front().filtered);
 }
 
 std::vector<Column> Sensors::columns() const {
@@ -92,7 +94,7 @@ void Sensors::begin(const Plant& plant, std::int64_t step) {
   angle_before_ = plant.angle();
 }
 
-void Sensors::track(const Plant& plant, std::int64_t step) {
+void Sensors::follow(const Plant& plant, std::int64_t step) {
   if (current_.front().filtered) filter(current_, plant.phase_currents());
   if (has_voltage_ && voltage_.front().filtered) filter(voltage_, phases_of(plant.voltage_at(step)));
   if (has_dc_link_) filter(dc_link_, {plant.dc_link(), 0.0, 0.0});

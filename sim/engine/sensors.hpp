@@ -27,7 +27,9 @@ class Sensors {
   // Settled at the plant's state, before plant step `step`.
   void begin(const Plant& plant, std::int64_t step);
   // After a plant step that ended at `step` (filters, encoder).
-  void track(const Plant& plant, std::int64_t step);
+  void track(const Plant& plant, std::int64_t step) {
+    if (tracks_) follow(plant, step);
+  }
   // The sample at control tick `tick`; noise only from tick 0 on.
   const Reading& read(const Plant& plant, std::int64_t tick);
 
@@ -48,10 +50,12 @@ class Sensors {
   static Three channels(const AnalogSensorSettings& s, double step_s, const std::array<std::string_view, 3>& names);
   static void settle(Three& channels, const Phases<double>& x);
   static void filter(Three& channels, const Phases<double>& x);
+  void follow(const Plant& plant, std::int64_t step);
   double convert_one(Channel& channel, double input, std::int64_t tick);
   Phases<double> convert_three(Three& channels, const Phases<double>& x, std::int64_t tick);
 
   bool mains_, two_currents_, has_voltage_, has_dc_link_, has_speed_;
+  bool tracks_ = false;  // some sensor has a memory between control ticks
   std::int64_t steps_per_tick_;
   double believed_dc_link_ = 0.0, current_noise_ = 0.0, angle_before_ = 0.0;
   Three current_, voltage_, dc_link_;

@@ -22,6 +22,13 @@ void* counted(std::size_t size) {
 }  // namespace
 void* operator new(std::size_t size) { return counted(size); }
 void* operator new[](std::size_t size) { return counted(size); }
+// These two as well: a sanitizer brings its own otherwise, which do not call the ones above.
+void* operator new(std::size_t size, const std::nothrow_t&) noexcept {
+  return ++allocations, std::malloc(size ? size : 1);
+}
+void* operator new[](std::size_t size, const std::nothrow_t&) noexcept {
+  return ++allocations, std::malloc(size ? size : 1);
+}
 void operator delete(void* memory) noexcept { std::free(memory); }
 void operator delete[](void* memory) noexcept { std::free(memory); }
 void operator delete(void* memory, std::size_t) noexcept { std::free(memory); }

@@ -116,11 +116,11 @@ TEST_CASE("energy: what goes in is stored, lost or delivered", "[published][plan
     const DriveState<double> s = split(x), ds = drive_derivative(d, in, s, t);
     std::copy(ds.begin(), ds.end(), dx.begin());
     const MachineFlux<double> psi = flux_of(s);
-    const Vec2<double> i_s = stator_current(d.machine, psi), i_r = rotor_current(d.machine, psi), u = stator_voltage(d, in, i_s, t);
+    const Vec2<double> i_s = stator_current(d.machine, psi), i_r = rotor_current(d.machine, psi), u = source_voltage(d, in, t);
     dx[6] = 1.5 * dot(u, i_s);
     dx[7] = 1.5 * d.machine.R_s * dot(i_s, i_s);
     dx[8] = 1.5 * d.machine.R_r * dot(i_r, i_r);
-    dx[9] = friction(d.shaft, s[4]) * s[4];
+    dx[9] = viscous_friction(d.shaft, s[4]) * s[4];
     dx[10] = total_load(d, in, s[4], t) * s[4];
   };
   State x{};

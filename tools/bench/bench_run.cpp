@@ -116,3 +116,5 @@ void sensorless_drive(benchmark::State& state) {
 BENCHMARK(sensorless_drive)->Unit(benchmark::kMillisecond)->Iterations(9);
 
 }  // namespace
+
+BENCHMARK_MAIN();
