@@ -43,17 +43,17 @@ struct Drive {
 template <class Real>
 struct DriveInput {
   Vec2<Real> ideal_voltage{};      // what the duties give without leg errors, V
-  Phases<Real> leg_error_size{};   // V
+  LegPull<Real> leg_pull{};        // V
   Real noise_torque{};             // N m, adds to the load
   Line<Real> load_profile{};       // N m
   Line<Real> imposed_speed{};      // rad/s
-  SLIPBENCH_FIELDS(ideal_voltage, leg_error_size, noise_torque, load_profile, imposed_speed)
+  SLIPBENCH_FIELDS(ideal_voltage, leg_pull, noise_torque, load_profile, imposed_speed)
 };
 
 template <class Real>
 void apply_duty(const Drive<Real>& d, DriveInput<Real>& in, const Phases<Real>& duty, const Real& dc_link) {
   in.ideal_voltage = applied_voltage(duty, dc_link);
-  in.leg_error_size = leg_error_size(d.leg, duty, dc_link);
+  in.leg_pull = leg_pull(leg_error_size(d.leg, duty, dc_link));
 }
 
 // What the supply gives at time t before leg errors: it does not depend on the state.
@@ -66,20 +66,20 @@ template <class Real>
 Vec2<Real> stator_voltage(const Drive<Real>& d, const DriveInput<Real>& in, const Vec2<Real>& source,
                           const Vec2<Real>& current) {
   if (d.supply == Supply::mains || d.inverter_ideal) return source;
-  return source + clarke(leg_errors(d.leg, phases_of(current), in.leg_error_size));
+  return source + leg_error_vector(d.leg, in.leg_pull, current);
 }
 
 template <class Real>
 Real total_load(const Drive<Real>& d, const DriveInput<Real>& in, const Real& speed, double t) {
-  const Real steady = in.load_profile.at(t) + in.noise_torque + fan_torque(d.load, speed);
-  return d.opposed ? steady + opposing_torque(d.load, speed) : steady;
+  const Real free = in.load_profile.at(t) + in.noise_torque + fan_torque(d.load, speed);
+  return d.opposed ? free + d.load.opposing * d.shaft.against(speed) : free;
 }
 
 // Load and friction together.
 template <class Real>
 Real total_resistance(const Drive<Real>& d, const DriveInput<Real>& in, const Real& speed, double t) {
-  const Real steady = total_load(d, in, speed, t) + viscous_friction(d.shaft, speed);
-  return d.opposed ? steady + coulomb_friction(d.shaft, speed) : steady;
+  const Real free = in.load_profile.at(t) + in.noise_torque + fan_torque(d.load, speed) + d.shaft.viscous * speed;
+  return d.opposed ? free + (d.load.opposing + d.shaft.coulomb) * d.shaft.against(speed) : free;
 }
 
 template <class Real>

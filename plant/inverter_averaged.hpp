@@ -47,6 +47,25 @@ Phases<Real> leg_errors(const LegError<Real>& e, const Phases<Real>& current, co
   return leg_errors(e, current, leg_error_size(e, duty, dc_link));
 }
 
+// Clarke's transform of the leg errors straight from the current vector, the weights folded into the sizes: the same up to
+// rounding, in half the chain of operations. A stepper evaluates it at every stage.
+template <class Real>
+struct LegPull {
+  Real a_x{}, b_x{}, c_x{}, b_y{}, c_y{};
+  SLIPBENCH_FIELDS(a_x, b_x, c_x, b_y, c_y)
+};
+template <class Real>
+LegPull<Real> leg_pull(const Phases<Real>& size) {
+  const Real third(1.0 / 3.0), inv_sqrt3(0.57735026918962576451);
+  return {Real(2.0) * third * size.a, third * size.b, third * size.c, inv_sqrt3 * size.b, inv_sqrt3 * size.c};
+}
+template <class Real>
+Vec2<Real> leg_error_vector(const LegError<Real>& e, const LegPull<Real>& pull, const Vec2<Real>& current) {
+  const Real along = Real(-0.5) * e.per_width * current.x, across = Real(0.86602540378443864676) * e.per_width * current.y;
+  const Real a = sat(e.per_width * current.x), b = sat(along + across), c = sat(along - across);
+  return {(pull.b_x * b + pull.c_x * c) - pull.a_x * a, pull.c_y * c - pull.b_y * b};
+}
+
 // Mean stator voltage including the leg errors.
 template <class Real>
 Vec2<Real> averaged_voltage(const LegError<Real>& e, const Phases<Real>& current, const Phases<Real>& duty,

@@ -18,15 +18,9 @@ struct Shaft {
   Real coulomb{};      // T_c
   Real per_width{};    // 1/w_0
   SLIPBENCH_FIELDS(per_inertia, viscous, coulomb, per_width)
-};
 
-template <class Real>
-Real viscous_friction(const Shaft<Real>& s, const Real& speed) {
-  return s.viscous * speed;
-}
-template <class Real>
-Real coulomb_friction(const Shaft<Real>& s, const Real& speed) {
-  return s.coulomb * sat(speed * s.per_width);
-}
+  // Which way what opposes motion acts: sat(w / w_0).
+  [[nodiscard]] Real against(const Real& speed) const { return sat(speed * per_width); }
+};
 
 }  // namespace slipbench

@@ -49,7 +49,6 @@ Plant::Plant(const Scenario& s, std::uint32_t noise_run)
   drive_.machine = make_machine(circuit_);
   const double width = s.shaft.friction_width_rpm * rad_s_per_rpm;
   drive_.shaft = {1.0 / inertia_, s.shaft.viscous_friction_Nms, s.shaft.coulomb_friction_Nm, 1.0 / width};
-  drive_.load.per_width = 1.0 / width;
   for (const auto& load : s.loads) {
     if (load.kind == "profile") loads_.emplace_back(load.torque_profile, 1.0);
     if (load.kind == "constant_torque") drive_.load.opposing += load.torque_Nm;
@@ -67,7 +66,7 @@ Plant::Plant(const Scenario& s, std::uint32_t noise_run)
   }
   drive_.opposed = drive_.load.opposing != 0.0 || drive_.shaft.coulomb != 0.0;
   for (const auto& d : s.drifts) {
-    drifts_.push_back({circuit_member(d.quantity), d.quantity == "inertia", d.quantity == "dc_link", Profile(d.factor, 1.0, 1.0)});
+    drifts_.push_back({circuit_member(d.quantity), d.quantity == "inertia", d.quantity == "dc_link", Profile(d.factor, 1.0, 1.0), 1.0});
   }
   walk_per_tick_ = process_noise_.load_torque_Nm * sqrt(s.run.control_period_s);
   dc_link_now_ = dc_link_;
@@ -101,14 +100,19 @@ void Plant::disturb(std::int64_t tick) {
 }
 
 void Plant::set_drift(double t) {
-  if (drifts_.empty()) return;
-  circuit_now_ = circuit_;
-  double inertia = inertia_, dc_link = dc_link_;
+  bool moved = false;
   for (auto& drift : drifts_) {
     const double factor = drift.factor.line_at(t).at(t);
-    if (drift.circuit) circuit_now_.*drift.circuit *= factor;
-    if (drift.inertia) inertia *= factor;
-    if (drift.dc_link) dc_link *= factor;
+    moved = moved || factor != drift.now;
+    drift.now = factor;
+  }
+  if (!moved) return;
+  circuit_now_ = circuit_;
+  double inertia = inertia_, dc_link = dc_link_;
+  for (const auto& drift : drifts_) {
+    if (drift.circuit) circuit_now_.*drift.circuit *= drift.now;
+    if (drift.inertia) inertia *= drift.now;
+    if (drift.dc_link) dc_link *= drift.now;
   }
   drive_.machine = make_machine(circuit_now_);
   drive_.shaft.per_inertia = 1.0 / inertia;

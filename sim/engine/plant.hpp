@@ -46,6 +46,7 @@ class Plant {
     double Circuit<double>::*circuit = nullptr;  // or one of the others below
     bool inertia = false, dc_link = false;
     Profile factor;
+    double now = 1.0;
   };
 
   void set_lines(std::int64_t n);

@@ -25,7 +25,7 @@ AnalogChannel channel_of(const AnalogSensorSettings& s, std::size_t phase) {
 Sensors::Three Sensors::channels(const AnalogSensorSettings& s, double step_s, const std::array<std::string_view, 3>& names) {
   Three three;
   for (std::size_t phase = 0; phase < 3; ++phase) {
-    three.push_back({prepare_analog_sensor(channel_of(s, phase), step_s), {}, NoiseChannel(names[phase]), s.bandwidth_Hz > 0.0});
+    three.push_back({prepare_analog_sensor(channel_of(s, phase), step_s), {}, NoiseStream(NoiseChannel(names[phase])), s.bandwidth_Hz > 0.0});
   }
   return three;
 }
@@ -38,8 +38,8 @@ Sensors::Sensors(const Scenario& s, std::uint32_t noise_run)
       current_noise_(total_noise_rms(channel_of(s.sensors.current, 0))),
       current_(channels(s.sensors.current, s.run.plant_step_s, {"current_a", "current_b", "current_c"})),
       voltage_(channels(s.sensors.voltage, s.run.plant_step_s, {"voltage_a", "voltage_b", "voltage_c"})),
-      noise_(s.seed, noise_run) {
-  dc_link_.push_back({prepare_analog_sensor(channel_of(s.sensors.dc_link, 0), s.run.plant_step_s), {}, NoiseChannel("dc_link"),
+      noise_(s.seed, noise_run), speed_noise_(NoiseChannel("speed")) {
+  dc_link_.push_back({prepare_analog_sensor(channel_of(s.sensors.dc_link, 0), s.run.plant_step_s), {}, NoiseStream(NoiseChannel("dc_link")),
                       s.sensors.dc_link.bandwidth_Hz > 0.0});
   const SpeedSensorSettings& v = s.sensors.speed;
   const SpeedSensorData data{speed_kind(v.kind), v.noise_rpm, v.bandwidth_Hz, {v.lines_per_rev, v.clock_Hz, v.timeout_s}, v.window_s};
@@ -76,7 +76,7 @@ void Sensors::filter(Three& channels, const Phases<double>& x) {
 
 double Sensors::convert_one(Channel& channel, double input, std::int64_t tick) {
   if (!channel.filtered) channel.state.filtered = input;
-  const double normal = tick >= 0 && channel.sensor.noise_rms > 0.0 ? noise_.sample(channel.noise, tick) : 0.0;
+  const double normal = tick >= 0 && channel.sensor.noise_rms > 0.0 ? channel.noise.at(noise_, tick) : 0.0;
   const AnalogReading<double> reading = convert(channel.state, normal, channel.sensor);
   if (tick >= 0 && reading.clipped != 0.0) ++clipped_;
   return reading.value;
@@ -125,9 +125,8 @@ const Reading& Sensors::read(const Plant& plant, std::int64_t tick) {
   }
   reading_.dc_link = has_dc_link_ ? convert_one(dc_link_[0], plant.dc_link(), tick) : believed_dc_link_;
   if (!mains_) values_[at++] = reading_.dc_link;
-  constexpr NoiseChannel speed_noise("speed");
   const bool noisy = timing_.kind == SpeedSensorKind::tachogenerator && tick >= 0;
-  reading_.speed = read_speed(speed_state_, tick, noisy ? noise_.sample(speed_noise, tick) : 0.0, speed_, timing_);
+  reading_.speed = read_speed(speed_state_, tick, noisy ? speed_noise_.at(noise_, tick) : 0.0, speed_, timing_);
   if (has_speed_) values_[at++] = reading_.speed / rad_s_per_rpm;
   return reading_;
 }

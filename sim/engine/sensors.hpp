@@ -42,7 +42,7 @@ class Sensors {
   struct Channel {
     AnalogSensor<double> sensor;
     AnalogState<double> state;
-    NoiseChannel noise;
+    NoiseStream noise;
     bool filtered;
   };
   using Three = std::vector<Channel>;
@@ -63,6 +63,7 @@ class Sensors {
   SpeedSensor<double> speed_;
   SpeedSensorState<double> speed_state_;
   Noise noise_;
+  NoiseStream speed_noise_;
   Reading reading_;
   std::vector<double> values_;
   std::int64_t clipped_ = 0;

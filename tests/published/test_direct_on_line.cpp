@@ -120,7 +120,7 @@ TEST_CASE("energy: what goes in is stored, lost or delivered", "[published][plan
     dx[6] = 1.5 * dot(u, i_s);
     dx[7] = 1.5 * d.machine.R_s * dot(i_s, i_s);
     dx[8] = 1.5 * d.machine.R_r * dot(i_r, i_r);
-    dx[9] = viscous_friction(d.shaft, s[4]) * s[4];
+    dx[9] = d.shaft.viscous * s[4] * s[4];
     dx[10] = total_load(d, in, s[4], t) * s[4];
   };
   State x{};

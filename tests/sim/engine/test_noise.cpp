@@ -82,7 +82,7 @@ TEST_CASE("normal transform: agrees with 40-digit arithmetic on the published ve
   // sqrt(-2 log u1) cos(2 pi u2) in 40 digits. Bound: 4 ulp of a radius below 2, made up of log 2 (halved by
   // the root), root 1/2, cosine 2 and product 1/2.
   const auto normal = [](const PhiloxBlock& w) {
-    return normal_from_uniforms(uniform_from_words(w[0], w[1]), uniform_from_words(w[2], w[3]));
+    return normals_from_uniforms(uniform_from_words(w[0], w[1]), uniform_from_words(w[2], w[3])).even;
   };
   const double bound = 4 * 2.3e-16;
   CHECK(std::fabs(normal({0x6627e8d5, 0xe169c58d, 0xbc57ac4c, 0x9b00dbd8}) - -0.12151797595308087116) < bound);
@@ -90,12 +90,29 @@ TEST_CASE("normal transform: agrees with 40-digit arithmetic on the published ve
   CHECK(std::fabs(normal({0xd16cfe09, 0x94fdcceb, 0x5001e420, 0x24126ea1}) - -0.24262491967130789319) < bound);
 }
 
+TEST_CASE("noise: even and odd ticks share a block, a stream gives the same samples in any order", "[engine][noise]") {
+  const Noise noise(11, 3);
+  const NoiseChannel speed("speed");
+  NoiseStream stream(speed);
+  for (const std::int64_t tick : {0, 1, 2, 3, 5, 4, -1, -2, 7, 6, 1000001, 0}) {
+    const PhiloxBlock w = noise.words(speed, tick >= 0 ? tick / 2 : (tick - 1) / 2);
+    const auto both = normals_from_uniforms(uniform_from_words(w[0], w[1]), uniform_from_words(w[2], w[3]));
+    CHECK(noise.sample(speed, tick) == (tick % 2 == 0 ? both.even : both.odd));
+    CHECK(stream.at(noise, tick) == noise.sample(speed, tick));
+  }
+  // On one circle: even^2 + odd^2 = -2 log u1; 8 ulp for two squares, root, log and the trigonometric pair.
+  const PhiloxBlock w = noise.words(speed, 21);
+  const double radius2 = -2.0 * std::log(uniform_from_words(w[0], w[1]));
+  const double even = noise.sample(speed, 42), odd = noise.sample(speed, 43);
+  CHECK(std::fabs((even * even + odd * odd) / radius2 - 1.0) < 8 * 2.3e-16);
+}
+
 TEST_CASE("normal transform: finite at both ends of its uniforms", "[engine][noise]") {
   CHECK(uniform_from_words(0, 0) == 0x1p-53);
   CHECK(uniform_from_words(0xffffffff, 0xffffffff) == 1.0);
-  CHECK(normal_from_uniforms(1.0, 0x1p-53) == 0.0);
+  CHECK(normals_from_uniforms(1.0, 0x1p-53).even == 0.0);
   // sqrt(106 log 2) in 40 digits; 4 ulp of 8.57.
-  CHECK(std::fabs(normal_from_uniforms(0x1p-53, 1.0) - 8.5716743486529049775) < 4 * 1.8e-15);
+  CHECK(std::fabs(normals_from_uniforms(0x1p-53, 1.0).even - 8.5716743486529049775) < 4 * 1.8e-15);
 }
 
 TEST_CASE("normal transform: moments over 1e6 samples", "[engine][noise]") {

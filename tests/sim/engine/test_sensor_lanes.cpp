@@ -106,11 +106,11 @@ TEST_CASE("lanes: analog channel and normal transform give double's bits", "[eng
       u2.set(lane, noise.uniform(NoiseChannel("current_b"), tick));
       input.set(lane, 9.0 * sincos(0.01 * static_cast<double>(n) + static_cast<double>(lane)).cos);
     }
-    const Pack normal = normal_from_uniforms(u1, u2);
+    const Pack normal = normals_from_uniforms(u1, u2).even;
     filter_step(pack_state, input, pack);
     const AnalogReading<Pack> read = convert(pack_state, normal, pack);
     for (std::size_t lane = 0; lane < width; ++lane) {
-      const double normal_alone = normal_from_uniforms(u1.get(lane), u2.get(lane));
+      const double normal_alone = normals_from_uniforms(u1.get(lane), u2.get(lane)).even;
       filter_step(state[lane], input.get(lane), sensor[lane]);
       const AnalogReading<double> alone = convert(state[lane], normal_alone, sensor[lane]);
       same = same && same_bits(normal, lane, normal_alone) && same_bits(read.value, lane, alone.value) &&
