@@ -25,7 +25,7 @@ namespace slipbench {
 struct ReducedOrder {
   static constexpr std::string_view kind = "reduced_order";
   static constexpr std::array<Setting, 5> settings{{
-      {"speed_filter_Hz", "Hz", 0.1, 2000.0, 100.0,
+      {"speed_filter_Hz", "Hz", 0.1, 2000.0, 80.0,
        "Corner of the low-pass (two equal first-order stages) on the speed estimate."},
       {"frequency_filter_Hz", "Hz", 0.1, 2000.0, 10.0,
        "Corner of the low-pass (two equal stages) on the frequency that sets the gain."},

@@ -20,20 +20,17 @@ constexpr double Circuit<double>::* circuit_member(std::string_view quantity) {
   return nullptr;
 }
 
-// Everything of one step in one function: the calls of four stages would cost as much as their arithmetic. Stages at one
-// time share the supply's voltage.
-[[gnu::flatten]] void advance(const Drive<double>& drive, const DriveInput<double>& input, Stepper method,
+// Everything of one step in one function: the calls of four stages would cost as much as their arithmetic. The supply's
+// voltage is reckoned once a time, whether stages or the next step ask again.
+[[gnu::flatten]] void advance(const Drive<double>& drive, const DriveInput<double>& input, SourceAt& known, Stepper method,
                               DriveState<double>& x, double t, double h) {
-  Vec2<double> source = source_voltage(drive, input, t);
-  double source_time = t;
+  SourceAt source = known;
   const auto system = [&](const DriveState<double>& at, DriveState<double>& dx, double time) {
-    if (time != source_time) {
-      source = source_voltage(drive, input, time);
-      source_time = time;
-    }
-    dx = drive_derivative(drive, input, source, at, time);
+    if (time != source.time) source = {time, source_voltage(drive, input, time)};
+    dx = drive_derivative(drive, input, source.voltage, at, time);
   };
   odeint_step(method, system, x, t, h);
+  known = source;
 }
 
 }  // namespace
@@ -82,6 +79,7 @@ void Plant::set_state(const MachineFlux<double>& flux, double speed) {
 void Plant::apply(const Phases<double>& duty) {
   duty_ = duty;
   apply_duty(drive_, input_, duty, dc_link_now_);
+  source_ = {};
 }
 
 void Plant::disturb(std::int64_t tick) {
@@ -141,7 +139,7 @@ void Plant::step(std::int64_t n) {
   const double t = static_cast<double>(n) * step_s_;
   set_drift(std::max(t + 0.5 * step_s_, 0.0));
   set_lines(n);
-  advance(drive_, input_, method_, x_, t, step_s_);
+  advance(drive_, input_, source_, method_, x_, t, step_s_);
   if (drive_.speed_imposed) x_[4] = input_.imposed_speed.at(t + step_s_);
 }
 

@@ -5,6 +5,7 @@
 #pragma once
 
 #include <cstdint>
+#include <limits>
 #include <vector>
 
 #include "plant/drive.hpp"
@@ -15,6 +16,12 @@
 #include "sim/scenario/scenario.hpp"
 
 namespace slipbench {
+
+// The supply's voltage at the time it was last asked for; NaN equals no time.
+struct SourceAt {
+  double time = std::numeric_limits<double>::quiet_NaN();
+  Vec2<double> voltage{};
+};
 
 class Plant {
  public:
@@ -59,6 +66,7 @@ class Plant {
   Stepper method_ = Stepper::rk4;
   Drive<double> drive_;
   DriveInput<double> input_;
+  SourceAt source_;
   DriveState<double> x_{};
   std::vector<Profile> loads_;
   Profile imposed_;

@@ -4,7 +4,7 @@
 #include <fstream>
 #include <random>
 
-#include "texts.hpp"
+#include "tests/sim/scenario/texts.hpp"
 
 using namespace slipbench;
 using namespace scenario_tests;

@@ -4,7 +4,7 @@
 
 #include "sim/scenario/keys.hpp"
 #include "sim/scenario/nearest.hpp"
-#include "texts.hpp"
+#include "tests/sim/scenario/texts.hpp"
 
 using namespace slipbench;
 using namespace scenario_tests;

@@ -3,7 +3,7 @@
 #include <chrono>
 #include <filesystem>
 
-#include "texts.hpp"
+#include "tests/sim/scenario/texts.hpp"
 
 using namespace slipbench;
 using namespace scenario_tests;

@@ -1,7 +1,7 @@
 // What keys mean together: each rule broken once, refused at its key with its reason, and just kept once.
 #include <catch2/catch.hpp>
 
-#include "texts.hpp"
+#include "tests/sim/scenario/texts.hpp"
 
 using namespace slipbench;
 using namespace scenario_tests;

@@ -2,7 +2,7 @@
 #include <catch2/catch.hpp>
 
 #include "sim/scenario/keys.hpp"
-#include "texts.hpp"
+#include "tests/sim/scenario/texts.hpp"
 
 using namespace slipbench;
 using namespace scenario_tests;
