@@ -93,9 +93,11 @@ VoltageCommand<Real> control_current(CurrentState<Real>& s, const CurrentConstan
   const Vec2<Real> missing = turn_back(middle, applied) - wanted;
   const Vec2<Real> integral = s.integral + c.k_i_period * error + c.back * missing;
   s.integral = {clamp(integral.x, -limit, limit), clamp(integral.y, -limit, limit)};
-  // Beyond what rounding leaves, in single precision too.
-  const Real noticeable = square(Real(1e-4) * limit);
-  out.clipped = select(dot(missing, missing) > noticeable, Real(1.0), Real(0.0));
+  // Cut by the circle or by the rails, beyond what rounding leaves, in single precision too. (`missing` is more: with a tied
+  // leg that changes, the compensation is off by that leg's dead time.)
+  const Vec2<Real> by_circle = limited - wanted, by_rails = applied_voltage(out.duty, dc_link) - raised;
+  const Real cut = max(dot(by_circle, by_circle), dot(by_rails, by_rails));
+  out.clipped = select(cut > square(Real(1e-4) * limit), Real(1.0), Real(0.0));
   return out;
 }
 

@@ -27,13 +27,13 @@ namespace slipbench {
 
 // What an estimator may know before it starts: belief and nameplate, never the plant.
 struct EstimatorSetup {
-  Circuit<double> circuit;          // as believed
+  Circuit<double> circuit;  // as believed
   Nameplate nameplate;
-  double inertia_kgm2 = 0.0;        // as believed, all referred to the motor
+  double inertia_kgm2 = 0.0;  // as believed, all referred to the motor
   double viscous_friction_Nms = 0.0;
   double control_period_s = 100e-6;
-  int current_sensors = 3;          // 3 or 2
-  double current_noise_A = 0.0;     // rms a phase, ADC quantisation included
+  int current_sensors = 3;       // 3 or 2
+  double current_noise_A = 0.0;  // rms a phase, ADC quantisation included
   // State believed at tick 0: at rest unless the run starts otherwise. The flux lies on the alpha axis.
   double start_rotor_flux_Wb = 0.0;
   double start_speed_rad_s = 0.0;

@@ -27,10 +27,10 @@ enum class Supply { mains, inverter };
 
 template <class Real>
 struct Drive {
-  Supply supply = Supply::mains;   // structural
-  bool speed_imposed = false;      // structural: a dynamometer holds the speed, the shaft equation is off
-  bool inverter_ideal = false;     // structural: no dead time, no drop
-  bool opposed = true;             // structural: Coulomb friction or a constant torque acts somewhere
+  Supply supply = Supply::mains;  // structural
+  bool speed_imposed = false;     // structural: a dynamometer holds the speed, the shaft equation is off
+  bool inverter_ideal = false;    // structural: no dead time, no drop
+  bool opposed = true;            // structural: Coulomb friction or a constant torque acts somewhere
 
   Machine<Real> machine{};
   Shaft<Real> shaft{};
@@ -42,11 +42,11 @@ struct Drive {
 
 template <class Real>
 struct DriveInput {
-  Vec2<Real> ideal_voltage{};      // what the duties give without leg errors, V
-  LegPull<Real> leg_pull{};        // V
-  Real noise_torque{};             // N m, adds to the load
-  Line<Real> load_profile{};       // N m
-  Line<Real> imposed_speed{};      // rad/s
+  Vec2<Real> ideal_voltage{};  // what the duties give without leg errors, V
+  LegPull<Real> leg_pull{};    // V
+  Real noise_torque{};         // N m, adds to the load
+  Line<Real> load_profile{};   // N m
+  Line<Real> imposed_speed{};  // rad/s
   SLIPBENCH_FIELDS(ideal_voltage, leg_pull, noise_torque, load_profile, imposed_speed)
 };
 
@@ -97,7 +97,8 @@ DriveState<Real> drive_derivative(const Drive<Real>& d, const DriveInput<Real>& 
 }
 
 template <class Real>
-DriveState<Real> drive_derivative(const Drive<Real>& d, const DriveInput<Real>& in, const DriveState<Real>& x, double t) {
+DriveState<Real> drive_derivative(const Drive<Real>& d, const DriveInput<Real>& in, const DriveState<Real>& x,
+                                  double t) {
   return drive_derivative(d, in, source_voltage(d, in, t), x, t);
 }
 

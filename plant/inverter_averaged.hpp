@@ -14,9 +14,9 @@ namespace slipbench {
 
 template <class Real>
 struct LegError {
-  Real dead_share{};      // t_d f_sw, of the DC link
-  Real device_drop{};     // V
-  Real per_width{};       // 1 / i_0, 1/A
+  Real dead_share{};   // t_d f_sw, of the DC link
+  Real device_drop{};  // V
+  Real per_width{};    // 1 / i_0, 1/A
   SLIPBENCH_FIELDS(dead_share, device_drop, per_width)
 };
 
@@ -61,7 +61,8 @@ LegPull<Real> leg_pull(const Phases<Real>& size) {
 }
 template <class Real>
 Vec2<Real> leg_error_vector(const LegError<Real>& e, const LegPull<Real>& pull, const Vec2<Real>& current) {
-  const Real along = Real(-0.5) * e.per_width * current.x, across = Real(0.86602540378443864676) * e.per_width * current.y;
+  const Real along = Real(-0.5) * e.per_width * current.x,
+             across = Real(0.86602540378443864676) * e.per_width * current.y;
   const Real a = sat(e.per_width * current.x), b = sat(along + across), c = sat(along - across);
   return {(pull.b_x * b + pull.c_x * c) - pull.a_x * a, pull.c_y * c - pull.b_y * b};
 }

@@ -17,9 +17,9 @@ namespace slipbench {
 template <class Real>
 struct Machine {
   Real pole_pairs{};
-  Real R_s{}, R_r{};                 // ohm
+  Real R_s{}, R_r{};                  // ohm
   Real per_Ls{}, per_Lr{}, per_Lm{};  // L_r/D, L_s/D, L_m/D: stator, rotor and mutual inverse inductances, 1/H
-  Real torque_factor{};              // 3/2 p
+  Real torque_factor{};               // 3/2 p
   SLIPBENCH_FIELDS(pole_pairs, R_s, R_r, per_Ls, per_Lr, per_Lm, torque_factor)
 };
 
@@ -27,7 +27,8 @@ template <class Real>
 Machine<Real> make_machine(const Circuit<Real>& c) {
   const Real L_s = c.stator_inductance(), L_r = c.rotor_inductance(), L_m = c.magnetizing_inductance;
   const Real per_D = Real(1.0) / (L_s * L_r - L_m * L_m);
-  return {c.pole_pairs, c.stator_resistance, c.rotor_resistance, L_r * per_D, L_s * per_D, L_m * per_D, Real(1.5) * c.pole_pairs};
+  return {c.pole_pairs, c.stator_resistance, c.rotor_resistance,      L_r * per_D,
+          L_s * per_D,  L_m * per_D,         Real(1.5) * c.pole_pairs};
 }
 
 template <class Real>
@@ -53,8 +54,7 @@ Real torque(const Machine<Real>& m, const MachineFlux<Real>& psi, const Vec2<Rea
 template <class Real>
 MachineFlux<Real> flux_derivative(const Machine<Real>& m, const MachineFlux<Real>& psi, const Vec2<Real>& i_s,
                                   const Vec2<Real>& voltage, const Real& electrical_speed) {
-  return {voltage - m.R_s * i_s,
-          electrical_speed * quarter_turn(psi.rotor) - m.R_r * rotor_current(m, psi)};
+  return {voltage - m.R_s * i_s, electrical_speed * quarter_turn(psi.rotor) - m.R_r * rotor_current(m, psi)};
 }
 
 }  // namespace slipbench

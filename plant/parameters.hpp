@@ -9,9 +9,10 @@ namespace slipbench {
 template <class Real>
 struct Circuit {
   Real pole_pairs{};
-  Real stator_resistance{}, rotor_resistance{};                            // ohm
-  Real stator_leakage{}, rotor_leakage{}, magnetizing_inductance{};        // H
-  SLIPBENCH_FIELDS(pole_pairs, stator_resistance, rotor_resistance, stator_leakage, rotor_leakage, magnetizing_inductance)
+  Real stator_resistance{}, rotor_resistance{};                      // ohm
+  Real stator_leakage{}, rotor_leakage{}, magnetizing_inductance{};  // H
+  SLIPBENCH_FIELDS(pole_pairs, stator_resistance, rotor_resistance, stator_leakage, rotor_leakage,
+                   magnetizing_inductance)
 
   [[nodiscard]] Real stator_inductance() const { return stator_leakage + magnetizing_inductance; }  // L_s
   [[nodiscard]] Real rotor_inductance() const { return rotor_leakage + magnetizing_inductance; }    // L_r
@@ -19,7 +20,7 @@ struct Circuit {
 
 struct Nameplate {
   double power_W{}, line_voltage_V{}, current_A{}, frequency_Hz{}, speed_rpm{}, torque_Nm{};  // rms, line to line
-  double power_factor{}, efficiency{};  // 0: not given
+  double power_factor{}, efficiency{};                                                        // 0: not given
 
   [[nodiscard]] double speed_rad_s() const { return speed_rpm * (3.14159265358979323846 / 30.0); }
   [[nodiscard]] double angular_frequency() const { return frequency_Hz * (2.0 * 3.14159265358979323846); }
@@ -33,9 +34,9 @@ struct Nameplate {
 template <class Real>
 struct InverseGamma {
   Real pole_pairs{};
-  Real stator_resistance{}, rotor_resistance{};            // R_s, R_R, ohm
-  Real leakage{}, magnetizing_inductance{};                // L_sigma, L_M, H
-  Real flux_ratio{};                                       // g: psi_R = g psi_r of the T circuit
+  Real stator_resistance{}, rotor_resistance{};  // R_s, R_R, ohm
+  Real leakage{}, magnetizing_inductance{};      // L_sigma, L_M, H
+  Real flux_ratio{};                             // g: psi_R = g psi_r of the T circuit
   SLIPBENCH_FIELDS(pole_pairs, stator_resistance, rotor_resistance, leakage, magnetizing_inductance, flux_ratio)
 };
 

@@ -27,7 +27,8 @@ class Profile {
  public:
   Profile() = default;
   // Knots (time s, value), times not descending; values are multiplied by `factor`. Empty: `empty_value` throughout.
-  Profile(std::vector<std::array<double, 2>> knots, double factor, double empty_value = 0.0) : knots_(std::move(knots)) {
+  Profile(std::vector<std::array<double, 2>> knots, double factor, double empty_value = 0.0)
+      : knots_(std::move(knots)) {
     for (auto& knot : knots_) knot[1] *= factor;
     if (knots_.empty()) knots_.push_back({0.0, empty_value});
   }
@@ -42,14 +43,6 @@ class Profile {
     const auto& to = knots_[next_];
     return {from[1], (to[1] - from[1]) / (to[0] - from[0]), from[0]};
   }
-
-  // A constant profile at the value that holds just after time t.
-  [[nodiscard]] Profile frozen_at(double t) const {
-    Profile copy = *this;
-    return Profile({}, 1.0, copy.line_at(t).at(t));
-  }
-
-  [[nodiscard]] const std::vector<std::array<double, 2>>& knots() const { return knots_; }
 
  private:
   std::vector<std::array<double, 2>> knots_;

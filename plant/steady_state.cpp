@@ -30,8 +30,8 @@ SteadyState steady_at_slip(const Circuit<double>& c, double phase_peak_V, double
 double pull_out_slip(const Circuit<double>& c, double w) {
   // s_k = R_r / sqrt(R_th^2 + (X_th + X_r)^2) with the Thevenin impedance seen from the rotor branch.
   const double X_s = w * c.stator_inductance(), X_m = w * c.magnetizing_inductance;
-  const Vec2<double> source = quotient(product<double>({0.0, X_m}, {c.stator_resistance, X_s - X_m}),
-                                       Vec2<double>{c.stator_resistance, X_s});
+  const Vec2<double> source =
+      quotient(product<double>({0.0, X_m}, {c.stator_resistance, X_s - X_m}), Vec2<double>{c.stator_resistance, X_s});
   const double X = source.y + w * c.rotor_leakage;
   return c.rotor_resistance / sqrt(source.x * source.x + X * X);
 }

@@ -17,8 +17,8 @@
 namespace slipbench {
 
 struct SteadyState {
-  MachineFlux<double> flux;        // at the instant when the reference vector lies on the real axis
-  Vec2<double> current, voltage;   // stator
+  MachineFlux<double> flux;       // at the instant when the reference vector lies on the real axis
+  Vec2<double> current, voltage;  // stator
   double torque = 0.0, slip_frequency = 0.0, stator_frequency = 0.0, electrical_speed = 0.0;  // N m, electrical rad/s
 };
 

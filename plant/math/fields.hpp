@@ -25,10 +25,10 @@
   __VA_OPT__(SLIPBENCH_EACH_AGAIN SLIPBENCH_PARENS(__VA_ARGS__))
 #define SLIPBENCH_EACH_AGAIN() SLIPBENCH_EACH_ONE
 
-#define SLIPBENCH_FIELDS(...)                           \
-  template <class Self, class Visit>                    \
+#define SLIPBENCH_FIELDS(...)                                 \
+  template <class Self, class Visit>                          \
   static constexpr void each_field(Self& self, Visit visit) { \
-    SLIPBENCH_EACH(__VA_ARGS__)                         \
+    SLIPBENCH_EACH(__VA_ARGS__)                               \
   }
 
 namespace slipbench {
@@ -45,7 +45,9 @@ struct IsArray<std::array<T, N>> : std::true_type {};
 }  // namespace detail
 
 template <class T>
-concept FieldStruct = requires(T& t) { std::remove_const_t<T>::each_field(t, detail::Nothing{}); };
+concept FieldStruct = requires(T& t) {
+  std::remove_const_t<T>::each_field(t, detail::Nothing{});
+};
 
 // Calls f(number&) for every number in `item`, in written order.
 template <class Item, class F>

@@ -108,8 +108,8 @@ class Noise {
   // The block of ticks 2 block and 2 block + 1.
   [[nodiscard]] constexpr PhiloxBlock words(NoiseChannel channel, std::int64_t block) const {
     const auto count = static_cast<std::uint64_t>(block);
-    return philox4x32_10({static_cast<std::uint32_t>(count), static_cast<std::uint32_t>(count >> 32), channel.id(), run_},
-                         key_);
+    return philox4x32_10(
+        {static_cast<std::uint32_t>(count), static_cast<std::uint32_t>(count >> 32), channel.id(), run_}, key_);
   }
   [[nodiscard]] NormalPair<double> pair(NoiseChannel channel, std::int64_t block) const {
     const PhiloxBlock w = words(channel, block);

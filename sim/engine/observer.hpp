@@ -14,7 +14,7 @@ namespace slipbench {
 
 // One control tick: the truth and every estimate of it, all at that tick.
 struct TickView {
-  std::int64_t tick = 0;                        // control ticks from 0
+  std::int64_t tick = 0;  // control ticks from 0
   double time_s = 0.0;
   const PlantRow* plant = nullptr;              // value just after a jump
   std::span<const Estimate<double>> estimates;  // in file order
@@ -26,13 +26,13 @@ struct RowView {
   std::int64_t row = 0;
   const PlantRow* plant = nullptr;
   std::span<const double> measured;
-  std::span<const double> estimates;            // five a piece, in file order
+  std::span<const double> estimates;  // five a piece, in file order
 };
 
 struct RunInfo {
   std::string title;
   double trace_period_s = 0.0, control_period_s = 0.0, duration_s = 0.0;
-  std::vector<Column> plant, measured;          // estimator columns follow from the names
+  std::vector<Column> plant, measured;  // estimator columns follow from the names
   std::vector<std::string> estimator_names, estimator_kinds;
 };
 

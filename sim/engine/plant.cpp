@@ -11,7 +11,7 @@ constexpr double nan = std::numeric_limits<double>::quiet_NaN();
 // A healthy drive stays far inside these multiples of its ratings; beyond them the run has diverged.
 constexpr double flux_ceiling = 100.0, speed_ceiling = 100.0;
 
-constexpr double Circuit<double>::* circuit_member(std::string_view quantity) {
+constexpr double Circuit<double>::*circuit_member(std::string_view quantity) {
   if (quantity == "stator_resistance") return &Circuit<double>::stator_resistance;
   if (quantity == "rotor_resistance") return &Circuit<double>::rotor_resistance;
   if (quantity == "magnetizing_inductance") return &Circuit<double>::magnetizing_inductance;
@@ -22,8 +22,8 @@ constexpr double Circuit<double>::* circuit_member(std::string_view quantity) {
 
 // Everything of one step in one function: the calls of four stages would cost as much as their arithmetic. The supply's
 // voltage is reckoned once a time, whether stages or the next step ask again.
-[[gnu::flatten]] void advance(const Drive<double>& drive, const DriveInput<double>& input, SourceAt& known, Stepper method,
-                              DriveState<double>& x, double t, double h) {
+[[gnu::flatten]] void advance(const Drive<double>& drive, const DriveInput<double>& input, SourceAt& known,
+                              Stepper method, DriveState<double>& x, double t, double h) {
   SourceAt source = known;
   const auto system = [&](const DriveState<double>& at, DriveState<double>& dx, double time) {
     if (time != source.time) source = {time, source_voltage(drive, input, time)};
@@ -36,8 +36,13 @@ constexpr double Circuit<double>::* circuit_member(std::string_view quantity) {
 }  // namespace
 
 Plant::Plant(const Scenario& s, std::uint32_t noise_run)
-    : circuit_(s.machine.circuit()), inertia_(s.shaft.inertia_kgm2), dc_link_(s.supply.dc_link_V),
-      step_s_(s.run.plant_step_s), circuit_now_(circuit_), process_noise_(s.process_noise), noise_(s.seed, noise_run) {
+    : circuit_(s.machine.circuit()),
+      inertia_(s.shaft.inertia_kgm2),
+      dc_link_(s.supply.dc_link_V),
+      step_s_(s.run.plant_step_s),
+      circuit_now_(circuit_),
+      process_noise_(s.process_noise),
+      noise_(s.seed, noise_run) {
   const Nameplate plate = s.machine.nameplate();
   flux_limit_ = flux_ceiling * plate.phase_peak_V() / plate.angular_frequency();
   speed_limit_ = speed_ceiling * plate.speed_rad_s();
@@ -59,21 +64,28 @@ Plant::Plant(const Scenario& s, std::uint32_t noise_run)
     drive_.mains = make_mains(s.supply.line_voltage_V, s.supply.frequency_Hz, s.supply.phase_deg);
   } else {
     drive_.inverter_ideal = s.supply.dead_time_s == 0.0 && s.supply.device_drop_V == 0.0;
-    drive_.leg = leg_error(s.supply.dead_time_s, s.supply.switching_frequency_Hz, s.supply.device_drop_V, s.supply.zero_current_width_A);
+    drive_.leg = leg_error(s.supply.dead_time_s, s.supply.switching_frequency_Hz, s.supply.device_drop_V,
+                           s.supply.zero_current_width_A);
   }
   drive_.opposed = drive_.load.opposing != 0.0 || drive_.shaft.coulomb != 0.0;
   for (const auto& d : s.drifts) {
-    drifts_.push_back({circuit_member(d.quantity), d.quantity == "inertia", d.quantity == "dc_link", Profile(d.factor, 1.0, 1.0), 1.0});
+    drifts_.push_back({circuit_member(d.quantity), d.quantity == "inertia", d.quantity == "dc_link",
+                       Profile(d.factor, 1.0, 1.0), 1.0});
   }
   walk_per_tick_ = process_noise_.load_torque_Nm * sqrt(s.run.control_period_s);
   dc_link_now_ = dc_link_;
   apply(duty_);
+  set_drift(0.0, 0.5 * step_s_);
   set_state({}, s.run.initial_speed_rpm * rad_s_per_rpm);
 }
 
 void Plant::set_state(const MachineFlux<double>& flux, double speed) {
-  x_ = {flux.stator.x, flux.stator.y, flux.rotor.x, flux.rotor.y, speed, x_[5]};
-  if (drive_.speed_imposed) x_[4] = imposed_.line_at(0.0).at(0.0);
+  x_ = {flux.stator.x, flux.stator.y, flux.rotor.x, flux.rotor.y, drive_.speed_imposed ? imposed_at(0) : speed, x_[5]};
+}
+
+double Plant::imposed_at(std::int64_t n) {
+  const double t = static_cast<double>(std::max<std::int64_t>(n, 0)) * step_s_;
+  return imposed_.line_at(t + 0.5 * step_s_).at(t);
 }
 
 void Plant::apply(const Phases<double>& duty) {
@@ -84,23 +96,24 @@ void Plant::apply(const Phases<double>& duty) {
 
 void Plant::disturb(std::int64_t tick) {
   if (tick <= 0) return;
-  constexpr NoiseChannel load("process_load_torque"), current_alpha("process_current_alpha"), current_beta("process_current_beta"),
-      flux_alpha("process_flux_alpha"), flux_beta("process_flux_beta");
+  constexpr NoiseChannel load("process_load_torque"), current_alpha("process_current_alpha"),
+      current_beta("process_current_beta"), flux_alpha("process_flux_alpha"), flux_beta("process_flux_beta");
   if (walk_per_tick_ > 0.0) input_.noise_torque += walk_per_tick_ * noise_.sample(load, tick);
   const double a = process_noise_.current_A, f = process_noise_.flux_Wb;
   if (a == 0.0 && f == 0.0) return;
   MachineFlux<double> psi = flux_of(x_);
   Vec2<double> i_s = stator_current(drive_.machine, psi);
   if (a > 0.0) i_s = i_s + a * Vec2<double>{noise_.sample(current_alpha, tick), noise_.sample(current_beta, tick)};
-  if (f > 0.0) psi.rotor = psi.rotor + f * Vec2<double>{noise_.sample(flux_alpha, tick), noise_.sample(flux_beta, tick)};
+  if (f > 0.0)
+    psi.rotor = psi.rotor + f * Vec2<double>{noise_.sample(flux_alpha, tick), noise_.sample(flux_beta, tick)};
   psi.stator = (1.0 / drive_.machine.per_Ls) * (i_s + drive_.machine.per_Lm * psi.rotor);
-  set_state(psi, x_[4]);
+  x_ = {psi.stator.x, psi.stator.y, psi.rotor.x, psi.rotor.y, x_[4], x_[5]};
 }
 
-void Plant::set_drift(double t) {
+void Plant::set_drift(double t, double on_line_at) {
   bool moved = false;
   for (auto& drift : drifts_) {
-    const double factor = drift.factor.line_at(t).at(t);
+    const double factor = drift.factor.line_at(on_line_at).at(t);
     moved = moved || factor != drift.now;
     drift.now = factor;
   }
@@ -122,7 +135,9 @@ void Plant::set_drift(double t) {
 
 void Plant::set_lines(std::int64_t n) {
   const double middle = (static_cast<double>(n) + 0.5) * step_s_;
-  const auto line = [&](Profile& p) { return n < 0 ? Line<double>{p.line_at(0.0).at(0.0), 0.0, 0.0} : p.line_at(middle); };
+  const auto line = [&](Profile& p) {
+    return n < 0 ? Line<double>{p.line_at(0.0).at(0.0), 0.0, 0.0} : p.line_at(middle);
+  };
   if (!loads_.empty()) {
     Line<double> sum = line(loads_.front());
     for (std::size_t i = 1; i < loads_.size(); ++i) {
@@ -137,10 +152,14 @@ void Plant::set_lines(std::int64_t n) {
 
 void Plant::step(std::int64_t n) {
   const double t = static_cast<double>(n) * step_s_;
-  set_drift(std::max(t + 0.5 * step_s_, 0.0));
+  const double middle = std::max(t + 0.5 * step_s_, 0.0);
+  set_drift(middle, middle);
   set_lines(n);
   advance(drive_, input_, source_, method_, x_, t, step_s_);
-  if (drive_.speed_imposed) x_[4] = input_.imposed_speed.at(t + step_s_);
+  // What sensors and rows see at the step's end is the value just after a jump there.
+  const double end = static_cast<double>(std::max<std::int64_t>(n + 1, 0)) * step_s_;
+  set_drift(end, end + 0.5 * step_s_);
+  if (drive_.speed_imposed) x_[4] = imposed_at(n + 1);
 }
 
 Vec2<double> Plant::voltage_at(std::int64_t n) const {
@@ -157,7 +176,6 @@ double Plant::load_at_start(double speed) const {
 
 PlantRow Plant::row(std::int64_t n) {
   const double t = static_cast<double>(n) * step_s_;
-  set_drift(std::max(t, 0.0));
   set_lines(n);
   const MachineFlux<double> psi = flux_of(x_);
   const Machine<double>& m = drive_.machine;
@@ -167,7 +185,7 @@ PlantRow Plant::row(std::int64_t n) {
   const Vec2<double> along = flux > 0.0 ? (1.0 / flux) * psi.rotor : Vec2<double>{1.0, 0.0};
   const Vec2<double> i_dq = seen_from(along, i_s);
   const double slip = flux > 0.0 ? -m.R_r * cross(psi.rotor, i_r) / (flux * flux) : 0.0;
-  const double speed = drive_.speed_imposed ? input_.imposed_speed.at(t) : x_[4];
+  const double speed = x_[4];
   const Phases<double> i = phases_of(i_s);
   PlantRow row;
   row[P::time] = t;

@@ -44,6 +44,7 @@ class Plant {
   [[nodiscard]] double speed() const { return x_[4]; }
   [[nodiscard]] double angle() const { return x_[5]; }
   [[nodiscard]] double dc_link() const { return dc_link_now_; }
+  [[nodiscard]] const Circuit<double>& circuit() const { return circuit_now_; }  // with its drift
   [[nodiscard]] Phases<double> phase_currents() const { return phases_of(stator_current(drive_.machine, flux_of(x_))); }
   [[nodiscard]] Vec2<double> voltage_at(std::int64_t n) const;
   [[nodiscard]] double load_at_start(double speed) const;  // with friction, at t = 0, N m
@@ -57,7 +58,11 @@ class Plant {
   };
 
   void set_lines(std::int64_t n);
-  void set_drift(double t);
+  // The factors at time t, on the line that holds at `on_line_at`: half a step later for the value just after a jump, whatever
+  // the rounding of t against the knot.
+  void set_drift(double t, double on_line_at);
+  // Imposed speed at n h, just after a jump; the first value before n = 0.
+  double imposed_at(std::int64_t n);
 
   Circuit<double> circuit_;
   double inertia_ = 0.0, dc_link_ = 0.0, dc_link_now_ = 0.0, step_s_ = 0.0;

@@ -15,7 +15,9 @@ class BuiltInEstimator final : public EstimatorPort {
   BuiltInEstimator(const EstimatorSetup& setup, const Settings& settings)
       : constants_(Method::prepare(setup, settings)), state_(Method::begin(setup, constants_)) {}
   // Whole in one function: the tick is made of many small ones.
-  [[gnu::flatten]] Estimate<double> step(const Sample<double>& sample) override { return Method::template step<double>(state_, sample, constants_); }
+  [[gnu::flatten]] Estimate<double> step(const Sample<double>& sample) override {
+    return Method::template step<double>(state_, sample, constants_);
+  }
 
  private:
   typename Method::template Constants<double> constants_;
@@ -27,7 +29,9 @@ class BuiltInController final : public ControllerPort {
  public:
   BuiltInController(const ControllerSetup& setup, const Settings& settings)
       : constants_(Method::prepare(setup, settings)), state_(Method::begin(setup, constants_)) {}
-  [[gnu::flatten]] Command<double> step(const Measurement<double>& m) override { return Method::template step<double>(state_, m, constants_); }
+  [[gnu::flatten]] Command<double> step(const Measurement<double>& m) override {
+    return Method::template step<double>(state_, m, constants_);
+  }
 
  private:
   typename Method::template Constants<double> constants_;
@@ -36,7 +40,8 @@ class BuiltInController final : public ControllerPort {
 
 }  // namespace
 
-std::unique_ptr<EstimatorPort> make_estimator(const std::string& kind, const EstimatorSetup& setup, const Settings& settings) {
+std::unique_ptr<EstimatorPort> make_estimator(const std::string& kind, const EstimatorSetup& setup,
+                                              const Settings& settings) {
   std::unique_ptr<EstimatorPort> port;
   each_estimator_method([&]<class Method>() {
     if (kind == Method::kind) port = std::make_unique<BuiltInEstimator<Method>>(setup, settings);
@@ -45,7 +50,8 @@ std::unique_ptr<EstimatorPort> make_estimator(const std::string& kind, const Est
   return port;
 }
 
-std::unique_ptr<ControllerPort> make_controller(const std::string& kind, const ControllerSetup& setup, const Settings& settings) {
+std::unique_ptr<ControllerPort> make_controller(const std::string& kind, const ControllerSetup& setup,
+                                                const Settings& settings) {
   std::unique_ptr<ControllerPort> port;
   each_controller_method([&]<class Method>() {
     if (kind == Method::kind) port = std::make_unique<BuiltInController<Method>>(setup, settings);

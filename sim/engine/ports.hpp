@@ -23,7 +23,9 @@ class ControllerPort {
 };
 
 // `kind` is one of those built in (the reader has checked); prepares constants and the state at tick 0.
-std::unique_ptr<EstimatorPort> make_estimator(const std::string& kind, const EstimatorSetup& setup, const Settings& settings);
-std::unique_ptr<ControllerPort> make_controller(const std::string& kind, const ControllerSetup& setup, const Settings& settings);
+std::unique_ptr<EstimatorPort> make_estimator(const std::string& kind, const EstimatorSetup& setup,
+                                              const Settings& settings);
+std::unique_ptr<ControllerPort> make_controller(const std::string& kind, const ControllerSetup& setup,
+                                                const Settings& settings);
 
 }  // namespace slipbench

@@ -22,9 +22,11 @@ std::int64_t whole(double quotient) { return std::llround(quotient); }
 double balancing_speed(const Plant& plant, double torque, double limit, const Scenario& s) {
   double low = -limit, high = limit;
   if (plant.load_at_start(low) > torque || plant.load_at_start(high) < torque) {
-    throw InputError(s.path, "run.start",
-                     "start = \"steady\": no speed within twice the rated one at which the load takes the first torque reference; "
-                     "impose a speed or start from \"magnetised\"", "steady");
+    throw InputError(
+        s.path, "run.start",
+        "start = \"steady\": no speed within twice the rated one at which the load takes the first torque reference; "
+        "impose a speed or start from \"magnetised\"",
+        "steady");
   }
   for (int i = 0; i < 200; ++i) {
     const double middle = 0.5 * (low + high);
@@ -36,20 +38,25 @@ double balancing_speed(const Plant& plant, double torque, double limit, const Sc
 }  // namespace
 
 Run::Run(const Scenario& s, const RunOptions& options, std::int64_t first_tick)
-    : scenario_(s), options_(options), first_tick_(first_tick),
+    : scenario_(s),
+      options_(options),
+      first_tick_(first_tick),
       steps_per_control_(whole(s.run.control_period_s / s.run.plant_step_s)),
       steps_per_trace_(whole(s.run.trace_period_s / s.run.plant_step_s)),
       steps_(whole(s.run.duration_s / s.run.trace_period_s) * steps_per_trace_),
-      plant_(s, options.noise_run), sensors_(s, options.noise_run) {
+      plant_(s, options.noise_run),
+      sensors_(s, options.noise_run) {
   speed_control_ = !s.reference.speed_rpm.empty();
   speed_reference_ = Profile(s.reference.speed_rpm, rad_s_per_rpm);
   torque_reference_ = Profile(s.reference.torque_Nm, 1.0);
   estimates_.resize(s.estimators.size());
   estimate_row_.resize(s.estimators.size() * estimator_column_count);
   step_seconds_.resize(s.estimators.size());
-  const double dead_time = s.supply.dead_time_s * s.belief.dead_time, drop = s.supply.device_drop_V * s.belief.device_drop;
+  const double dead_time = s.supply.dead_time_s * s.belief.dead_time,
+               drop = s.supply.device_drop_V * s.belief.device_drop;
   compensated_ = !s.on_mains() && s.controller.dead_time_compensation && (dead_time > 0.0 || drop > 0.0);
-  if (!s.on_mains()) believed_leg_ = leg_error(dead_time, s.supply.switching_frequency_Hz, drop, s.supply.zero_current_width_A);
+  if (!s.on_mains())
+    believed_leg_ = leg_error(dead_time, s.supply.switching_frequency_Hz, drop, s.supply.zero_current_width_A);
   modulation_ = s.supply.modulation == "sine"            ? Modulation::sine
                 : s.supply.modulation == "discontinuous" ? Modulation::discontinuous
                                                          : Modulation::space_vector;
@@ -67,7 +74,7 @@ std::int64_t Run::closing_estimator(const std::string& name) const {
 
 void Run::place_at_start() {
   const Scenario& s = scenario_;
-  const Circuit<double> truth = s.machine.circuit();
+  const Circuit<double> truth = plant_.circuit();
   const double flux_reference = s.reference.rotor_flux_Wb;
   EstimatorSetup e;
   e.circuit = s.believed_circuit();
@@ -85,7 +92,8 @@ void Run::place_at_start() {
   c.delay_periods = static_cast<int>(s.controller.delay_periods);
   c.modulation = modulation_;
   c.inverter = {s.supply.dc_link_V * s.belief.dc_link, s.supply.dead_time_s * s.belief.dead_time,
-                s.supply.device_drop_V * s.belief.device_drop, s.supply.switching_frequency_Hz, s.supply.zero_current_width_A};
+                s.supply.device_drop_V * s.belief.device_drop, s.supply.switching_frequency_Hz,
+                s.supply.zero_current_width_A};
   c.compensate_dead_time = compensated_;
   c.direct_orientation = s.controller.orientation == "direct";
   c.speed_control = speed_control_;
@@ -96,26 +104,26 @@ void Run::place_at_start() {
   if (s.run.start == "magnetised" || s.run.start == "steady") {
     SteadyState now;
     if (s.on_mains()) {
-      const double w = 6.283185307179586477 * s.supply.frequency_Hz, peak = s.supply.line_voltage_V * 0.81649658092772603273;
+      const double w = 6.283185307179586477 * s.supply.frequency_Hz,
+                   peak = s.supply.line_voltage_V * 0.81649658092772603273;
       const auto slip = stable_slip(truth, peak, w, [&](double speed) { return plant_.load_at_start(speed); });
       if (!slip) {
-        throw InputError(s.path, "run.start", "start = \"steady\": the load is beyond the machine's pull-out torque on this supply; "
-                         "lower the load or raise supply.line_voltage_V", "steady");
+        throw InputError(s.path, "run.start",
+                         "start = \"steady\": the load is beyond the machine's pull-out torque on this supply; "
+                         "lower the load or raise supply.line_voltage_V",
+                         "steady");
       }
       now = steady_at_slip(truth, peak, w, *slip);
     } else {
-      double speed = s.run.start == "steady" ? speed_reference_.line_at(0.0).at(0.0) : 0.0;
-      double torque = 0.0;
-      if (s.run.start == "steady") {
-        plant_.set_state({}, speed);  // an imposed speed wins over the reference
-        speed = plant_.speed();
-        if (!speed_control_) {
-          torque = torque_reference_.line_at(0.0).at(0.0);
-          const bool held = std::any_of(s.loads.begin(), s.loads.end(), [](const auto& l) { return l.kind == "imposed_speed"; });
-          if (!held) speed = balancing_speed(plant_, torque, 2.0 * e.nameplate.speed_rad_s(), s);
-        } else {
-          torque = plant_.load_at_start(speed);
-        }
+      const bool steady = s.run.start == "steady";
+      plant_.set_state({}, steady ? speed_reference_.line_at(0.0).at(0.0) : 0.0);
+      double speed = plant_.speed(), torque = 0.0;  // an imposed speed wins over the reference
+      if (steady && speed_control_) torque = plant_.load_at_start(speed);
+      if (steady && !speed_control_) {
+        torque = torque_reference_.line_at(0.0).at(0.0);
+        const bool held =
+            std::any_of(s.loads.begin(), s.loads.end(), [](const auto& l) { return l.kind == "imposed_speed"; });
+        if (!held) speed = balancing_speed(plant_, torque, 2.0 * e.nameplate.speed_rad_s(), s);
       }
       const double electrical = fabs(truth.pole_pairs * speed);
       const double weakened = flux_reference * min(1.0, e.nameplate.angular_frequency() / max(electrical, 1e-9));
@@ -131,14 +139,16 @@ void Run::place_at_start() {
     plant_.set_state(flux, now.electrical_speed / truth.pole_pairs);
     e.start_rotor_flux_Wb = c.start_rotor_flux_Wb = magnitude(now.flux.rotor);
     e.start_speed_rad_s = plant_.speed();
-    if (!s.on_mains()) duty_ = modulate(modulation_, now.voltage, s.supply.dc_link_V);
+    if (!s.on_mains()) duty_ = modulate(modulation_, now.voltage, plant_.dc_link());
   }
-  for (const auto& estimator : s.estimators) estimators_.push_back(make_estimator(estimator.kind, e, estimator.settings));
+  for (const auto& estimator : s.estimators)
+    estimators_.push_back(make_estimator(estimator.kind, e, estimator.settings));
   if (!s.on_mains()) {
     try {
       controller_ = make_controller(s.controller.kind, c, s.controller.settings);
     } catch (const std::invalid_argument& unfit) {
-      throw InputError(s.path, "controller", std::string("the controller cannot be set up: ") + unfit.what(), "controller");
+      throw InputError(s.path, "controller", std::string("the controller cannot be set up: ") + unfit.what(),
+                       "controller");
     }
     pending_.assign(static_cast<std::size_t>(s.controller.delay_periods), duty_);
   }
@@ -148,8 +158,14 @@ void Run::place_at_start() {
 }
 
 RunInfo Run::info() const {
-  RunInfo info{scenario_.title, scenario_.run.trace_period_s, scenario_.run.control_period_s, scenario_.run.duration_s,
-               plant_columns(), sensors_.columns(), {}, {}};
+  RunInfo info{scenario_.title,
+               scenario_.run.trace_period_s,
+               scenario_.run.control_period_s,
+               scenario_.run.duration_s,
+               plant_columns(),
+               sensors_.columns(),
+               {},
+               {}};
   for (const auto& e : scenario_.estimators) {
     info.estimator_names.push_back(e.name);
     info.estimator_kinds.push_back(e.kind);
@@ -196,7 +212,8 @@ void Run::control_tick(std::int64_t k) {
   run_estimators(k);
   if (!controller_) return;
   const double t = static_cast<double>(std::max<std::int64_t>(k, 0)) * scenario_.run.control_period_s;
-  const auto now = [t](Profile& p) { return p.line_at(t).at(t); };
+  // Just after a jump, whatever the rounding of t against the knot.
+  const auto now = [&](Profile& p) { return p.line_at(t + 0.5 * scenario_.run.plant_step_s).at(t); };
   speed_reference_now_ = now(speed_reference_);
   torque_reference_now_ = now(torque_reference_);
   Measurement<double> m;
@@ -241,10 +258,12 @@ bool Run::find_divergence(std::int64_t k) {
     if (i < 0) continue;
     const Estimate<double>& e = estimates_[static_cast<std::size_t>(i)];
     if (!is_finite(e.speed + e.rotor_flux + e.rotor_flux_angle)) {
-      return found("estimate of '" + scenario_.estimators[static_cast<std::size_t>(i)].name + "', which closes the loop");
+      return found("estimate of '" + scenario_.estimators[static_cast<std::size_t>(i)].name +
+                   "', which closes the loop");
     }
   }
-  if (!is_finite(command_.duty.a + command_.duty.b + command_.duty.c)) return found("voltage command of the controller");
+  if (!is_finite(command_.duty.a + command_.duty.b + command_.duty.c))
+    return found("voltage command of the controller");
   return false;
 }
 
@@ -287,7 +306,8 @@ double Run::run_in() {
 void Run::go(std::span<RunObserver* const> observers) {
   const std::int64_t ticks = steps_ / steps_per_control_;
   PlantRow row{};
-  std::int64_t k = -1, trace_rows = -1, to_control = 0, to_trace = 0;  // counted, since dividing costs as much as a stage
+  std::int64_t k = -1, trace_rows = -1, to_control = 0,
+               to_trace = 0;  // counted, since dividing costs as much as a stage
   std::int64_t n = 0;
   for (;; ++n, --to_control, --to_trace) {
     const bool control = to_control == 0, trace = to_trace == 0;
@@ -313,9 +333,10 @@ void Run::go(std::span<RunObserver* const> observers) {
     if (trace && !observers.empty()) {
       for (std::size_t i = 0; i < estimates_.size(); ++i) {
         const Estimate<double>& e = estimates_[i];
-        const std::array<double, estimator_column_count> columns{e.speed / rad_s_per_rpm, e.rotor_flux, e.rotor_flux_angle,
-                                                                 e.torque, e.trust};
-        std::copy(columns.begin(), columns.end(), estimate_row_.begin() + static_cast<std::ptrdiff_t>(i * columns.size()));
+        const std::array<double, estimator_column_count> columns{e.speed / rad_s_per_rpm, e.rotor_flux,
+                                                                 e.rotor_flux_angle, e.torque, e.trust};
+        std::copy(columns.begin(), columns.end(),
+                  estimate_row_.begin() + static_cast<std::ptrdiff_t>(i * columns.size()));
       }
       const RowView view{trace_rows, &row, sensors_.values(), estimate_row_};
       for (RunObserver* o : observers) o->trace_row(view);

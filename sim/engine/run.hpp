@@ -56,9 +56,9 @@ class Run {
   Profile speed_reference_, torque_reference_;
   bool speed_control_ = true;
 
-  std::vector<Phases<double>> pending_;            // commands not yet acting, oldest first, as a ring
+  std::vector<Phases<double>> pending_;  // commands not yet acting, oldest first, as a ring
   std::size_t next_pending_ = 0;
-  Phases<double> duty_;                            // acting over [k-1, k) when tick k begins
+  Phases<double> duty_;  // acting over [k-1, k) when tick k begins
   Reading reading_;
   Command<double> command_;
   double speed_reference_now_ = 0.0, torque_reference_now_ = 0.0;

@@ -22,27 +22,38 @@ AnalogChannel channel_of(const AnalogSensorSettings& s, std::size_t phase) {
 
 }  // namespace
 
-Sensors::Three Sensors::channels(const AnalogSensorSettings& s, double step_s, const std::array<std::string_view, 3>& names) {
+Sensors::Three Sensors::channels(const AnalogSensorSettings& s, double step_s,
+                                 const std::array<std::string_view, 3>& names) {
   Three three;
   for (std::size_t phase = 0; phase < 3; ++phase) {
-    three.push_back({prepare_analog_sensor(channel_of(s, phase), step_s), {}, NoiseStream(NoiseChannel(names[phase])), s.bandwidth_Hz > 0.0});
+    three.push_back({prepare_analog_sensor(channel_of(s, phase), step_s),
+                     {},
+                     NoiseStream(NoiseChannel(names[phase])),
+                     s.bandwidth_Hz > 0.0});
   }
   return three;
 }
 
 Sensors::Sensors(const Scenario& s, std::uint32_t noise_run)
-    : mains_(s.on_mains()), two_currents_(s.sensors.current_phases == 2), has_voltage_(s.sensors.voltage.present && mains_),
-      has_dc_link_(s.sensors.dc_link.present && !mains_), has_speed_(s.sensors.speed.kind != "none"),
+    : mains_(s.on_mains()),
+      two_currents_(s.sensors.current_phases == 2),
+      has_voltage_(s.sensors.voltage.present && mains_),
+      has_dc_link_(s.sensors.dc_link.present && !mains_),
+      has_speed_(s.sensors.speed.kind != "none"),
       steps_per_tick_(std::llround(s.run.control_period_s / s.run.plant_step_s)),
       believed_dc_link_(mains_ ? nan : s.supply.dc_link_V * s.belief.dc_link),
       current_noise_(total_noise_rms(channel_of(s.sensors.current, 0))),
       current_(channels(s.sensors.current, s.run.plant_step_s, {"current_a", "current_b", "current_c"})),
       voltage_(channels(s.sensors.voltage, s.run.plant_step_s, {"voltage_a", "voltage_b", "voltage_c"})),
-      noise_(s.seed, noise_run), speed_noise_(NoiseChannel("speed")) {
-  dc_link_.push_back({prepare_analog_sensor(channel_of(s.sensors.dc_link, 0), s.run.plant_step_s), {}, NoiseStream(NoiseChannel("dc_link")),
+      noise_(s.seed, noise_run),
+      speed_noise_(NoiseChannel("speed")) {
+  dc_link_.push_back({prepare_analog_sensor(channel_of(s.sensors.dc_link, 0), s.run.plant_step_s),
+                      {},
+                      NoiseStream(NoiseChannel("dc_link")),
                       s.sensors.dc_link.bandwidth_Hz > 0.0});
   const SpeedSensorSettings& v = s.sensors.speed;
-  const SpeedSensorData data{speed_kind(v.kind), v.noise_rpm, v.bandwidth_Hz, {v.lines_per_rev, v.clock_Hz, v.timeout_s}, v.window_s};
+  const SpeedSensorData data{
+      speed_kind(v.kind), v.noise_rpm, v.bandwidth_Hz, {v.lines_per_rev, v.clock_Hz, v.timeout_s}, v.window_s};
   timing_ = speed_sensor_timing(data, steps_per_tick_, s.run.control_period_s);
   speed_ = prepare_speed_sensor(data, s.run.plant_step_s);
   values_.assign(columns().size(), nan);
@@ -51,14 +62,16 @@ Sensors::Sensors(const Scenario& s, std::uint32_t noise_run)
 }
 
 std::vector<Column> Sensors::columns() const {
-  std::vector<Column> all = {{"measured.i_a_A", "A", "measured phase current"}, {"measured.i_b_A", "A", "measured phase current"}};
+  std::vector<Column> all = {{"measured.i_a_A", "A", "measured phase current"},
+                             {"measured.i_b_A", "A", "measured phase current"}};
   if (!two_currents_) all.push_back({"measured.i_c_A", "A", "measured phase current"});
   if (has_voltage_) {
     for (const char* name : {"measured.u_a_V", "measured.u_b_V", "measured.u_c_V"}) {
       all.push_back({name, "V", "measured phase voltage"});
     }
   }
-  if (!mains_) all.push_back({"measured.dc_link_V", "V", "measured DC link voltage, the believed one without that sensor"});
+  if (!mains_)
+    all.push_back({"measured.dc_link_V", "V", "measured DC link voltage, the believed one without that sensor"});
   if (has_speed_) all.push_back({"measured.speed_rpm", "rpm", "measured speed"});
   return all;
 }
@@ -83,7 +96,8 @@ double Sensors::convert_one(Channel& channel, double input, std::int64_t tick) {
 }
 
 Phases<double> Sensors::convert_three(Three& channels, const Phases<double>& x, std::int64_t tick) {
-  return {convert_one(channels[0], x.a, tick), convert_one(channels[1], x.b, tick), convert_one(channels[2], x.c, tick)};
+  return {convert_one(channels[0], x.a, tick), convert_one(channels[1], x.b, tick),
+          convert_one(channels[2], x.c, tick)};
 }
 
 void Sensors::begin(const Plant& plant, std::int64_t step) {

@@ -14,10 +14,10 @@
 namespace slipbench {
 
 struct Reading {
-  Vec2<double> current;   // A
-  Vec2<double> voltage;   // V, on mains; 0 with an inverter
-  double dc_link = 0.0;   // V; NaN on mains
-  double speed = 0.0;     // mechanical rad/s; NaN without a sensor
+  Vec2<double> current;  // A
+  Vec2<double> voltage;  // V, on mains; 0 with an inverter
+  double dc_link = 0.0;  // V; NaN on mains
+  double speed = 0.0;    // mechanical rad/s; NaN without a sensor
 };
 
 class Sensors {

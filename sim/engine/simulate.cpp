@@ -2,6 +2,7 @@
 
 #include <array>
 #include <chrono>
+#include <limits>
 
 #include "sim/engine/run.hpp"
 #include "sim/scenario/input_error.hpp"
@@ -17,6 +18,16 @@ struct RunIn {
 };
 constexpr std::array<RunIn, 3> run_ins{{{1.0, 1e-7}, {4.0, 1e-6}, {16.0, 5e-4}}};
 
+// Same bits on every machine hold only where small numbers are kept; a library can switch that off for a whole thread.
+void demand_denormals() {
+  const volatile double least = std::numeric_limits<double>::min();
+  const volatile double half = 0.5 * least;
+  if (half + half != least) {
+    throw OutsideError(
+        "the processor is set to flush denormal numbers to zero: results would differ from machine to machine");
+  }
+}
+
 std::unique_ptr<Run> started(const Scenario& scenario, const RunOptions& options) {
   if (scenario.run.start != "steady") return std::make_unique<Run>(scenario, options, 0);
   for (const RunIn& run_in : run_ins) {
@@ -25,14 +36,17 @@ std::unique_ptr<Run> started(const Scenario& scenario, const RunOptions& options
     const double moving = run->run_in();
     if (moving <= run_in.allowed) return run;
   }
-  throw InputError(scenario.path, "run.start",
-                   "start = \"steady\": no steady state at the first reference and load (the drive still moves after 16 s "
-                   "of simulated time); start from \"standstill\" or \"magnetised\", or change the operating point", "steady");
+  throw InputError(
+      scenario.path, "run.start",
+      "start = \"steady\": no steady state at the first reference and load (the drive still moves after 16 s "
+      "of simulated time); start from \"standstill\" or \"magnetised\", or change the operating point",
+      "steady");
 }
 
 }  // namespace
 
 RunOutcome simulate(const Scenario& scenario, std::span<RunObserver* const> observers, const RunOptions& options) {
+  demand_denormals();
   const auto run = started(scenario, options);
   const RunInfo info = run->info();
   for (RunObserver* o : observers) o->begin(info);

@@ -14,22 +14,23 @@
 namespace slipbench {
 
 struct RunOptions {
-  std::uint32_t noise_run = 0;                    // r: another draw of every noise, same seed
-  std::function<bool(double done)> keep_going;    // called now and then with the share done; false stops the run
-  bool time_steps = false;                        // measure each estimator's step (step_ns); costs a clock read a tick
+  std::uint32_t noise_run = 0;                  // r: another draw of every noise, same seed
+  std::function<bool(double done)> keep_going;  // called now and then with the share done; false stops the run
+  bool time_steps = false;                      // measure each estimator's step (step_ns); costs a clock read a tick
 };
 
 struct RunOutcome {
   bool diverged = false, stopped = false;
   double diverged_at_s = 0.0;
-  std::string diverged_what;                      // "stator flux of the plant", "speed estimate of 'ekf'", ...
-  double simulated_s = 0.0, wall_s = 0.0;         // wall_s leaves start-up out
-  std::int64_t clipped_samples = 0;               // ADC readings at the end of their range
-  std::vector<double> step_ns;                    // mean wall time of each estimator's step, in file order
+  std::string diverged_what;  // "stator flux of the plant", "estimate of 'ekf', which closes the loop", ...
+  double simulated_s = 0.0, wall_s = 0.0;  // wall_s leaves start-up out
+  std::int64_t clipped_samples = 0;        // ADC readings at the end of their range
+  std::vector<double> step_ns;             // mean wall time of each estimator's step, in file order
 };
 
-// Throws InputError where the scenario can't be run (no equilibrium for start = "steady", ...); the loop itself never
-// throws: divergence is found at the control tick where it shows and ends the run.
+// Throws InputError where the scenario can't be run (no equilibrium for start = "steady", ...), OutsideError where the
+// processor flushes denormals; the loop itself never throws: divergence is found at the control tick where it shows and
+// ends the run.
 RunOutcome simulate(const Scenario& scenario, std::span<RunObserver* const> observers, const RunOptions& options = {});
 
 }  // namespace slipbench

@@ -1,4 +1,4 @@
-// Time, machine, shaft and inverter: numbers against each other.
+// Time, shaft and inverter: numbers against each other.
 #include "sim/scenario/check.hpp"
 
 #include <cmath>
@@ -42,6 +42,12 @@ void check_time(const Scenario& s, const Node& root) {
   }
 }
 
+// A bound in four digits, rounded to the safe side where it must be: upwards for side = 1, so that what is shown passes.
+std::string bound_text(double bound, double side) {
+  const std::string text = short_text(bound);
+  return side * (std::stod(text) - bound) < -1e-12 * bound ? short_text((1.0 + 5e-4 * side) * bound) : text;
+}
+
 // Explicit steps follow a decay exp(-r t) well only while r h stays below 1.
 void check_steps(const Scenario& s, const Node& root) {
   const double h = s.run.plant_step_s;
@@ -51,8 +57,8 @@ void check_steps(const Scenario& s, const Node& root) {
   const double rate = (c.stator_resistance + g * g * c.rotor_resistance) / leakage;
   if (h * rate > 1.0) {
     refuse_at(root, "run.plant_step_s",
-              "'run.plant_step_s' is " + number_text(h) + " s; the stator current decays at " + number_text(rate) +
-                  " 1/s, so the step must be at most " + number_text(1.0 / rate) + " s");
+              "'run.plant_step_s' is " + number_text(h) + " s; the stator current decays at " + short_text(rate) +
+                  " 1/s, so the step must be at most " + bound_text(1.0 / rate, -1.0) + " s");
   }
   if (s.supply.kind == "inverter") {
     const SupplySettings& u = s.supply;
@@ -61,9 +67,9 @@ void check_steps(const Scenario& s, const Node& root) {
     if (u.zero_current_width_A < least) {
       refuse_at(root, "supply.zero_current_width_A",
                 "'supply.zero_current_width_A' is " + number_text(u.zero_current_width_A) + " A; dead time and drop, " +
-                    number_text(error) +
+                    short_text(error) +
                     " V a leg, turn their sign within it, and the plant step can follow that from " +
-                    number_text(least) + " A upwards");
+                    bound_text(least, 1.0) + " A upwards");
     }
   }
   double opposing = s.shaft.coulomb_friction_Nm;
@@ -76,14 +82,14 @@ void check_steps(const Scenario& s, const Node& root) {
   if (s.shaft.friction_width_rpm < least_rpm) {
     refuse_at(root, "shaft.friction_width_rpm",
               "'shaft.friction_width_rpm' is " + number_text(s.shaft.friction_width_rpm) +
-                  " rpm; opposing torques of " + number_text(opposing) +
-                  " N m turn their sign within it, and the plant step can follow that from " + number_text(least_rpm) +
-                  " rpm upwards");
+                  " rpm; opposing torques of " + short_text(opposing) +
+                  " N m turn their sign within it, and the plant step can follow that from " +
+                  bound_text(least_rpm, 1.0) + " rpm upwards");
   }
   if (h * s.shaft.viscous_friction_Nms > J) {
     refuse_at(root, "shaft.viscous_friction_Nms",
               "'shaft.viscous_friction_Nms' is " + number_text(s.shaft.viscous_friction_Nms) +
-                  " N m s; with this inertia the plant step can follow at most " + number_text(J / h) + " N m s");
+                  " N m s; with this inertia the plant step can follow at most " + bound_text(J / h, -1.0) + " N m s");
   }
 }
 
@@ -96,14 +102,14 @@ void check_inverter(const Scenario& s, const Node& root) {
   const double ratio = u.switching_frequency_Hz * s.run.control_period_s;
   if (!is_whole_multiple(ratio, 1.0) && std::fabs(ratio - 0.5) > 0.5e-9) {
     refuse_at(root, "supply.switching_frequency_Hz",
-              "'supply.switching_frequency_Hz' is " + number_text(ratio) + " times the control frequency, " +
-                  number_text(1.0 / s.run.control_period_s) + " Hz; it must be 1/2 or a whole number of times");
+              "'supply.switching_frequency_Hz' is " + short_text(ratio) + " times the control frequency, " +
+                  short_text(1.0 / s.run.control_period_s) + " Hz; it must be 1/2 or a whole number of times");
   }
   if (2.0 * u.dead_time_s * u.switching_frequency_Hz >= 1.0) {
     refuse_at(root, "supply.dead_time_s",
               "'supply.dead_time_s' is " + number_text(u.dead_time_s) +
                   " s; two dead times leave nothing of a switching period of " +
-                  number_text(1.0 / u.switching_frequency_Hz) + " s");
+                  short_text(1.0 / u.switching_frequency_Hz) + " s");
   }
 }
 
@@ -136,36 +142,6 @@ void derive_defaults(Scenario& s, const Node& root) {
   if (find(root, "sensors.speed.window_s") == nullptr) {
     const double periods = std::floor(1e-3 / s.run.control_period_s + 0.5);
     s.sensors.speed.window_s = s.run.control_period_s * (periods < 1.0 ? 1.0 : periods);
-  }
-}
-
-void check_machine(const MachineSettings& m, const Node& root, const std::string& table) {
-  const auto key = [&](const char* name) { return table == "machine" ? "machine." + std::string(name) : table; };
-  const Circuit<double> c = m.circuit();
-  if (!(c.stator_leakage + c.rotor_leakage > 0.0)) {
-    refuse_at(root, key("stator_leakage_H"),
-              "stator and rotor leakage are both 0; one must be above it, or the machine has no transient inductance "
-              "(L_s L_r = L_m^2)");
-  }
-  const double L_m = c.magnetizing_inductance;
-  if (!(c.stator_inductance() * c.rotor_inductance() - L_m * L_m > 1e-6 * L_m * L_m)) {
-    refuse_at(root, key("stator_leakage_H"),
-              "the leakage is under a millionth of the magnetizing inductance: no real machine, and no digits left to "
-              "compute with");
-  }
-  const double synchronous_rpm = 60.0 * m.rated_frequency_Hz / static_cast<double>(m.pole_pairs);
-  if (!(m.rated_speed_rpm < synchronous_rpm)) {
-    refuse_at(root, key("rated_speed_rpm"),
-              "'" + key("rated_speed_rpm") + "' is " + number_text(m.rated_speed_rpm) +
-                  " rpm; it must be below synchronous speed, " + number_text(synchronous_rpm) + " rpm with " +
-                  std::to_string(m.pole_pairs) + " pole pairs at " + number_text(m.rated_frequency_Hz) + " Hz");
-  }
-  // 5 % above sqrt(3) U I for what plates round.
-  const double apparent = 1.7320508075688772 * m.rated_line_voltage_V * m.rated_current_A;
-  if (m.rated_power_W > 1.05 * apparent) {
-    refuse_at(root, key("rated_power_W"),
-              "'" + key("rated_power_W") + "' is " + number_text(m.rated_power_W) +
-                  " W; rated voltage and current give only " + number_text(apparent) + " VA");
   }
 }
 

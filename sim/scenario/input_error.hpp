@@ -11,7 +11,10 @@ class InputError : public std::runtime_error {
  public:
   InputError(std::string place, std::string key, std::string message, std::string code = "input")
       : std::runtime_error(place + (place.empty() ? "" : ": ") + message),
-        place_(std::move(place)), key_(std::move(key)), message_(std::move(message)), code_(std::move(code)) {}
+        place_(std::move(place)),
+        key_(std::move(key)),
+        message_(std::move(message)),
+        code_(std::move(code)) {}
   [[nodiscard]] const std::string& place() const { return place_; }
   [[nodiscard]] const std::string& key() const { return key_; }
   [[nodiscard]] const std::string& message() const { return message_; }

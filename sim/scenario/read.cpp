@@ -24,7 +24,7 @@ namespace {
 Node parse_file(const std::string& path) {
   std::string why;
   const auto text = read_text(path, why);
-  if (!text) throw InputError(path, "", "'" + printable(path) + "': " + why, "file");
+  if (!text) throw InputError(path, "", why, "file");
   return parse_toml(*text, path);
 }
 
@@ -123,6 +123,8 @@ MachineSettings machine_of(const Node& root, const std::string& from) {
   check_machine(alone.machine, root, "machine");
   alone.machine.rated_torque_Nm = alone.machine.nameplate().torque_Nm;
   alone.machine.file = from;
+  if (const Node* title = root.child("title")) alone.machine.title = title->text;
+  if (const Node* source = root.child("source")) alone.machine.source = source->text;
   return alone.machine;
 }
 
@@ -154,7 +156,7 @@ ScenarioFile::ScenarioFile(const std::string& path) {
 ScenarioFile::ScenarioFile(const std::string& text, const std::string& name, const std::string& folder) {
   auto parsed = std::make_shared<ParsedScenario>();
   parsed->folder = folder;
-  if (text.size() > largest_file) throw InputError(name, "", "is larger than 4 MiB", "file");
+  if (text.size() > largest_file) throw InputError(name, "", "it is larger than 4 MiB", "file");
   parsed->root = parse_toml(text, name);
   want_kind(parsed->root, FileKind::scenario);
   preload(*parsed);

@@ -213,22 +213,22 @@ std::optional<std::string> read_text(const std::string& path, std::string& why) 
   const auto status = std::filesystem::status(path, error);
   if (path.empty() || path.find('\0') != std::string::npos || !std::filesystem::exists(status)) {
     const bool absent = !error || error == std::errc::no_such_file_or_directory || error == std::errc::not_a_directory;
-    why = absent ? "there is no such file" : "cannot be read: " + error.message();
+    why = absent ? "there is no such file" : "it cannot be read: " + error.message();
     return std::nullopt;
   }
-  if (std::filesystem::is_directory(status)) return why = "is a folder, not a file", std::nullopt;
+  if (std::filesystem::is_directory(status)) return why = "it is a folder, not a file", std::nullopt;
   std::ifstream stream(path, std::ios::binary);
-  if (!stream) return why = "cannot be opened for reading", std::nullopt;
+  if (!stream) return why = "it cannot be opened for reading", std::nullopt;
   std::string text(std::filesystem::is_regular_file(status) ? 0 : largest_file + 1, '\0');
   if (text.empty()) {
     const auto size = std::filesystem::file_size(path, error);
     text.resize(error || size > largest_file ? largest_file + 1 : static_cast<std::size_t>(size) + 1);
   }
   stream.read(text.data(), static_cast<std::streamsize>(text.size()));
-  if (stream.bad()) return why = "cannot be read", std::nullopt;
+  if (stream.bad()) return why = "it cannot be read", std::nullopt;
   text.resize(static_cast<std::size_t>(stream.gcount()));
-  if (text.size() > largest_file) return why = "is larger than 4 MiB", std::nullopt;
-  if (text.empty()) return why = "is empty", std::nullopt;
+  if (text.size() > largest_file) return why = "it is larger than 4 MiB", std::nullopt;
+  if (text.empty()) return why = "it is empty", std::nullopt;
   return text;
 }
 

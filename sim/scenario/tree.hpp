@@ -45,6 +45,7 @@ std::string found_text(const Node& node);
 std::string printable(std::string_view text);
 // Shortest decimal that reads back the same.
 std::string number_text(double value);
+std::string short_text(double value);  // four digits, for what was computed
 
 // Largest file read, bytes, and deepest nesting of brackets and dotted keys: far beyond any honest scenario.
 inline constexpr std::size_t largest_file = 4u << 20;

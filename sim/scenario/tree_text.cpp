@@ -46,6 +46,13 @@ std::string number_text(double value) {
   return error == std::errc() ? std::string(digits.data(), end) : std::string("?");
 }
 
+std::string short_text(double value) {
+  std::array<char, 32> digits{};
+  const auto [end, error] =
+      std::to_chars(digits.data(), digits.data() + digits.size(), value, std::chars_format::general, 4);
+  return error == std::errc() ? std::string(digits.data(), end) : std::string("?");
+}
+
 namespace {
 
 // Length of the well-formed UTF-8 sequence at the start of `text`, 0 where there is none.

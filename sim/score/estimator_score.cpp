@@ -31,17 +31,20 @@ void EstimatorScore::judge(Tally& t, const PlantRow& plant, const Estimate<doubl
   const double speed_error = estimate.speed * (30.0 / pi) - plant[P::speed_rpm];
   const double size = std::fabs(speed_error);
 
+  const bool in_window = basis_.window.holds(time_s, basis_.control_period_s);
+
   // A NaN compares false with everything, so that "within" is asked for, never "beyond".
   if (!t.lost_at) {
-    if (size <= basis_.lost_error * basis_.rated_speed_rpm) {
+    if (!std::isfinite(speed_error)) {
+      t.lost_at = t.off_since ? t.off_since : Figure(time_s);
+    } else if (!in_window || size <= basis_.lost_error * basis_.rated_speed_rpm) {
       t.off_since.reset();
     } else {
       if (!t.off_since) t.off_since = time_s;
-      const bool long_enough = time_s - *t.off_since >= basis_.lost_for_s - 1e-6 * basis_.control_period_s;
-      if (long_enough || !std::isfinite(speed_error)) t.lost_at = t.off_since;
+      if (time_s - *t.off_since >= basis_.lost_for_s - 1e-6 * basis_.control_period_s) t.lost_at = t.off_since;
     }
   }
-  if (!basis_.window.holds(time_s, basis_.control_period_s)) return;
+  if (!in_window) return;
 
   t.count += 1;
   t.speed_sum += speed_error;

@@ -5,9 +5,8 @@
 //   flux_rmse_Wb (of the magnitude), torque_rmse_Nm likewise
 //   angle_rmse_deg: e wrapped to +-180 degrees; ticks whose true rotor flux is below 10 % of the rated one are left out
 //   settled_at_s: time of the first tick of the window from which |e| <= settled_error x rated speed to the window's end
-// Over the whole run:
-//   lost_at_s: start of the first stretch with |e| > lost_error x rated speed that lasted lost_for_s; an estimate of
-//   speed that is no finite number is lost at once
+//   lost_at_s: start of the first stretch inside the window with |e| > lost_error x rated speed that lasted lost_for_s; an
+//   estimate of speed that is no finite number is lost at once, at any time of the run
 // An estimate that is not finite anywhere in the window leaves the figures it enters empty.
 #pragma once
 

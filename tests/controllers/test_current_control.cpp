@@ -239,3 +239,26 @@ TEST_CASE("current loop: delays of none and two periods", "[controllers][physics
     CHECK(loop.torque_now() == Approx(8.0).epsilon(2e-3));
   }
 }
+
+// At half of rated speed the circle is far away. With discontinuous modulation the compensation is off by one leg's dead time
+// whenever the tied leg changes: an error, but no limit.
+TEST_CASE("current loop: nothing counts as clipped inside the voltage limit", "[controllers][physics]") {
+  for (const Modulation kind : {Modulation::space_vector, Modulation::sine, Modulation::discontinuous}) {
+    const PublishedMachine truth = barut_3kW();
+    ControllerSetup setup = setup_for(truth);
+    setup.modulation = kind;
+    setup.inverter.dead_time_s = 2e-6;
+    setup.inverter.device_drop_V = 1.0;
+    ClosedLoop loop = torque_drive(truth, setup, 0.5 * truth.nameplate.speed_rad_s());
+    loop.leg = leg_error(2e-6, 10e3, 1.0, setup.inverter.zero_current_width_A);
+    loop.measured.torque_reference = 0.7 * truth.nameplate.torque_Nm;
+    loop.run_for(0.5);
+    int clipped = 0;
+    for (int k = 0; k < 2000; ++k) {
+      loop.step();
+      clipped += loop.command.clipped > 0.5 ? 1 : 0;
+    }
+    INFO("modulation " << static_cast<int>(kind));
+    CHECK(clipped == 0);
+  }
+}

@@ -95,13 +95,15 @@ TEST_CASE("averaged inverter: voltage is the duties' less the errors", "[plant][
 
 TEST_CASE("inverter: the error vector equals Clarke's transform of the leg errors", "[plant][inverter]") {
   const LegError<double> e = leg_error(2e-6, 10e3, 1.0, 0.3);
-  for (const Phases<double>& duty : {Phases<double>{0.2, 0.6, 0.9}, Phases<double>{0.0, 0.4, 1.0}, Phases<double>{1.0, 0.5, 0.3}}) {
+  for (const Phases<double>& duty :
+       {Phases<double>{0.2, 0.6, 0.9}, Phases<double>{0.0, 0.4, 1.0}, Phases<double>{1.0, 0.5, 0.3}}) {
     const LegPull<double> pull = leg_pull(leg_error_size(e, duty, 540.0));
     for (int degrees = 0; degrees < 360; degrees += 7) {
       for (const double amplitude : {0.0, 0.1, 0.35, 8.0}) {
         const double angle = degrees * 3.14159265358979323846 / 180.0;
         const Vec2<double> i{amplitude * std::cos(angle), amplitude * std::sin(angle)};
-        const Vec2<double> whole = clarke(leg_errors(e, phases_of(i), duty, 540.0)), fast = leg_error_vector(e, pull, i);
+        const Vec2<double> whole = clarke(leg_errors(e, phases_of(i), duty, 540.0)),
+                           fast = leg_error_vector(e, pull, i);
         // Rounding of some twenty operations on voltages up to 15 V.
         CHECK(std::fabs(whole.x - fast.x) < 20 * 15 * 2.3e-16);
         CHECK(std::fabs(whole.y - fast.y) < 20 * 15 * 2.3e-16);

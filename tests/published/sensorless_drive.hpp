@@ -17,13 +17,15 @@ inline constexpr std::array<const char*, 3> all_estimators{"luenberger", "reduce
 inline constexpr double pi = 3.14159265358979323846;
 
 inline double rated_flux(const Published& p) {
-  return magnitude(steady_at_slip(p.circuit, p.line_voltage * std::sqrt(2.0 / 3.0), 2.0 * pi * p.frequency, p.slip).flux.rotor);
+  return magnitude(
+      steady_at_slip(p.circuit, p.line_voltage * std::sqrt(2.0 / 3.0), 2.0 * pi * p.frequency, p.slip).flux.rotor);
 }
 
 // Magnetised, ramped to `speed_share` of rated speed by 1.2 s; the torque step comes at 1.8 s, the end at 3.5 s.
 // DC link 1.35 times the line voltage (mean of a six-pulse rectifier), 10 kHz, dead time 2 us and 1 V drop, both believed and
 // compensated; current noise 1 % of rated peak in each of three phases.
-inline Scenario inverter_drive(const Published& p, double speed_share, double torque_Nm, const std::string& speed_from) {
+inline Scenario inverter_drive(const Published& p, double speed_share, double torque_Nm,
+                               const std::string& speed_from) {
   Scenario s = on_mains(p, 3.5, 20e-6);
   const double peak_current = p.current_rms * std::sqrt(2.0);
   s.run.control_period_s = 100e-6;

@@ -21,7 +21,8 @@ std::vector<Pole> fifth_order_poles(const Published& p) {
   using D = Dual<double, 5>;
   const double w = 2.0 * 3.14159265358979323846 * p.frequency, peak = p.line_voltage * std::sqrt(2.0 / 3.0);
   const SteadyState at = steady_at_slip(p.circuit, peak, w, p.slip);
-  std::array<double, 5> x0{at.flux.stator.x, at.flux.stator.y, at.flux.rotor.x, at.flux.rotor.y, at.electrical_speed / p.circuit.pole_pairs};
+  std::array<double, 5> x0{at.flux.stator.x, at.flux.stator.y, at.flux.rotor.x, at.flux.rotor.y,
+                           at.electrical_speed / p.circuit.pole_pairs};
   std::array<D, 5> x;
   for (std::size_t i = 0; i < 5; ++i) x[i] = D::variable(x0[i], i);
   const Machine<D> m = in_number<Machine<D>, D>(make_machine(p.circuit));
@@ -65,7 +66,8 @@ TEST_CASE("poles: fifth-order model of the published machines", "[published][pla
   for (const Row& row : rows) {
     INFO(row.machine.name);
     const auto poles = fifth_order_poles(row.machine);
-    for (const Pole& pole : {Pole(row.real), row.slow, std::conj(row.slow), row.fast, std::conj(row.fast)}) check_contains(poles, pole, 1e-4);
+    for (const Pole& pole : {Pole(row.real), row.slow, std::conj(row.slow), row.fast, std::conj(row.fast)})
+      check_contains(poles, pole, 1e-4);
   }
 }
 

@@ -19,9 +19,21 @@ struct Point {
 // zero: w_r = w_s - w_slip with the slip of 0.7 times rated torque at rated flux.
 std::array<Point, 12> points_of(const Published& p) {
   const double slip = -steady_at_flux(p.circuit, rated_flux(p), -0.7 * p.torque, 0.0).slip_frequency;
-  const auto share = [&](double hz) { return (slip + 2.0 * pi * hz) / p.circuit.pole_pairs / (p.speed_rpm * pi / 30.0); };
-  return {{{0.05, 0.7}, {0.2, 0.7}, {0.6, 0.7}, {1.0, 0.7}, {1.5, 0.7},
-           {0.05, -0.7}, {0.2, -0.7}, {0.6, -0.7}, {1.0, -0.7}, {1.5, -0.7}, {share(0.55), -0.7}, {share(-0.55), -0.7}}};
+  const auto share = [&](double hz) {
+    return (slip + 2.0 * pi * hz) / p.circuit.pole_pairs / (p.speed_rpm * pi / 30.0);
+  };
+  return {{{0.05, 0.7},
+           {0.2, 0.7},
+           {0.6, 0.7},
+           {1.0, 0.7},
+           {1.5, 0.7},
+           {0.05, -0.7},
+           {0.2, -0.7},
+           {0.6, -0.7},
+           {1.0, -0.7},
+           {1.5, -0.7},
+           {share(0.55), -0.7},
+           {share(-0.55), -0.7}}};
 }
 
 struct Figures {
@@ -67,8 +79,8 @@ TEST_CASE("speed-sensorless drive: each estimator holds at every operating point
         lowest = std::min(lowest, std::fabs(f.frequency));
       }
       CHECK(lowest < 0.6);
-      WARN(p.name << ", " << estimator << ": steady mean " << 100 * mean << " %, worst tick " << 100 * worst << " %, rms after step "
-                  << 100 * step << " %, lowest stator frequency " << lowest << " Hz");
+      WARN(p.name << ", " << estimator << ": steady mean " << 100 * mean << " %, worst tick " << 100 * worst
+                  << " %, rms after step " << 100 * step << " %, lowest stator frequency " << lowest << " Hz");
     }
   }
 }
@@ -87,7 +99,8 @@ TEST_CASE("speed bias of a wrong rotor resistance: equals slip times the relativ
       const double bias = slip * (1.0 - believed) / p.circuit.pole_pairs;
       for (std::size_t i = 0; i < all_estimators.size(); ++i) {
         const double found = watch.mean[i] * p.speed_rpm * pi / 30.0;
-        INFO(p.name << ", " << all_estimators[i] << ", believed/true " << believed << ": " << found << " rad/s, closed form " << bias);
+        INFO(p.name << ", " << all_estimators[i] << ", believed/true " << believed << ": " << found
+                    << " rad/s, closed form " << bias);
         CHECK(std::fabs(found / bias - 1.0) < 0.05);
         WARN(p.name << ", " << all_estimators[i] << ", believed/true " << believed << ": bias off its closed form by "
                     << 100 * (found / bias - 1.0) << " %");

@@ -11,7 +11,6 @@ using namespace slipbench::published;
 
 namespace {
 
-constexpr double rpm = 3.14159265358979323846 / 30.0;
 // The circuit's figures are printed to 10-11 digits; rk4 at 10 us leaves (w h)^4/120 < 1e-12 a step, and the slowest pole of
 // these machines (-14 1/s) has decayed below 1e-12 after 2.5 s. 1e-8 is the bound asked for.
 constexpr double bound = 1e-8;
@@ -88,8 +87,11 @@ TEST_CASE("inverse-gamma circuit: the published equivalents", "[published][plant
   CHECK(g.rotor_resistance == Approx(0.7708701069).epsilon(1e-9));
   CHECK(g.rotor_resistance / g.magnetizing_inductance == Approx(11.44267).epsilon(1e-6));
   // The same machine as a T and as an inverse-gamma circuit draws the same current and gives the same torque at any slip.
-  const Circuit<double> t = krause_3hp().circuit, same = from_inverse_gamma(2.0, g.stator_resistance, g.rotor_resistance, g.leakage, g.magnetizing_inductance);
-  const double L_s = t.stator_inductance(), r = L_s / t.magnetizing_inductance;  // gamma form: all leakage on the rotor side
+  const Circuit<double> t = krause_3hp().circuit,
+                        same = from_inverse_gamma(2.0, g.stator_resistance, g.rotor_resistance, g.leakage,
+                                                  g.magnetizing_inductance);
+  const double L_s = t.stator_inductance(),
+               r = L_s / t.magnetizing_inductance;  // gamma form: all leakage on the rotor side
   const double L_leak = r * r * t.rotor_inductance() - L_s;
   const Circuit<double> gamma = from_gamma(2.0, t.stator_resistance, r * r * t.rotor_resistance, L_leak, L_s);
   for (const double slip : {-0.3, -0.02, 0.01, 0.05, 1.0}) {

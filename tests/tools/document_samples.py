@@ -1,4 +1,5 @@
-"""Runs the samples in every README: each scenario in a ```toml block must run, each machine must pass `check`.
+"""Runs the samples in every README: each scenario in a ```toml block must run, each machine must pass `check`; what is
+linked or shown must be there.
 
 usage: document_samples.py SOURCE SLIPBENCH
 """
@@ -8,10 +9,14 @@ import subprocess
 import sys
 import tempfile
 
-source, slipbench = pathlib.Path(sys.argv[1]), sys.argv[2]
+source, slipbench = pathlib.Path(sys.argv[1]).resolve(), sys.argv[2]
 documents = [p for p in sorted(source.rglob("*.md")) if "build" not in p.relative_to(source).parts]
-failed = ran = 0
+failed = ran = missing = 0
 for document in documents:
+    for target in re.findall(r"\]\((?!https?:)([^)#]+)\)", document.read_text()):
+        if not (document.parent / target).exists():
+            missing += 1
+            print(f"{document.relative_to(source)}: no such file: {target}")
     for number, block in enumerate(re.findall(r"```toml\n(.*?)```", document.read_text(), re.S), 1):
         if "[run]" not in block and "[machine]" not in block:
             continue  # a fragment that its text explains
@@ -25,5 +30,5 @@ for document in documents:
         if result.returncode != 0:
             failed += 1
             print(f"{document.relative_to(source)}, sample {number}: {verb} gave {result.returncode}\n{result.stderr}")
-print(f"{ran - failed} passed, {failed} failed")
-sys.exit(1 if failed or ran == 0 else 0)
+print(f"{ran - failed} passed, {failed} failed; {missing} files linked but missing")
+sys.exit(1 if failed or missing or ran == 0 else 0)

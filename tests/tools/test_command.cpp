@@ -43,7 +43,8 @@ TEST_CASE("command: a verb given the wrong kind of file says which it wants", "[
   const Folder folder;
   const std::string text = scenario_text();
   const std::size_t from = text.find("[machine]"), to = text.find("[shaft]");
-  const std::string machine = folder.write("m.toml", text.substr(from, to - from));
+  const std::string machine =
+      folder.write("m.toml", "title = \"Test machine\"\nsource = \"invented\"\n" + text.substr(from, to - from));
   const std::string plan = folder.write("p.toml", "scenario = \"s.toml\"\n");
   const std::string system = folder.write("sys.toml", "[system]\nA = [[0.0]]\nB = [[1.0]]\nC = [[1.0]]\n");
   for (const std::string verb : {"run", "compare"}) {
@@ -55,6 +56,8 @@ TEST_CASE("command: a verb given the wrong kind of file says which it wants", "[
   const Answer facts = folder.run({"check", machine, "--json"});
   REQUIRE(facts.status == 0);
   CHECK(facts.json()["kind"] == "machine file");
+  CHECK(facts.json()["title"] == "Test machine");
+  CHECK(facts.json()["facts"]["source"] == "invented");
   // sigma = 1 - L_m^2 / (L_s L_r) with L_s = L_r = 0.1782 H, by hand; the difference of near ones loses a digit.
   CHECK(facts.json()["facts"]["leakage_factor"].get<double>() ==
         Approx(1.0 - 0.172 * 0.172 / (0.1782 * 0.1782)).epsilon(1e-14));

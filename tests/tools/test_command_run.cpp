@@ -226,9 +226,11 @@ TEST_CASE("run: a diverged plant is 1, named, and the rows done are kept", "[too
   text = text.substr(0, text.find("[supply]")) +
          "[supply]\nkind = \"mains\"\nline_voltage_V = 400.0\nfrequency_Hz = 50.0\n";
   text = replaced(text, "start = \"magnetised\"", "start = \"standstill\"");
-  const Answer answer = folder.run({"run", folder.write("s.toml", text), "--json", "--trace", folder.file("t.csv")});
+  const Answer answer = folder.run({"run", folder.write("s.toml", text), "--json", "--trace", folder.file("t.csv"),
+                                    "--figure", folder.file("f.svg")});
   INFO(answer.err);
   REQUIRE(answer.status == 1);
+  CHECK_THAT(content(folder.file("f.svg")), Catch::Contains("DIVERGED at "));
   const auto j = answer.json();
   CHECK(j["status"] == "diverged");
   CHECK(j["diverged"]["at_s"].get<double>() > 0.0);

@@ -1,5 +1,6 @@
 // The command line: what is understood, what is refused and how.
 #include <catch2/catch.hpp>
+#include <filesystem>
 
 #include "tools/slipbench/options.hpp"
 
@@ -46,6 +47,9 @@ TEST_CASE("command line: help shows an example and the cautions for every verb",
   for (const std::string verb : {"run", "check", "compare"}) {
     const std::string text = parse_command_line({verb, "--help"}).text;
     CHECK_THAT(text, Catch::Contains("Example:\n  slipbench " + verb + " "));
+    const std::size_t file = text.find("configs/scenarios/");  // the example can be typed as it stands, from the root
+    REQUIRE(file != std::string::npos);
+    CHECK(std::filesystem::exists(SLIPBENCH_SOURCE_DIR "/" + text.substr(file, text.find(' ', file) - file)));
     CHECK_THAT(text, Catch::Contains("Caution: a simulation does not replace commissioning by qualified people"));
   }
   CHECK_THAT(parse_command_line({"--help"}).text, Catch::Contains("slipbench compare "));

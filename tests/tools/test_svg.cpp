@@ -51,6 +51,33 @@ TEST_CASE("text: nothing in a title can break the XML", "[tools][figure]") {
   check_well_formed(svg::document(10, 10, "]]> <x> & ü", svg::text(1, 2, "<&>\x1b[0m")));
 }
 
+TEST_CASE("text: too long for its room, cut between signs and marked", "[tools][figure]") {
+  CHECK(svg::fitted("short", 100, 12) == "short");
+  const std::string cut = svg::fitted("übergroße Förderanlage", 60, 12);
+  CHECK(cut.ends_with("…"));
+  CHECK(svg::width_px(cut, 12) <= 60.0);
+  CHECK(svg::width_px(cut, 12) > 40.0);
+  CHECK(svg::fitted("äää", 1, 12) == "…");
+  check_well_formed(svg::document(10, 10, cut, svg::text(1, 2, cut)));  // no sign was cut in two
+}
+
+TEST_CASE("run figure: the legend takes as many rows as its names need", "[tools][figure]") {
+  const auto height = [](int estimators) {
+    RunFigure figure({0.0, 1.0}, {});
+    test::Stream stream;
+    stream.ticks = 11;
+    stream.names.clear();
+    for (int i = 0; i < estimators; ++i) stream.names.push_back(std::string(60, 'x') + std::to_string(i));
+    stream.feed(figure, [](double, PlantRow&, std::vector<Estimate<double>>&, bool&) {});
+    const std::string svg = figure.svg(Scenario{}, std::vector<EstimatorFigures>(static_cast<std::size_t>(estimators)));
+    check_well_formed(svg);
+    const std::size_t at = svg.find(" height=\"") + 9;
+    return std::stod(svg.substr(at, svg.find('"', at) - at));
+  };
+  CHECK(height(1) == height(0));
+  CHECK(height(8) > height(1) + 3 * 12.0);  // two such names at most in a row of 860 px
+}
+
 TEST_CASE("envelope: keeps every peak, leaves a gap for what is no number", "[tools][figure]") {
   Envelope envelope(2);
   for (const double value : {1.0, -5.0, 7.0}) envelope.add(0, value);

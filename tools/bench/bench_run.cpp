@@ -39,7 +39,8 @@ rated_speed_rpm = 1710.0
 kind = "mains"
 line_voltage_V = 220.0
 frequency_Hz = 60.0
-)", "bench", SLIPBENCH_SOURCE_DIR "/configs/machines");
+)",
+                            "bench", SLIPBENCH_SOURCE_DIR "/configs/machines");
 }
 
 // Nothing but Runge and Kutta: the same supply with its sine and cosine, the same machine, shaft and fan, by hand.
@@ -48,7 +49,8 @@ frequency_Hz = 60.0
   const auto f = [&](const double* x, double* dx, double t) {
     const SinCos<double> angle = sincos_turns(d.mains.frequency * t + d.mains.phase_turns);
     const double i_a = m.per_Ls * x[0] - m.per_Lm * x[2], i_b = m.per_Ls * x[1] - m.per_Lm * x[3];
-    const double r_a = m.per_Lr * x[2] - m.per_Lm * x[0], r_b = m.per_Lr * x[3] - m.per_Lm * x[1], w = m.pole_pairs * x[4];
+    const double r_a = m.per_Lr * x[2] - m.per_Lm * x[0], r_b = m.per_Lr * x[3] - m.per_Lm * x[1],
+                 w = m.pole_pairs * x[4];
     dx[0] = d.mains.peak * angle.cos - m.R_s * i_a;
     dx[1] = d.mains.peak * angle.sin - m.R_s * i_b;
     dx[2] = -m.R_r * r_a - w * x[3];

@@ -48,7 +48,9 @@ double machine_step_ns(const Bench& b) {
   DriveInput<double> in;
   in.ideal_voltage = b.steady.voltage;
   DriveState<double> x{};
-  const auto system = [&](const DriveState<double>& s, DriveState<double>& dx, double t) { dx = drive_derivative(d, in, s, t); };
+  const auto system = [&](const DriveState<double>& s, DriveState<double>& dx, double t) {
+    dx = drive_derivative(d, in, s, t);
+  };
   constexpr int steps = 200000;
   const double begun = now();
   for (int n = 0; n < steps; ++n) odeint_step<Stepper::rk4>(system, x, n * 10e-6, 10e-6);
@@ -112,12 +114,10 @@ void controller_tick(benchmark::State& state) {
 }  // namespace
 
 int main(int argc, char** argv) {
-  each_estimator_method([]<class Method>() {
-    benchmark::RegisterBenchmark(std::string(Method::kind).c_str(), estimator_tick<Method>);
-  });
-  each_controller_method([]<class Method>() {
-    benchmark::RegisterBenchmark(std::string(Method::kind).c_str(), controller_tick<Method>);
-  });
+  each_estimator_method(
+      []<class Method>() { benchmark::RegisterBenchmark(std::string(Method::kind).c_str(), estimator_tick<Method>); });
+  each_controller_method(
+      []<class Method>() { benchmark::RegisterBenchmark(std::string(Method::kind).c_str(), controller_tick<Method>); });
   benchmark::Initialize(&argc, argv);
   if (benchmark::ReportUnrecognizedArguments(argc, argv)) return 2;
   benchmark::RunSpecifiedBenchmarks();

@@ -105,7 +105,10 @@ int check_verb(const Request& request) {
       throw InputError("command line", "--seed", "--seed means nothing for a machine file", "usage");
     }
     document.kind = "machine file";
-    add_machine_facts(document.facts, read_machine(request.file, request.overrides));
+    const MachineSettings machine = read_machine(request.file, request.overrides);
+    document.title = machine.title;
+    if (!machine.source.empty()) document.facts.push_back({"source", "source of its numbers", 0.0, machine.source, ""});
+    add_machine_facts(document.facts, machine);
   } else {
     throw InputError(request.file, "",
                      "this is " + kind_text(kind) +

@@ -12,7 +12,7 @@ namespace slipbench {
 
 namespace {
 
-constexpr double panel_width = 210, gap = 34, top = 112, row_height = 60;
+constexpr double panel_width = 210, gap = 34, top = 112, row_height = 60, widest_name = 380;
 constexpr std::size_t most_dots = 400;  // of single runs in one row: more would only thicken the cloud
 
 struct PanelName {
@@ -76,27 +76,31 @@ std::string panel(const Comparison& c, const PanelName& name, double left, doubl
 }  // namespace
 
 std::string compare_figure(const Comparison& c, const Scenario& scenario) {
-  std::size_t longest = 8;
-  for (const ComparedEstimator& e : c.estimators) longest = std::max(longest, e.name.size());
-  const double names = 24 + 7.6 * static_cast<double>(std::min<std::size_t>(longest, 40)) + 18;
+  double longest = 70.0;
+  for (const ComparedEstimator& e : c.estimators) longest = std::max(longest, svg::width_px(e.name, 13, true));
+  longest = std::min(longest, widest_name);
+  const double names = 24 + longest + 16;
   const double bottom = top + row_height * static_cast<double>(c.estimators.size());
   const double width = names + 4 * panel_width + 3 * gap + 36;
   const std::string title = scenario.title.empty() ? "Comparison" : scenario.title;
-  std::string body = svg::text(24, 32, title, {17, "start", svg::ink, true});
+  std::string body = svg::text(24, 32, svg::fitted(title, width - 48, 17, true), {17, "start", svg::ink, true});
   body += svg::text(
       24, 53,
-      fmt::format("{} noise runs, {}, seed {}; large dot and bar: mean and its 95 % interval; small dots: runs",
-                  c.runs(), c.in_loop ? "each estimator closing the loop in turn" : "all estimators riding along",
-                  scenario.seed),
+      fmt::format("{} noise {}, {}, seed {}; large dot and bar: mean and its 95 % interval; small dots: runs", c.runs(),
+                  c.runs() == 1 ? "run" : "runs",
+                  c.in_loop ? "each estimator closing the loop in turn" : "all estimators riding along", scenario.seed),
       {12, "start", svg::soft_ink});
   for (std::size_t e = 0; e < c.estimators.size(); ++e) {
     const double row = top + row_height * static_cast<double>(e);
     if (e % 2 == 0) body += svg::rectangle(12, row, width - 24, row_height, "#f7f7f7");
-    body += svg::text(24, row + row_height / 2 + 3, c.estimators[e].name, {13, "start", svg::colour(e), true});
-    const std::size_t lost = c.estimators[e].lost_runs();
-    if (lost > 0)
-      body += svg::text(24, row + row_height / 2 + 18, fmt::format("lost in {} of {}", lost, c.runs()),
-                        {11, "start", svg::soft_ink});
+    body += svg::text(24, row + row_height / 2 + 3, svg::fitted(c.estimators[e].name, longest, 13, true),
+                      {13, "start", svg::colour(e), true});
+    const std::size_t lost = c.estimators[e].lost_runs(), diverged = c.estimators[e].diverged_runs();
+    if (lost + diverged == 0) continue;
+    body += svg::text(24, row + row_height / 2 + 18,
+                      diverged > 0 ? fmt::format("diverged {} of {}", diverged, c.runs())
+                                   : fmt::format("lost in {} of {}", lost, c.runs()),
+                      {11, "start", svg::soft_ink});
   }
   double left = names;
   for (const PanelName& name : c.in_loop ? looped : riding) {

@@ -66,18 +66,19 @@ std::string differences_text(const Comparison& c) {
 
 std::string comparison_summary(const Comparison& c, const Scenario& scenario, const std::vector<std::string>& files) {
   std::string text = fmt::format("{}\n", scenario.title.empty() ? scenario.path : scenario.title);
-  text += fmt::format("{} noise runs{}, {} s simulated in {} s on {} {}, seed {}, scored from {} s to {} s\n\n",
-                      c.runs(), c.in_loop ? " of each estimator" : "", plain(c.simulated_s), significant(c.wall_s, 3),
-                      c.threads, c.threads == 1 ? "thread" : "threads", scenario.seed, plain(scenario.score.from_s),
-                      plain(scenario.score.to_s));
+  text += fmt::format("{} noise {}{}, {} s simulated in {} s on {} {}, seed {}, scored from {} s to {} s\n\n", c.runs(),
+                      c.runs() == 1 ? "run" : "runs", c.in_loop ? " of each estimator" : "", plain(c.simulated_s),
+                      significant(c.wall_s, 3), c.threads, c.threads == 1 ? "thread" : "threads", scenario.seed,
+                      plain(scenario.score.from_s), plain(scenario.score.to_s));
   text += c.in_loop ? "Each estimator closing the loop: " : "Estimates against the truth: ";
   text += "mean ± half of its 95 % interval\n" + figures_text(c);
   if (c.estimators.size() > 1)
     text += "\nSpeed rms, paired by run: mean difference and its 95 % interval\n" + differences_text(c);
   for (const ComparedEstimator& e : c.estimators) {
     if (e.diverged_runs() == 0) continue;
-    text += c.in_loop ? fmt::format("\nDIVERGED: {} in {} runs, left out of the means\n", e.name, e.diverged_runs())
-                      : fmt::format("\nDIVERGED: {} runs, left out of the means\n", e.diverged_runs());
+    text += c.in_loop ? fmt::format("\nDIVERGED: {} in {} of {} runs, left out of the means\n", e.name,
+                                    e.diverged_runs(), c.runs())
+                      : fmt::format("\nDIVERGED: {} of {} runs, left out of the means\n", e.diverged_runs(), c.runs());
     if (!c.in_loop) break;
   }
   if (c.stopped) text += "\nINTERRUPTED; the finished runs are shown\n";

@@ -22,11 +22,11 @@ struct VerbRow {
 };
 constexpr std::array<VerbRow, 3> verb_rows = {{
     {"run", "simulate a scenario once and print the summary",
-     "slipbench run configs/scenarios/demo.toml --set belief.rotor_resistance=1.5 --trace demo.csv --figure demo.svg"},
+     "slipbench run configs/scenarios/conveyor_hot_rotor.toml --set belief.rotor_resistance=1.5 --figure run.svg"},
     {"check", "read and validate a scenario or machine file, run nothing",
-     "slipbench check configs/scenarios/demo.toml --set run.plant_step_s=5e-6"},
+     "slipbench check configs/scenarios/hoist_lowering.toml --set run.plant_step_s=5e-6"},
     {"compare", "judge all estimators of a scenario over paired noise runs",
-     "slipbench compare configs/scenarios/demo.toml --runs 50 --in-loop --figure compare.svg"},
+     "slipbench compare configs/scenarios/conveyor_hot_rotor.toml --runs 50 --in-loop --figure compare.svg"},
 }};
 
 // Every option once: the verbs it means something for, and whether it takes a value.

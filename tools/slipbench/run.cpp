@@ -12,6 +12,7 @@
 #include "tools/slipbench/progress.hpp"
 #include "tools/slipbench/run_figure.hpp"
 #include "tools/slipbench/run_result.hpp"
+#include "tools/slipbench/table.hpp"
 #include "tools/slipbench/verbs.hpp"
 
 namespace slipbench {
@@ -81,7 +82,11 @@ int run_verb(const Request& request) {
         fmt::format("trace:  {} ({} rows, {} columns)", request.trace, trace->rows(), trace->columns()));
   }
   if (figure_file) {
-    figure_file->write(figure.svg(scenario, estimator_score.figures()));
+    const RunOutcome& o = result.outcome;
+    const std::string ended = o.diverged           ? fmt::format("DIVERGED at {} s", plain(o.diverged_at_s, 4))
+                              : result.interrupted ? fmt::format("INTERRUPTED at {} s", plain(o.simulated_s, 4))
+                                                   : "";
+    figure_file->write(figure.svg(scenario, figures, ended));
     figure_file->finish();
     result.files.push_back(fmt::format("figure: {}", request.figure));
   }

@@ -14,7 +14,7 @@ namespace slipbench {
 namespace {
 
 constexpr double width = 960, height = 600, left = 76, right = 936, speed_top = 104, speed_bottom = 352,
-                 error_top = 396, error_bottom = 546;
+                 error_top = 396, error_bottom = 546, legend_row = 18;
 constexpr std::size_t byte_budget = 150000, bytes_a_point = 11;
 
 struct Range {
@@ -134,7 +134,8 @@ void RunFigure::control_tick(const TickView& view) {
   }
 }
 
-std::string RunFigure::svg(const Scenario& scenario, const std::vector<EstimatorFigures>& figures) const {
+std::string RunFigure::svg(const Scenario& scenario, const std::vector<EstimatorFigures>& figures,
+                           const std::string& ended) const {
   Range speed, error;
   speed.take(truth_);
   speed.take(reference_);
@@ -158,12 +159,13 @@ std::string RunFigure::svg(const Scenario& scenario, const std::vector<Estimator
 
   const svg::Axis x{0.0, info_.duration_s, left, right};
   const svg::Ticks x_ticks = svg::ticks(0.0, info_.duration_s, 10);
-  std::string body =
-      svg::text(left, 32, scenario.title.empty() ? "Run" : scenario.title, {17, "start", svg::ink, true});
-  body += svg::text(
-      left, 52,
-      fmt::format("seed {}, scored from {} s to {} s", scenario.seed, plain(window_.from_s), plain(window_.to_s)),
-      {12, "start", svg::soft_ink});
+  const std::string title = scenario.title.empty() ? "Run" : scenario.title;
+  std::string head = svg::text(left, 32, svg::fitted(title, right - left, 17, true), {17, "start", svg::ink, true}),
+              body;
+  head += svg::text(left, 52,
+                    fmt::format("seed {}, scored from {} s to {} s{}", scenario.seed, plain(window_.from_s),
+                                plain(window_.to_s), ended.empty() ? "" : "; " + ended),
+                    {12, "start", svg::soft_ink});
   for (const double top : {speed_top, error_top}) {  // what is not scored lies under a grey wash
     const double bottom = top == speed_top ? speed_bottom : error_bottom;
     const double from = x.at(std::clamp(window_.from_s, 0.0, info_.duration_s)),
@@ -180,10 +182,13 @@ std::string RunFigure::svg(const Scenario& scenario, const std::vector<Estimator
   const Plane speed_plane{speed.low, speed.high, speed_top, speed_bottom},
       error_plane{error.low, error.high, error_top, error_bottom};
   const std::string reference = mean_line(reference_, speed_plane);
+  double free_from = left;  // names of load steps stand between the panels, where they hide nothing
   for (const double step : load_steps_s_) {
     if (step < 0.0 || step > info_.duration_s) continue;
     body += svg::line(x.at(step), speed_top, x.at(step), error_bottom, svg::soft_ink, 1.0, "1 3");
-    body += svg::text(x.at(step) + 4, speed_bottom - 6, "load step", {11, "start", svg::soft_ink});
+    if (x.at(step) < free_from || x.at(step) + 60.0 > right) continue;
+    body += svg::text(x.at(step) + 4, speed_bottom + 14, "load step", {11, "start", svg::soft_ink});
+    free_from = x.at(step) + 66.0;
   }
   body += "<g clip-path=\"url(#a)\">\n" + path(mean_line(truth_, speed_plane), svg::ink, 3.4, "") +
           path(reference, "#c8c8c8", 1.6, "5 3");
@@ -196,11 +201,13 @@ std::string RunFigure::svg(const Scenario& scenario, const std::vector<Estimator
     body += path(mean_line(errors_[i], error_plane), svg::colour(i), 1.4, svg::dash(i));
   body += "</g>\n";
 
-  double at = left;
+  double at = left, row = 72.0;  // the legend takes as many rows as it needs, and what follows moves down
   const auto legend = [&](std::string_view name, std::string_view stroke, double stroke_width,
                           std::string_view dashes) {
-    body += svg::line(at, 72, at + 26, 72, stroke, stroke_width, dashes) + svg::text(at + 32, 76, name, {12});
-    at += 32 + 7.4 * static_cast<double>(name.size()) + 22;
+    const double wide = 32.0 + svg::width_px(name, 12);
+    if (at > left && at + wide > right) at = left, row += legend_row;
+    head += svg::line(at, row, at + 26, row, stroke, stroke_width, dashes) + svg::text(at + 32, row + 4, name, {12});
+    at += wide + 22;
   };
   legend("true", svg::ink, 3.4, "");
   if (!reference.empty()) legend("reference", "#b4b4b4", 1.6, "5 3");
@@ -208,16 +215,20 @@ std::string RunFigure::svg(const Scenario& scenario, const std::vector<Estimator
     legend(info_.estimator_names[i], svg::colour(i), 2.4, svg::dash(i));
     if (i >= figures.size() || !figures[i].lost_at_s) continue;
     const double lost = x.at(*figures[i].lost_at_s);
+    const bool late = lost > 0.6 * right;  // no room to its right
     body += svg::line(lost, error_top, lost, error_bottom, svg::colour(i), 1.2, "3 2");
-    body += svg::text(lost + 4, error_top + 14 + 13 * static_cast<double>(i % 6), info_.estimator_names[i] + " lost",
-                      {11, "start", svg::colour(i)});
+    body += svg::text(lost + (late ? -4 : 4), error_top + 14 + 13 * static_cast<double>(i % 6),
+                      svg::fitted(info_.estimator_names[i], 300, 11) + " lost",
+                      {11, late ? "end" : "start", svg::colour(i)});
   }
   Range whole;
   for (const Envelope& e : errors_) whole.take(e);
   if (whole.low < error.low || whole.high > error.high) {
     body += svg::text(right, error_top - 9, "larger errors run off the scale", {11, "end", svg::soft_ink});
   }
-  return svg::document(width, height, scenario.title.empty() ? "slipbench run" : scenario.title, body);
+  const double down = row - 72.0;
+  if (down > 0.0) body = fmt::format("<g transform=\"translate(0,{})\">\n{}</g>\n", svg::px(down), body);
+  return svg::document(width, height + down, scenario.title.empty() ? "slipbench run" : scenario.title, head + body);
 }
 
 }  // namespace slipbench

@@ -19,7 +19,9 @@ class RunFigure : public RunObserver {
       : window_(window), load_steps_s_(std::move(load_steps_s)) {}
   void begin(const RunInfo& info) override;
   void control_tick(const TickView& view) override;
-  [[nodiscard]] std::string svg(const Scenario& scenario, const std::vector<EstimatorFigures>& figures) const;
+  // `ended` says why the run stopped early, "" if it did not.
+  [[nodiscard]] std::string svg(const Scenario& scenario, const std::vector<EstimatorFigures>& figures,
+                                const std::string& ended = "") const;
 
  private:
   ScoreWindow window_;

@@ -39,6 +39,22 @@ std::string px(double value) {
   return text == "-0" ? "0" : text;
 }
 
+double width_px(std::string_view words, double size, bool bold) {
+  const auto signs = std::count_if(words.begin(), words.end(),
+                                   [](char c) { return (static_cast<unsigned char>(c) & 0xC0u) != 0x80u; });
+  return (bold ? 0.67 : 0.62) * size * static_cast<double>(signs);  // mean of Latin text in the widest of our fonts
+}
+
+std::string fitted(std::string_view words, double room_px, double size, bool bold) {
+  if (width_px(words, size, bold) <= room_px) return std::string(words);
+  std::string kept(words);
+  while (!kept.empty() && width_px(kept, size, bold) + size > room_px) {
+    while (!kept.empty() && (static_cast<unsigned char>(kept.back()) & 0xC0u) == 0x80u) kept.pop_back();
+    if (!kept.empty()) kept.pop_back();
+  }
+  return kept + "…";
+}
+
 std::string document(double width, double height, const std::string& title, const std::string& body) {
   return fmt::format(
       "<?xml version=\"1.0\" encoding=\"UTF-8\"?>\n"

@@ -19,6 +19,9 @@ std::string_view dash(std::size_t n);
 
 std::string escaped(std::string_view text);
 std::string px(double value);  // one decimal, no trailing zero
+// Width of words, generously: no font is known here. `fitted` cuts words that would be wider, and says so by an ellipsis.
+double width_px(std::string_view words, double size, bool bold = false);
+std::string fitted(std::string_view words, double room_px, double size, bool bold = false);
 
 std::string document(double width, double height, const std::string& title, const std::string& body);
 struct TextStyle {

@@ -185,6 +185,18 @@ TEST_CASE("relations: machine", "[scenario][relations]") {
                 "750 rpm with 4 pole pairs"});
   broken(text, {"more power than the line gives", "rated_power_W = 4000.0", "rated_power_W = 40000.0",
                 "machine.rated_power_W", "VA"});
+  // A wrong unit is found while it makes another machine, not a slightly different one.
+  broken(text, {"millihenries", "stator_leakage_H = 0.0062", "stator_leakage_H = 6.2", "machine.stator_leakage_H",
+                "more than the magnetizing inductance, 0.172 H"});
+  broken(text, {"rotor's millihenries", "rotor_leakage_H = 0.0062", "rotor_leakage_H = 6.2", "machine.rotor_leakage_H",
+                "a leakage of 6.2 H"});
+  broken(text, {"kilowatts", "rated_power_W = 4000.0", "rated_power_W = 4.0", "machine.rated_power_W", "not kW"});
+  broken(text, {"rad/s for the speed", "rated_speed_rpm = 1440.0", "rated_speed_rpm = 150.8", "machine.rated_speed_rpm",
+                "less than half of synchronous speed, 1500 rpm"});
+  broken(text, {"rad/s for the frequency", "rated_frequency_Hz = 50.0", "rated_frequency_Hz = 314.2",
+                "machine.rated_speed_rpm", "9426 rpm with 2 pole pairs"});
+  broken(text, {"mN m", "rated_power_W = 4000.0", "rated_torque_Nm = 26500\nrated_power_W = 4000.0",
+                "machine.rated_torque_Nm", "26.53 N m"});
   CHECK(read(with(text, "stator_leakage_H = 0.0062", "stator_leakage_H = 0")).machine.stator_leakage_H == 0.0);
 }
 
@@ -202,7 +214,7 @@ TEST_CASE("relations: steep laws against the plant step", "[scenario][relations]
                 "shaft.viscous_friction_Nms", "at most 5000"});
   // Leg error: 560 V 2 us 10 kHz + 1 V = 12.2 V; over 10 us and sigma L_s = 12.09 mH: 10.1 mA.
   broken(text, {"zero-current width", "zero_current_width_A = 0.3", "zero_current_width_A = 0.0100",
-                "supply.zero_current_width_A", "from 0.0100"});
+                "supply.zero_current_width_A", "from 0.0101"});
   CHECK(read(with(text, "zero_current_width_A = 0.3", "zero_current_width_A = 0.0102")).supply.zero_current_width_A ==
         0.0102);
 }

@@ -105,8 +105,13 @@ TEST_CASE("estimator score: lost from the start of the first stretch that lasts 
   });
   CHECK(*twice.lost_at_s == Approx(0.601).epsilon(rounding));
   ScoreBasis windowed = basis();
-  windowed.window = {0.8, 1.0};  // loss of lock is watched over the whole run
-  CHECK(*with_speed_error(windowed, stretch(0.3, 0.4)).lost_at_s == Approx(0.3).epsilon(rounding));
+  windowed.window = {0.8, 1.0};  // what lies before the window does not count, nor its part of a stretch
+  CHECK_FALSE(with_speed_error(windowed, stretch(0.3, 0.4)).lost_at_s);
+  CHECK_FALSE(with_speed_error(windowed, stretch(0.7, 0.849)).lost_at_s);
+  CHECK(*with_speed_error(windowed, stretch(0.7, 0.850)).lost_at_s == Approx(0.8).epsilon(rounding));
+  windowed.window = {0.1, 0.2};  // but no number is no number
+  CHECK(*with_speed_error(windowed, [](double t) { return t > 0.4005 ? no_number : 0.0; }).lost_at_s ==
+        Approx(0.401).epsilon(rounding));
 }
 
 TEST_CASE("estimator score: settled from the first tick that stays in the band", "[score][closed_form]") {
