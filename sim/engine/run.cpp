@@ -5,7 +5,7 @@
 #include <cmath>
 #include <stdexcept>
 
-#include "plant/steady_state.hpp"
+#include "sim/engine/start.hpp"
 #include "sim/scenario/input_error.hpp"
 
 namespace slipbench {
@@ -17,23 +17,6 @@ constexpr double nan = std::numeric_limits<double>::quiet_NaN();
 constexpr std::int64_t ticks_between_questions = 4096;  // how often keep_going is asked
 
 std::int64_t whole(double quotient) { return std::llround(quotient); }
-
-// Speed at which the load takes the torque asked for under torque control; 0 is as good as any where nothing depends on it.
-double balancing_speed(const Plant& plant, double torque, double limit, const Scenario& s) {
-  double low = -limit, high = limit;
-  if (plant.load_at_start(low) > torque || plant.load_at_start(high) < torque) {
-    throw InputError(
-        s.path, "run.start",
-        "start = \"steady\": no speed within twice the rated one at which the load takes the first torque reference; "
-        "impose a speed or start from \"magnetised\"",
-        "steady");
-  }
-  for (int i = 0; i < 200; ++i) {
-    const double middle = 0.5 * (low + high);
-    (plant.load_at_start(middle) < torque ? low : high) = middle;
-  }
-  return 0.5 * (low + high);
-}
 
 }  // namespace
 
@@ -74,76 +57,20 @@ std::int64_t Run::closing_estimator(const std::string& name) const {
 
 void Run::place_at_start() {
   const Scenario& s = scenario_;
-  const Circuit<double> truth = plant_.circuit();
-  const double flux_reference = s.reference.rotor_flux_Wb;
-  EstimatorSetup e;
-  e.circuit = s.believed_circuit();
-  e.nameplate = s.machine.nameplate();
-  e.inertia_kgm2 = s.believed_inertia();
-  e.viscous_friction_Nms = s.shaft.viscous_friction_Nms;
-  e.control_period_s = s.run.control_period_s;
-  e.current_sensors = static_cast<int>(s.sensors.current_phases);
-  e.current_noise_A = sensors_.current_noise();
-  ControllerSetup c;
-  c.circuit = e.circuit;
-  c.nameplate = e.nameplate;
-  c.inertia_kgm2 = e.inertia_kgm2;
-  c.control_period_s = e.control_period_s;
-  c.delay_periods = static_cast<int>(s.controller.delay_periods);
-  c.modulation = modulation_;
-  c.inverter = {s.supply.dc_link_V * s.belief.dc_link, s.supply.dead_time_s * s.belief.dead_time,
-                s.supply.device_drop_V * s.belief.device_drop, s.supply.switching_frequency_Hz,
-                s.supply.zero_current_width_A};
-  c.compensate_dead_time = compensated_;
-  c.direct_orientation = s.controller.orientation == "direct";
-  c.speed_control = speed_control_;
-  c.sensorless = speed_from_ >= 0;
-  c.rotor_flux_reference_Wb = flux_reference;
-
+  const StartState start = start_state(s, plant_, first_tick_);
+  EstimatorSetup e = estimator_setup(s, sensors_.current_noise());
   duty_ = {0.5, 0.5, 0.5};
-  if (s.run.start == "magnetised" || s.run.start == "steady") {
-    SteadyState now;
-    if (s.on_mains()) {
-      const double w = 6.283185307179586477 * s.supply.frequency_Hz,
-                   peak = s.supply.line_voltage_V * 0.81649658092772603273;
-      const auto slip = stable_slip(truth, peak, w, [&](double speed) { return plant_.load_at_start(speed); });
-      if (!slip) {
-        throw InputError(s.path, "run.start",
-                         "start = \"steady\": the load is beyond the machine's pull-out torque on this supply; "
-                         "lower the load or raise supply.line_voltage_V",
-                         "steady");
-      }
-      now = steady_at_slip(truth, peak, w, *slip);
-    } else {
-      const bool steady = s.run.start == "steady";
-      plant_.set_state({}, steady ? speed_reference_.line_at(0.0).at(0.0) : 0.0);
-      double speed = plant_.speed(), torque = 0.0;  // an imposed speed wins over the reference
-      if (steady && speed_control_) torque = plant_.load_at_start(speed);
-      if (steady && !speed_control_) {
-        torque = torque_reference_.line_at(0.0).at(0.0);
-        const bool held =
-            std::any_of(s.loads.begin(), s.loads.end(), [](const auto& l) { return l.kind == "imposed_speed"; });
-        if (!held) speed = balancing_speed(plant_, torque, 2.0 * e.nameplate.speed_rad_s(), s);
-      }
-      const double electrical = fabs(truth.pole_pairs * speed);
-      const double weakened = flux_reference * min(1.0, e.nameplate.angular_frequency() / max(electrical, 1e-9));
-      now = steady_at_flux(truth, weakened, torque, truth.pole_pairs * speed);
-    }
-    // On mains the voltage has its phase at t = 0; a run-in begins that much earlier.
-    MachineFlux<double> flux = now.flux;
-    if (s.on_mains()) {
-      const double t = static_cast<double>(first_tick_) * s.run.control_period_s;
-      const SinCos<double> angle = sincos_turns(s.supply.frequency_Hz * t + s.supply.phase_deg / 360.0);
-      flux = {turn_forward(angle, flux.stator), turn_forward(angle, flux.rotor)};
-    }
-    plant_.set_state(flux, now.electrical_speed / truth.pole_pairs);
-    e.start_rotor_flux_Wb = c.start_rotor_flux_Wb = magnitude(now.flux.rotor);
+  if (start.excited) {
+    plant_.set_state(start.flux, start.speed);
+    e.start_rotor_flux_Wb = magnitude(start.flux.rotor);
     e.start_speed_rad_s = plant_.speed();
-    if (!s.on_mains()) duty_ = modulate(modulation_, now.voltage, plant_.dc_link());
+    if (!s.on_mains()) duty_ = modulate(modulation_, start.voltage, plant_.dc_link());
   }
   for (const auto& estimator : s.estimators)
     estimators_.push_back(make_estimator(estimator.kind, e, estimator.settings));
   if (!s.on_mains()) {
+    ControllerSetup c = controller_setup(s, modulation_, compensated_, speed_from_ >= 0);
+    c.start_rotor_flux_Wb = e.start_rotor_flux_Wb;
     try {
       controller_ = make_controller(s.controller.kind, c, s.controller.settings);
     } catch (const std::invalid_argument& unfit) {

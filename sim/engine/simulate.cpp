@@ -45,6 +45,8 @@ std::unique_ptr<Run> started(const Scenario& scenario, const RunOptions& options
 
 }  // namespace
 
+void check_start(const Scenario& scenario) { Run(scenario, {}, 0); }
+
 RunOutcome simulate(const Scenario& scenario, std::span<RunObserver* const> observers, const RunOptions& options) {
   demand_denormals();
   const auto run = started(scenario, options);

@@ -33,4 +33,7 @@ struct RunOutcome {
 // ends the run.
 RunOutcome simulate(const Scenario& scenario, std::span<RunObserver* const> observers, const RunOptions& options = {});
 
+// Sets the run up and goes no further: throws what simulate() would throw before its first tick, a run-in apart.
+void check_start(const Scenario& scenario);
+
 }  // namespace slipbench

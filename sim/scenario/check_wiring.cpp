@@ -133,6 +133,13 @@ void check_loads(const Scenario& s, const Node& root) {
                     " rpm, but the imposed speed begins with " + number_text(first) + " rpm");
     }
   }
+  const bool imposed =
+      std::any_of(s.loads.begin(), s.loads.end(), [](const auto& l) { return l.kind == "imposed_speed"; });
+  if (s.run.start == "magnetised" && s.run.initial_speed_rpm != 0.0 && !imposed) {
+    refuse_at(root, "run.initial_speed_rpm",
+              "'run.initial_speed_rpm' does not go with start = \"magnetised\", which is at rest; use \"standstill\" "
+              "or \"steady\"");
+  }
   if (s.run.start == "steady" && s.run.initial_speed_rpm != 0.0) {
     refuse_at(
         root, "run.initial_speed_rpm",

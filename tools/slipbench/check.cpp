@@ -4,6 +4,7 @@
 #include <cmath>
 
 #include "plant/steady_state.hpp"
+#include "sim/engine/simulate.hpp"
 #include "tools/slipbench/json_out.hpp"
 #include "tools/slipbench/table.hpp"
 #include "tools/slipbench/verbs.hpp"
@@ -97,6 +98,7 @@ int check_verb(const Request& request) {
   document.file = request.file;
   if (kind == FileKind::scenario) {
     const Scenario scenario = read_scenario(request.file, request.overrides, request.seed);
+    check_start(scenario);
     document.kind = "scenario";
     document.title = scenario.title;
     add_scenario_facts(document.facts, scenario);

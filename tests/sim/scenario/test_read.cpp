@@ -17,7 +17,7 @@ TEST_CASE("scenario: every key of the format arrives", "[scenario][read]") {
   CHECK(s.run.control_period_s == 100e-6);
   CHECK(s.run.trace_period_s == 1e-3);
   CHECK(s.run.method == "midpoint");
-  CHECK(s.run.start == "magnetised");
+  CHECK(s.run.start == "standstill");
   CHECK(s.run.initial_speed_rpm == 3.0);
   CHECK(s.machine.pole_pairs == 2);
   CHECK(s.machine.stator_resistance_ohm == 1.6);

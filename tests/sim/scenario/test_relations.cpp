@@ -155,7 +155,9 @@ TEST_CASE("relations: loads and start", "[scenario][relations]") {
                    "load.1.kind", "shaft equation is off"});
   broken(imposed, {"another initial speed", "trace_period_s = 1e-3", "trace_period_s = 1e-3\ninitial_speed_rpm = 5",
                    "run.initial_speed_rpm", "begins with 1400"});
-  broken(whole_text(), {"steady with a speed", "start = \"magnetised\"", "start = \"steady\"", "run.initial_speed_rpm",
+  broken(whole_text(), {"magnetised with a speed", "start = \"standstill\"", "start = \"magnetised\"",
+                        "run.initial_speed_rpm", "does not go with start"});
+  broken(whole_text(), {"steady with a speed", "start = \"standstill\"", "start = \"steady\"", "run.initial_speed_rpm",
                         "from the equilibrium"});
   broken(whole_text(),
          {"drift twice", "[score]", "[[drift]]\nquantity = \"rotor_resistance\"\nfactor = [[0, 1]]\n[score]",

@@ -21,7 +21,7 @@ plant_step_s = 10e-6
 control_period_s = 100e-6
 method = "midpoint"
 trace_period_s = 1e-3
-start = "magnetised"
+start = "standstill"
 initial_speed_rpm = 3
 
 [machine]
