@@ -1,0 +1,52 @@
+// The control tick of a run allocates nothing: every operator new of this program is counted between two ticks.
+#include <atomic>
+#include <catch2/catch.hpp>
+#include <cstdlib>
+#include <new>
+
+#include "sim/engine/simulate.hpp"
+#include "tests/published/sensorless_drive.hpp"
+
+namespace {
+std::atomic<std::int64_t> allocations{0};
+}
+
+[[gnu::noinline]] void* operator new(std::size_t size) {
+  ++allocations;
+  if (void* p = std::malloc(size == 0 ? 1 : size)) return p;
+  throw std::bad_alloc();
+}
+[[gnu::noinline]] void operator delete(void* p) noexcept { std::free(p); }
+[[gnu::noinline]] void operator delete(void* p, std::size_t) noexcept { std::free(p); }
+
+using namespace slipbench;
+using namespace slipbench::published;
+
+namespace {
+
+struct Counter : RunObserver {
+  std::int64_t at_first = 0, at_last = 0;
+  void control_tick(const TickView& v) override {
+    at_last = allocations.load();
+    if (v.tick == 1) at_first = at_last;
+  }
+};
+
+}  // namespace
+
+TEST_CASE("control tick: allocates nothing", "[engine]") {
+  // Everything at once: three estimators, noise, converters, filters, an encoder, drift, a profile, process noise, tracing.
+  Scenario s = inverter_drive(krause_3hp(), 0.6, 8.0, "measured");
+  s.run.duration_s = 0.2;
+  s.sensors.speed.kind = "encoder";
+  s.sensors.current.bandwidth_Hz = 5e3;
+  s.sensors.current.bits = 12;
+  s.sensors.current.range = 50.0;
+  s.process_noise = {0.5, 0.01, 1e-4};
+  s.drifts.push_back({"rotor_resistance", {{0.0, 1.0}, {0.1, 1.2}}});
+  Counter counter;
+  RunObserver* observer = &counter;
+  simulate(s, {&observer, 1});
+  CHECK(counter.at_first > 0);  // set-up does allocate, and is seen to
+  CHECK(counter.at_last == counter.at_first);
+}
