@@ -1,10 +1,11 @@
-// Published machines the estimators are tried on. Circuits per phase, star, rotor referred to the stator.
+// Published machines the estimators are tried on.
 #pragma once
 
 #include <array>
 #include <string_view>
 
 #include "estimators/method.hpp"
+#include "tests/published/circuits.hpp"
 
 namespace slipbench::tests {
 
@@ -15,25 +16,22 @@ struct PublishedMachine {
   double inertia;
 };
 
-// P.C. Krause, O. Wasynczuk, S.D. Sudhoff, "Analysis of Electric Machinery and Drive Systems", 2nd ed. 2002,
-// Table 4.10-1: 3 hp, 220 V, 60 Hz, 4 poles, 1710 rpm; reactances at 60 Hz. Torque here is power over speed.
+inline PublishedMachine machine(std::string_view name, const published::PublishedCircuit& c, const Nameplate& plate) {
+  return {name, c.circuit, plate, c.inertia};
+}
+// Ratings as printed; the torque of the 3 hp machine is power over speed, speed and current of the 5 hp one are at the slip
+// that gives its power.
 inline PublishedMachine krause_3hp() {
-  constexpr double w = 376.99111843077518862;
-  return {"Krause 3 hp", {2, 0.435, 0.816, 0.754 / w, 0.754 / w, 26.13 / w}, {2238, 220, 5.8, 60, 1710, 12.5}, 0.089};
+  return machine("Krause 3 hp", published::krause_3hp_circuit(), {2238, 220, 5.8, 60, 1710, 12.5});
 }
-// M. Barut, S. Bogosyan, M. Gokasan, IEEE Trans. Ind. Electron. 54(1), 2007, 272-280 (from memory).
 inline PublishedMachine barut_3kW() {
-  return {"Barut 3 kW", {2, 2.283, 2.133, 0.0111, 0.0111, 0.22}, {3000, 380, 6.9, 50, 1430, 20}, 0.0183};
+  return machine("Barut 3 kW", published::barut_3kw_circuit(), {3000, 380, 6.9, 50, 1430, 20});
 }
-// M. Hinkkanen, IEEE Trans. Ind. Electron. 51(5), 2004, 1049-1055 (from memory): inverse-gamma circuit.
 inline PublishedMachine hinkkanen_2kW() {
-  return {
-      "Hinkkanen 2.2 kW", from_inverse_gamma(2, 3.67, 1.65, 0.0209, 0.264), {2200, 400, 5.0, 50, 1430, 14.6}, 0.0155};
+  return machine("Hinkkanen 2.2 kW", published::hinkkanen_2kw_circuit(), {2200, 400, 5.0, 50, 1430, 14.6});
 }
-// R. Krishnan, "Electric Motor Drives: Modeling, Analysis, and Control", 2001, ch. 5 and 8 examples. Speed
-// and current at the circuit's slip for 5 hp are this file's.
 inline PublishedMachine krishnan_5hp() {
-  return {"Krishnan 5 hp", {2, 0.277, 0.183, 0.0015, 0.00226, 0.0538}, {3730, 200, 14, 60, 1760, 20.2}, 0.0165};
+  return machine("Krishnan 5 hp", published::krishnan_5hp_circuit(), {3730, 200, 14, 60, 1760, 20.2});
 }
 inline std::array<PublishedMachine, 4> published_machines() {
   return {krause_3hp(), barut_3kW(), hinkkanen_2kW(), krishnan_5hp()};

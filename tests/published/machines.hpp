@@ -1,11 +1,11 @@
-// Published machines as the tests use them; sources beside each.
+// Published machines on their rated supply, and a mains run of one; sources of the circuits in circuits.hpp.
 #pragma once
 
 #include <array>
 #include <string>
 
-#include "plant/parameters.hpp"
 #include "sim/scenario/scenario.hpp"
+#include "tests/published/circuits.hpp"
 
 namespace slipbench::published {
 
@@ -18,63 +18,29 @@ struct Published {
   double slip, current_rms, torque;
 };
 
-inline Circuit<double> from_reactances(double poles, double hz, double rs, double xls, double xm, double xlr,
-                                       double rr) {
-  const double w = 2.0 * 3.14159265358979323846 * hz;
-  return {poles / 2.0, rs, rr, xls / w, xlr / w, xm / w};
+inline Published published(const char* name, const PublishedCircuit& c, double line_voltage, double frequency,
+                           double speed_rpm, double slip, double current_rms, double torque) {
+  return {name, c.circuit, c.inertia, line_voltage, frequency, speed_rpm, slip, current_rms, torque};
 }
-
-// P.C. Krause, O. Wasynczuk, S.D. Sudhoff, "Analysis of Electric Machinery and Drive Systems", 2nd ed., 2002, Table 4.10-1
-// (table number from memory).
 inline Published krause_3hp() {
-  return {
-      "Krause 3 hp", from_reactances(4, 60, 0.435, 0.754, 26.13, 0.754, 0.816), 0.089, 220, 60, 1710, 0.05, 8.844811120,
-      14.026832328};
+  return published("Krause 3 hp", krause_3hp_circuit(), 220, 60, 1710, 0.05, 8.844811120, 14.026832328);
 }
 inline Published krause_50hp() {
-  return {"Krause 50 hp",
-          from_reactances(4, 60, 0.087, 0.302, 13.08, 0.302, 0.228),
-          1.662,
-          460,
-          60,
-          1705,
-          0.05277777777777778,
-          62.804314729,
-          234.640560612};
+  return published("Krause 50 hp", krause_50hp_circuit(), 460, 60, 1705, 0.05277777777777778, 62.804314729,
+                   234.640560612);
 }
 inline Published krause_500hp() {
-  return {"Krause 500 hp",
-          from_reactances(4, 60, 0.262, 1.206, 54.02, 1.206, 0.187),
-          11.06,
-          2300,
-          60,
-          1773,
-          0.015,
-          105.206151887,
-          1999.352257267};
+  return published("Krause 500 hp", krause_500hp_circuit(), 2300, 60, 1773, 0.015, 105.206151887, 1999.352257267);
 }
-// M. Barut, S. Bogosyan, M. Gokasan, IEEE Trans. Ind. Electron. 54(1), 2007, 272-280 (from memory): Ls = Lr = 0.2311, Lm = 0.22 H.
 inline Published barut_3kw() {
-  return {
-      "Barut 3 kW", {2.0, 2.283, 2.133, 0.0111, 0.0111, 0.22}, 0.0183, 380, 50, 1430, 0.04666666666666667, 5.368648641,
-      16.329373958};
+  return published("Barut 3 kW", barut_3kw_circuit(), 380, 50, 1430, 0.04666666666666667, 5.368648641, 16.329373958);
 }
-// M. Hinkkanen, IEEE Trans. Ind. Electron. 51(5), 2004, 1049-1055 (from memory): inverse-gamma circuit.
 inline Published hinkkanen_2kw() {
-  return {"Hinkkanen 2.2 kW",
-          from_inverse_gamma(2.0, 3.67, 1.65, 0.0209, 0.264),
-          0.0155,
-          400,
-          50,
-          1430,
-          0.04666666666666667,
-          5.959753287,
-          20.296154144};
+  return published("Hinkkanen 2.2 kW", hinkkanen_2kw_circuit(), 400, 50, 1430, 0.04666666666666667, 5.959753287,
+                   20.296154144);
 }
-// R. Krishnan, "Electric Motor Drives: Modeling, Analysis, and Control", 2001: Lm 0.0538, Ls 0.0553, Lr 0.05606 H.
 inline Published krishnan_5hp() {
-  return {"Krishnan 5 hp", {2.0, 0.277, 0.183, 0.0015, 0.00226, 0.0538}, 0.0165, 200, 60, 1746, 0.03, 18.697498471,
-          28.855130622};
+  return published("Krishnan 5 hp", krishnan_5hp_circuit(), 200, 60, 1746, 0.03, 18.697498471, 28.855130622);
 }
 inline std::array<Published, 4> four() { return {krause_3hp(), krause_50hp(), barut_3kw(), krishnan_5hp()}; }
 
