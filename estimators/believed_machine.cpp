@@ -1,18 +1,11 @@
 #include "estimators/believed_machine.hpp"
 
+#include "plant/steady_state.hpp"
+
 namespace slipbench {
 
 double nominal_rotor_flux(const EstimatorSetup& setup) {
-  // Inverse-gamma circuit at rated slip: psi_R carried by the phasor of the magnetising branch.
-  const InverseGamma<double> c = to_inverse_gamma(setup.circuit);
-  const double w = setup.nameplate.angular_frequency();
-  const double slip_w = w - setup.nameplate.speed_rad_s() * c.pole_pairs;
-  const double alpha = c.rotor_resistance / c.magnetizing_inductance;
-  // i = psi (1 + j slip_w / alpha) / L_M and u = R_s i + j w (L_sigma i + psi), so |psi| = |u| / |R_s i +
-  // ...| per unit psi.
-  const Vec2<double> i{1.0 / c.magnetizing_inductance, slip_w / (alpha * c.magnetizing_inductance)};
-  const Vec2<double> stator_flux = c.leakage * i + Vec2<double>{1.0, 0.0};
-  return setup.nameplate.phase_peak_V() / magnitude(c.stator_resistance * i + w * quarter_turn(stator_flux));
+  return to_inverse_gamma(setup.circuit).flux_ratio * rated_rotor_flux(setup.circuit, setup.nameplate);
 }
 
 BelievedMachine<double> believe(const EstimatorSetup& setup) {

@@ -51,6 +51,11 @@ std::optional<double> stable_slip(const Circuit<double>& c, double phase_peak_V,
   }
 }
 
+double rated_rotor_flux(const Circuit<double>& c, const Nameplate& plate) {
+  const double w = plate.angular_frequency(), slip = 1.0 - c.pole_pairs * plate.speed_rad_s() / w;
+  return magnitude(steady_at_slip(c, plate.phase_peak_V(), w, slip).flux.rotor);
+}
+
 SteadyState steady_at_flux(const Circuit<double>& c, double rotor_flux, double torque, double electrical_speed) {
   const double L_r = c.rotor_inductance(), L_m = c.magnetizing_inductance, L_s = c.stator_inductance();
   SteadyState s;

@@ -31,6 +31,9 @@ double pull_out_slip(const Circuit<double>& circuit, double stator_frequency);
 std::optional<double> stable_slip(const Circuit<double>& circuit, double phase_peak_V, double stator_frequency,
                                   const std::function<double(double)>& demand);
 
+// |psi_r| at rated voltage, frequency and speed, Wb.
+double rated_rotor_flux(const Circuit<double>& circuit, const Nameplate& nameplate);
+
 SteadyState steady_at_flux(const Circuit<double>& circuit, double rotor_flux, double torque, double electrical_speed);
 
 }  // namespace slipbench

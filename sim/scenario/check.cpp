@@ -3,6 +3,7 @@
 
 #include <cmath>
 
+#include "plant/steady_state.hpp"
 #include "sim/scenario/check_wiring.hpp"
 #include "sim/scenario/fill.hpp"
 

@@ -36,15 +36,5 @@ Circuit<double> Scenario::believed_circuit() const {
 
 // Steady state at stator frequency w and slip frequency w_s, from the rotor and stator voltage equations:
 //   v = psi_r [ (R_s + j w sigma L_s) (1 + j w_s tau_r) / L_m + j w L_m / L_r ]
-double rated_rotor_flux(const Circuit<double>& c, const Nameplate& plate) {
-  const double w = plate.angular_frequency();
-  const double w_slip = w - c.pole_pairs * plate.speed_rad_s();
-  const double L_r = c.rotor_inductance(), L_m = c.magnetizing_inductance;
-  const double x_leak = w * (c.stator_inductance() - L_m * L_m / L_r);  // w sigma L_s
-  const double turn = w_slip * L_r / c.rotor_resistance;                // w_s tau_r
-  const double re = (c.stator_resistance - x_leak * turn) / L_m;
-  const double im = (c.stator_resistance * turn + x_leak) / L_m + w * L_m / L_r;
-  return plate.phase_peak_V() / std::sqrt(re * re + im * im);
-}
 
 }  // namespace slipbench

@@ -142,7 +142,4 @@ struct Scenario {
   [[nodiscard]] double believed_inertia() const { return shaft.inertia_kgm2 * belief.inertia; }
 };
 
-// Peak rotor flux linkage |psi_r| of the circuit at rated voltage, frequency and speed, Wb.
-double rated_rotor_flux(const Circuit<double>& circuit, const Nameplate& nameplate);
-
 }  // namespace slipbench

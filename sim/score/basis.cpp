@@ -2,6 +2,7 @@
 
 #include <algorithm>
 
+#include "plant/steady_state.hpp"
 #include "sim/scenario/scenario.hpp"
 
 namespace slipbench {

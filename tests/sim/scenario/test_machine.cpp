@@ -4,6 +4,7 @@
 #include <filesystem>
 #include <fstream>
 
+#include "plant/steady_state.hpp"
 #include "tests/sim/scenario/texts.hpp"
 
 using namespace slipbench;
