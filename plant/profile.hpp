@@ -25,28 +25,31 @@ struct Line {
 
 class Profile {
  public:
-  Profile() = default;
+  Profile() : Profile({}, 1.0) {}
   // Knots (time s, value), times not descending; values are multiplied by `factor`. Empty: `empty_value` throughout.
-  Profile(std::vector<std::array<double, 2>> knots, double factor, double empty_value = 0.0)
-      : knots_(std::move(knots)) {
-    for (auto& knot : knots_) knot[1] *= factor;
-    if (knots_.empty()) knots_.push_back({0.0, empty_value});
+  Profile(const std::vector<std::array<double, 2>>& knots, double factor, double empty_value = 0.0) {
+    lines_.push_back({knots.empty() ? empty_value : factor * knots.front()[1], 0.0, 0.0});
+    for (std::size_t i = 0; i < knots.size(); ++i) {
+      const double value = factor * knots[i][1];
+      Line<double> line{value, 0.0, knots[i][0]};
+      if (i + 1 < knots.size() && knots[i + 1][0] > knots[i][0])
+        line.slope = (factor * knots[i + 1][1] - value) / (knots[i + 1][0] - knots[i][0]);
+      starts_.push_back(knots[i][0]);
+      lines_.push_back(line);
+    }
   }
 
   // The line that holds just after time t. Calls with rising t cost O(1).
-  Line<double> line_at(double t) {
-    while (next_ < knots_.size() && knots_[next_][0] <= t) ++next_;
-    while (next_ > 0 && knots_[next_ - 1][0] > t) --next_;
-    if (next_ == 0) return {knots_.front()[1], 0.0, 0.0};
-    const auto& from = knots_[next_ - 1];
-    if (next_ == knots_.size()) return {from[1], 0.0, 0.0};
-    const auto& to = knots_[next_];
-    return {from[1], (to[1] - from[1]) / (to[0] - from[0]), from[0]};
+  const Line<double>& line_at(double t) {
+    while (now_ < starts_.size() && starts_[now_] <= t) ++now_;
+    while (now_ > 0 && starts_[now_ - 1] > t) --now_;
+    return lines_[now_];
   }
 
  private:
-  std::vector<std::array<double, 2>> knots_;
-  std::size_t next_ = 0;  // first knot later than the last time asked for
+  std::vector<double> starts_;  // of lines_[1], lines_[2], ...; lines_[0] holds before the first knot
+  std::vector<Line<double>> lines_;
+  std::size_t now_ = 0;
 };
 
 }  // namespace slipbench
