@@ -59,31 +59,4 @@ inline Vec2<Real> select(const MaskOf<Real>& mask, const Vec2<Real>& yes, const 
 template <class Real, std::size_t N, std::size_t M>
 using Mat = std::array<std::array<Real, M>, N>;
 
-// C = A B; sums run over the inner index from 0 upwards.
-template <class Real, std::size_t N, std::size_t K, std::size_t M>
-inline Mat<Real, N, M> multiply(const Mat<Real, N, K>& a, const Mat<Real, K, M>& b) {
-  Mat<Real, N, M> c;
-  for (std::size_t i = 0; i < N; ++i) {
-    for (std::size_t j = 0; j < M; ++j) {
-      Real sum = a[i][0] * b[0][j];
-      for (std::size_t k = 1; k < K; ++k) sum = sum + a[i][k] * b[k][j];
-      c[i][j] = sum;
-    }
-  }
-  return c;
-}
-// C = A B'.
-template <class Real, std::size_t N, std::size_t K, std::size_t M>
-inline Mat<Real, N, M> multiply_transposed(const Mat<Real, N, K>& a, const Mat<Real, M, K>& b) {
-  Mat<Real, N, M> c;
-  for (std::size_t i = 0; i < N; ++i) {
-    for (std::size_t j = 0; j < M; ++j) {
-      Real sum = a[i][0] * b[j][0];
-      for (std::size_t k = 1; k < K; ++k) sum = sum + a[i][k] * b[j][k];
-      c[i][j] = sum;
-    }
-  }
-  return c;
-}
-
 }  // namespace slipbench

@@ -49,11 +49,9 @@ constexpr std::uint32_t hash_name(std::string_view name) {
 
 // Every channel there is. A new one is a new line: its samples hang on its name alone, not on its place here.
 // clang-format off
-inline constexpr std::array<std::string_view, 17> noise_channels = {
+inline constexpr std::array<std::string_view, 13> noise_channels = {
     "current_a", "current_b", "current_c", "voltage_a", "voltage_b", "voltage_c", "dc_link", "speed",
-    "process_load_torque", "process_current_alpha", "process_current_beta", "process_flux_alpha", "process_flux_beta",
-    // a filter's own model as the plant
-    "process_speed", "initial_state", "measurement_alpha", "measurement_beta"};
+    "process_load_torque", "process_current_alpha", "process_current_beta", "process_flux_alpha", "process_flux_beta"};
 // clang-format on
 
 template <std::size_t N>
@@ -119,12 +117,6 @@ class Noise {
   [[nodiscard]] double sample(NoiseChannel channel, std::int64_t tick) const {
     const NormalPair<double> both = pair(channel, tick >> 1);
     return (tick & 1) == 0 ? both.even : both.odd;
-  }
-
-  // Uniform in (0, 1], one a block; shares its bits with `sample`: draw one or the other from a channel, not both.
-  [[nodiscard]] constexpr double uniform(NoiseChannel channel, std::int64_t block) const {
-    const PhiloxBlock w = words(channel, block);
-    return uniform_from_words(w[0], w[1]);
   }
 
  private:

@@ -121,7 +121,8 @@ TEST_CASE("converter: the error is uniform over one lsb, rms lsb / sqrt 12", "[e
   std::array<int, bins> found{};
   double squares = 0.0, sum = 0.0;
   for (int i = 0; i < count; ++i) {
-    const double x = 18.0 * (noise.uniform(channel, i) - 0.5);  // +-9, within the range
+    const PhiloxBlock w = noise.words(channel, i);
+    const double x = 18.0 * (uniform_from_words(w[0], w[1]) - 0.5);  // +-9, within the range
     const double error = (convert(begin_analog(x), 0.0, adc).value - x) / adc.lsb;
     REQUIRE(std::fabs(error) <= 0.5 + 1e-9);  // rounding of x / lsb at 2^9 codes
     ++found[static_cast<std::size_t>(std::min(bins - 1, std::max(0, static_cast<int>((error + 0.5) * bins))))];

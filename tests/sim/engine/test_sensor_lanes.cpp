@@ -102,8 +102,9 @@ TEST_CASE("lanes: analog channel and normal transform give double's bits", "[eng
     Pack u1, u2, input;
     for (std::size_t lane = 0; lane < width; ++lane) {
       const auto tick = static_cast<std::int64_t>(width) * n + static_cast<std::int64_t>(lane);
-      u1.set(lane, noise.uniform(channel, tick));
-      u2.set(lane, noise.uniform(NoiseChannel("current_b"), tick));
+      const PhiloxBlock w = noise.words(channel, tick);
+      u1.set(lane, uniform_from_words(w[0], w[1]));
+      u2.set(lane, uniform_from_words(w[2], w[3]));
       input.set(lane, 9.0 * sincos(0.01 * static_cast<double>(n) + static_cast<double>(lane)).cos);
     }
     const Pack normal = normals_from_uniforms(u1, u2).even;
