@@ -96,7 +96,7 @@ int run_verb(const Request& request) {
     const std::string ended = o.diverged           ? fmt::format("DIVERGED at {} s", plain(o.diverged_at_s, 4))
                               : result.interrupted ? fmt::format("INTERRUPTED at {} s", plain(o.simulated_s, 4))
                                                    : "";
-    figure_file->write(figure.svg(scenario, figures, ended));
+    figure_file->write(figure.svg(scenario, figures, ended, o.events));
     figure_file->finish();
     result.files.push_back(fmt::format("figure: {}", request.figure));
   }
