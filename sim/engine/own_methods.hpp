@@ -1,10 +1,12 @@
 // Estimators and controllers of a program's own, beside those built in: from here on their kinds and settings are keys of
 // a scenario, with ranges, errors and --set like all others.
 //
-//   struct Mine { ... };                        // the shape: estimators/method.hpp; step<double> is what runs
+//   namespace slipbench::mine {   // inside slipbench: exp, atan2, select, max mean its own, not the C library's
+//   struct Mine { ... };          // the shape: estimators/method.hpp, controllers/control.hpp; step<double> is what runs
+//   }
 //   int main() {
-//     slipbench::add_estimator<Mine>();         // before the first scenario is read
-//     const slipbench::Scenario s = slipbench::read_scenario("drive.toml");   // kind = "mine" is known
+//     slipbench::add_estimator<slipbench::mine::Mine>();                      // before the first scenario is read
+//     const slipbench::Scenario s = slipbench::read_scenario("drive.toml");   // its kind is known here
 //   }
 //
 // Call these first thing in main, from one thread, before any scenario is read, checked or run: nothing is locked. After
