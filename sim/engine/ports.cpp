@@ -1,42 +1,25 @@
 #include "sim/engine/ports.hpp"
 
 #include <stdexcept>
+#include <utility>
+#include <vector>
 
 #include "controllers/methods.hpp"
 #include "estimators/methods.hpp"
+#include "sim/engine/method_ports.hpp"
 
 namespace slipbench {
 
 namespace {
 
-template <class Method>
-class BuiltInEstimator final : public EstimatorPort {
- public:
-  BuiltInEstimator(const EstimatorSetup& setup, const Settings& settings)
-      : constants_(Method::prepare(setup, settings)), state_(Method::begin(setup, constants_)) {}
-  // Whole in one function: the tick is made of many small ones.
-  [[gnu::flatten]] Estimate<double> step(const Sample<double>& sample) override {
-    return Method::template step<double>(state_, sample, constants_);
-  }
-
- private:
-  typename Method::template Constants<double> constants_;
-  typename Method::template State<double> state_;
+struct OwnMakers {
+  std::vector<std::pair<std::string_view, EstimatorMaker>> estimators;
+  std::vector<std::pair<std::string_view, ControllerMaker>> controllers;
 };
-
-template <class Method>
-class BuiltInController final : public ControllerPort {
- public:
-  BuiltInController(const ControllerSetup& setup, const Settings& settings)
-      : constants_(Method::prepare(setup, settings)), state_(Method::begin(setup, constants_)) {}
-  [[gnu::flatten]] Command<double> step(const Measurement<double>& m) override {
-    return Method::template step<double>(state_, m, constants_);
-  }
-
- private:
-  typename Method::template Constants<double> constants_;
-  typename Method::template State<double> state_;
-};
+OwnMakers& own_makers() {
+  static OwnMakers makers;
+  return makers;
+}
 
 }  // namespace
 
@@ -44,8 +27,11 @@ std::unique_ptr<EstimatorPort> make_estimator(const std::string& kind, const Est
                                               const Settings& settings) {
   std::unique_ptr<EstimatorPort> port;
   each_estimator_method([&]<class Method>() {
-    if (kind == Method::kind) port = std::make_unique<BuiltInEstimator<Method>>(setup, settings);
+    if (kind == Method::kind) port = std::make_unique<MethodEstimator<Method>>(setup, settings);
   });
+  for (const auto& [own, make] : own_makers().estimators) {
+    if (kind == own) port = make(setup, settings);
+  }
   if (!port) throw std::logic_error("no estimator of kind " + kind);
   return port;
 }
@@ -54,10 +40,20 @@ std::unique_ptr<ControllerPort> make_controller(const std::string& kind, const C
                                                 const Settings& settings) {
   std::unique_ptr<ControllerPort> port;
   each_controller_method([&]<class Method>() {
-    if (kind == Method::kind) port = std::make_unique<BuiltInController<Method>>(setup, settings);
+    if (kind == Method::kind) port = std::make_unique<MethodController<Method>>(setup, settings);
   });
+  for (const auto& [own, make] : own_makers().controllers) {
+    if (kind == own) port = make(setup, settings);
+  }
   if (!port) throw std::logic_error("no controller of kind " + kind);
   return port;
+}
+
+void add_estimator_maker(std::string_view kind, EstimatorMaker make) {
+  own_makers().estimators.emplace_back(kind, make);
+}
+void add_controller_maker(std::string_view kind, ControllerMaker make) {
+  own_makers().controllers.emplace_back(kind, make);
 }
 
 }  // namespace slipbench

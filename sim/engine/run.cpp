@@ -67,8 +67,14 @@ void Run::place_at_start() {
     e.start_speed_rad_s = plant_.speed();
     if (!s.on_mains()) duty_ = modulate(modulation_, start.voltage, plant_.dc_link());
   }
-  for (const auto& estimator : s.estimators)
-    estimators_.push_back(make_estimator(estimator.kind, e, estimator.settings));
+  for (const auto& estimator : s.estimators) {
+    try {
+      estimators_.push_back(make_estimator(estimator.kind, e, estimator.settings));
+    } catch (const std::invalid_argument& unfit) {
+      const std::string what = "estimator '" + estimator.name + "' cannot be set up: " + unfit.what();
+      throw InputError(s.path, "estimator." + std::to_string(estimators_.size()), what, "estimator");
+    }
+  }
   if (!s.on_mains()) {
     ControllerSetup c = controller_setup(s, modulation_, compensated_, speed_from_ >= 0);
     c.start_rotor_flux_Wb = e.start_rotor_flux_Wb;

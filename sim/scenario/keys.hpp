@@ -8,6 +8,7 @@
 #include <array>
 #include <cstdint>
 #include <optional>
+#include <span>
 #include <string>
 #include <string_view>
 #include <variant>
@@ -78,8 +79,13 @@ void plant_keys(std::vector<Key>& keys);
 void drive_keys(std::vector<Key>& keys);
 // Rows of the methods' own settings, one a method and setting, and the kinds there are.
 std::vector<Key> method_keys();
-const std::vector<std::string_view>& estimator_kinds();
-const std::vector<std::string_view>& controller_kinds();
+std::vector<std::string_view> estimator_kinds();
+std::vector<std::string_view> controller_kinds();
+// A kind beside those built in (sim/engine/own_methods.hpp is the door); `kind` and `settings` must outlive the program's
+// last scenario. Not while another thread adds or reads. Throws std::logic_error once the table is built, for a kind that
+// is there already, and for settings that cannot be told from other keys.
+void add_estimator_keys(std::string_view kind, std::span<const Setting> settings);
+void add_controller_keys(std::string_view kind, std::span<const Setting> settings);
 
 // "load.0.torque_Nm" -> row path "load[].torque_Nm" and index 0.
 struct KeyPath {
