@@ -1,0 +1,272 @@
+#include "sim/sweep/store.hpp"
+
+#include <sqlite3.h>
+
+#include <cerrno>
+#include <cstring>
+#include <sstream>
+
+#include "sim/scenario/input_error.hpp"
+#include "sim/scenario/tree.hpp"
+
+namespace slipbench {
+
+namespace {
+
+constexpr int fixed = 4;  // "case", run, status, message
+
+std::string quoted(const std::string& name) {
+  std::string out = "\"";
+  for (const char c : name) out += c == '"' ? std::string("\"\"") : std::string(1, c);
+  return out + "\"";
+}
+
+// Finalises when it leaves.
+struct Statement {
+  explicit Statement(sqlite3_stmt* s) : at(s) {}
+  ~Statement() { sqlite3_finalize(at); }
+  Statement(const Statement&) = delete;
+  Statement& operator=(const Statement&) = delete;
+  sqlite3_stmt* at;
+};
+
+std::string text_at(sqlite3_stmt* s, int column) {
+  const auto* text = reinterpret_cast<const char*>(sqlite3_column_text(s, column));
+  return text == nullptr ? std::string() : std::string(text, static_cast<std::size_t>(sqlite3_column_bytes(s, column)));
+}
+
+// A number in the shortest text that reads back the same: SQLite's own text of it has fifteen digits.
+std::string value_at(sqlite3_stmt* s, int column) {
+  const int type = sqlite3_column_type(s, column);
+  return type == SQLITE_FLOAT || type == SQLITE_INTEGER ? number_text(sqlite3_column_double(s, column)) : text_at(s, column);
+}
+
+void bind_text(sqlite3_stmt* s, int column, const std::string& text) {
+  sqlite3_bind_text(s, column, text.data(), static_cast<int>(text.size()), SQLITE_TRANSIENT);
+}
+
+// The first line in which two texts differ, for the eye.
+std::string first_difference(const std::string& was, const std::string& is) {
+  std::istringstream a(was), b(is);
+  std::string x, y;
+  for (int line = 1;; ++line) {
+    const bool more_x = static_cast<bool>(std::getline(a, x)), more_y = static_cast<bool>(std::getline(b, y));
+    if (!more_x && !more_y) return "";
+    if (x == y && more_x == more_y) continue;
+    const auto shown = [](bool more, const std::string& text) {
+      return more ? "'" + text.substr(0, 80) + "'" : "nothing";
+    };
+    return "line " + std::to_string(line) + " was " + shown(more_x, x) + ", is " + shown(more_y, y);
+  }
+}
+
+}  // namespace
+
+Store::Store(const std::string& path, const Origin& origin, const StoreColumns& columns)
+    : path_(path), origin_(origin), columns_(columns) {
+  open(true);
+  try {
+    execute("PRAGMA journal_mode = WAL; PRAGMA synchronous = NORMAL; PRAGMA locking_mode = EXCLUSIVE;");
+    // An empty file is a store that was killed before its tables stood.
+    const Statement tables(prepare("SELECT count(*) FROM sqlite_master WHERE name IN ('about', 'result')"));
+    if (sqlite3_step(tables.at) != SQLITE_ROW) fail(sqlite3_errcode(db_));
+    if (sqlite3_column_int(tables.at, 0) == 0) {
+      make();
+    } else {
+      read_origin();
+      demand_same(origin);
+    }
+    std::string marks = "?";
+    for (std::size_t i = 1; i < fixed + columns.keys.size() + columns.figures.size(); ++i) marks += ",?";
+    insert_ = prepare("INSERT OR REPLACE INTO result VALUES (" + marks + ")");
+    count_ = prepare("SELECT count(*) FROM result WHERE run = ? AND \"case\" >= ? AND \"case\" < ?");
+  } catch (...) {
+    sqlite3_finalize(insert_);
+    sqlite3_close(db_);
+    throw;
+  }
+}
+
+Store::Store(const std::string& path) : path_(path) {
+  open(false);
+  try {
+    read_origin();
+    count_ = prepare("SELECT count(*) FROM result WHERE run = ? AND \"case\" >= ? AND \"case\" < ?");
+  } catch (...) {
+    sqlite3_close(db_);
+    throw;
+  }
+}
+
+Store::~Store() {
+  sqlite3_finalize(insert_);
+  sqlite3_finalize(count_);
+  sqlite3_close(db_);
+}
+
+void Store::open(bool writable) {
+  const int flags = writable ? SQLITE_OPEN_READWRITE | SQLITE_OPEN_CREATE : SQLITE_OPEN_READONLY;
+  const int code = sqlite3_open_v2(path_.c_str(), &db_, flags, nullptr);
+  if (code == SQLITE_OK) return;
+  const std::string why = db_ != nullptr && sqlite3_system_errno(db_) != 0 ? std::strerror(sqlite3_system_errno(db_))
+                                                                           : sqlite3_errstr(code);
+  sqlite3_close(db_);
+  db_ = nullptr;
+  throw OutsideError("cannot open the store '" + path_ + "': " + why);
+}
+
+void Store::make() {
+  std::string sql =
+      "BEGIN; CREATE TABLE about (item TEXT PRIMARY KEY, content TEXT NOT NULL) WITHOUT ROWID;"
+      "CREATE TABLE result (\"case\" INTEGER NOT NULL, run INTEGER NOT NULL, status TEXT NOT NULL, message TEXT";
+  for (const std::string& key : columns_.keys) sql += ", " + quoted(key);  // as it comes: a number or a text
+  for (const std::string& figure : columns_.figures) sql += ", " + quoted(figure) + " REAL";
+  execute(sql + ", PRIMARY KEY (\"case\", run)) WITHOUT ROWID;");
+  const Statement add(prepare("INSERT INTO about VALUES (?, ?)"));
+  for (const auto& [item, content] : origin_) {
+    bind_text(add.at, 1, item);
+    bind_text(add.at, 2, content);
+    if (sqlite3_step(add.at) != SQLITE_DONE) fail(sqlite3_errcode(db_));
+    sqlite3_reset(add.at);
+  }
+  execute("COMMIT");
+}
+
+void Store::read_origin() {
+  origin_.clear();
+  columns_ = {};
+  const Statement about(prepare("SELECT item, content FROM about"));
+  while (sqlite3_step(about.at) == SQLITE_ROW) origin_.emplace_back(text_at(about.at, 0), text_at(about.at, 1));
+  const Statement columns(prepare("SELECT name, type FROM pragma_table_info('result') ORDER BY cid"));
+  for (int i = 0; sqlite3_step(columns.at) == SQLITE_ROW; ++i) {
+    if (i < fixed) continue;
+    (text_at(columns.at, 1) == "REAL" ? columns_.figures : columns_.keys).push_back(text_at(columns.at, 0));
+  }
+  if (origin_.empty()) throw InputError(path_, "", "this SQLite file is no store of a sweep", "store");
+}
+
+void Store::demand_same(const Origin& wanted) const {
+  const auto content = [](const Origin& origin, const std::string& item) -> const std::string* {
+    for (const auto& [name, text] : origin) {
+      if (name == item) return &text;
+    }
+    return nullptr;
+  };
+  for (const auto& [item, is] : wanted) {
+    const std::string* was = content(origin_, item);
+    if (was != nullptr && *was == is) continue;
+    throw InputError(path_, item,
+                     "the store was made from another " + item + " (" +
+                         first_difference(was == nullptr ? "" : *was, is) +
+                         "); go on with what it was made from, or name another --store",
+                     "store");
+  }
+}
+
+void Store::write(const std::vector<ResultRow>& batch) {
+  if (batch.empty()) return;
+  execute("BEGIN IMMEDIATE");
+  for (const ResultRow& row : batch) {
+    int at = 1;
+    sqlite3_bind_int64(insert_, at++, static_cast<sqlite3_int64>(row.case_number));
+    sqlite3_bind_int64(insert_, at++, row.run);
+    bind_text(insert_, at++, row.status);
+    if (row.message.empty())
+      sqlite3_bind_null(insert_, at++);
+    else
+      bind_text(insert_, at++, row.message);
+    for (const std::string& value : row.values) {
+      char* end = nullptr;
+      errno = 0;
+      const double number = std::strtod(value.c_str(), &end);
+      if (!value.empty() && end == value.c_str() + value.size() && errno == 0)
+        sqlite3_bind_double(insert_, at++, number);
+      else
+        bind_text(insert_, at++, value);
+    }
+    for (const Figure& figure : row.figures) {
+      if (figure)
+        sqlite3_bind_double(insert_, at++, *figure);
+      else
+        sqlite3_bind_null(insert_, at++);
+    }
+    const int code = sqlite3_step(insert_);
+    sqlite3_reset(insert_);
+    if (code != SQLITE_DONE) {
+      const int why = sqlite3_extended_errcode(db_);
+      sqlite3_exec(db_, "ROLLBACK", nullptr, nullptr, nullptr);
+      fail(why);
+    }
+  }
+  if (sqlite3_exec(db_, "COMMIT", nullptr, nullptr, nullptr) != SQLITE_OK) {
+    const int why = sqlite3_extended_errcode(db_);
+    sqlite3_exec(db_, "ROLLBACK", nullptr, nullptr, nullptr);
+    fail(why);
+  }
+}
+
+std::uint64_t Store::rows() const {
+  const Statement all(prepare("SELECT count(*) FROM result"));
+  if (sqlite3_step(all.at) != SQLITE_ROW) fail(sqlite3_errcode(db_));
+  return static_cast<std::uint64_t>(sqlite3_column_int64(all.at, 0));
+}
+
+std::uint64_t Store::rows_between(std::uint32_t run, std::uint64_t first, std::uint64_t last) const {
+  sqlite3_bind_int64(count_, 1, run);
+  sqlite3_bind_int64(count_, 2, static_cast<sqlite3_int64>(first));
+  sqlite3_bind_int64(count_, 3, static_cast<sqlite3_int64>(last));
+  const bool good = sqlite3_step(count_) == SQLITE_ROW;
+  const auto rows = static_cast<std::uint64_t>(sqlite3_column_int64(count_, 0));
+  sqlite3_reset(count_);
+  if (!good) fail(sqlite3_errcode(db_));
+  return rows;
+}
+
+void Store::each_row(const std::function<bool(const ResultRow&)>& visit) const {
+  const Statement all(prepare("SELECT * FROM result ORDER BY \"case\", run"));
+  ResultRow row;
+  int code = SQLITE_ROW;
+  while ((code = sqlite3_step(all.at)) == SQLITE_ROW) {
+    row.case_number = static_cast<std::uint64_t>(sqlite3_column_int64(all.at, 0));
+    row.run = static_cast<std::uint32_t>(sqlite3_column_int64(all.at, 1));
+    row.status = text_at(all.at, 2);
+    row.message = text_at(all.at, 3);
+    row.values.clear();
+    row.figures.clear();
+    int at = fixed;
+    for (std::size_t i = 0; i < columns_.keys.size(); ++i) row.values.push_back(value_at(all.at, at++));
+    for (std::size_t i = 0; i < columns_.figures.size(); ++i, ++at) {
+      row.figures.push_back(sqlite3_column_type(all.at, at) == SQLITE_NULL ? Figure()
+                                                                           : Figure(sqlite3_column_double(all.at, at)));
+    }
+    if (!visit(row)) return;
+  }
+  if (code != SQLITE_DONE) fail(code);
+}
+
+sqlite3_stmt* Store::prepare(const std::string& sql) const {
+  sqlite3_stmt* statement = nullptr;
+  const int code = sqlite3_prepare_v2(db_, sql.c_str(), -1, &statement, nullptr);
+  if (code != SQLITE_OK) fail(code);
+  return statement;
+}
+
+void Store::execute(const std::string& sql) const {
+  const int code = sqlite3_exec(db_, sql.c_str(), nullptr, nullptr, nullptr);
+  if (code != SQLITE_OK) fail(code);
+}
+
+void Store::fail(int code) const {
+  if ((code & 0xff) == SQLITE_NOTADB)
+    throw InputError(path_, "", "this is no store of a sweep (no SQLite file)", "store");
+  if ((code & 0xff) == SQLITE_BUSY)
+    throw OutsideError("the store '" + path_ + "' is in use by another process; wait for it, or name another --store");
+  const int system = sqlite3_system_errno(db_);
+  const bool full = (code & 0xff) == SQLITE_FULL;
+  throw OutsideError("cannot write to the store '" + path_ + "': " +
+                     (full          ? "the disk is full; make room, and the same command goes on where it stopped"
+                      : system != 0 ? std::strerror(system)
+                                    : sqlite3_errmsg(db_)));
+}
+
+}  // namespace slipbench
