@@ -11,7 +11,7 @@ set(CPACK_DEBIAN_PACKAGE_SECTION electronics)
 set(CPACK_DEBIAN_PACKAGE_SHLIBDEPS ON)
 set(CPACK_DEBIAN_PACKAGE_CONTROL_STRICT_PERMISSION ON)
 # For those who link the libraries, which stand in the same package; the command needs none of it.
-set(CPACK_DEBIAN_PACKAGE_SUGGESTS "g++, cmake, libboost-dev, cppzmq-dev")
+set(CPACK_DEBIAN_PACKAGE_SUGGESTS "g++, cmake, libboost-dev, cppzmq-dev, libhdf5-dev")
 set(CPACK_PACKAGE_DESCRIPTION_SUMMARY "bench for speed and flux estimators of induction-motor drives")
 set(CPACK_DEBIAN_PACKAGE_DESCRIPTION "Simulates an induction-motor drive from a scenario file (machine, inverter, shaft, load, sensors,
 control), lets speed and flux estimators ride along or close the loop, and
