@@ -28,7 +28,8 @@ Run::Run(const Scenario& s, const RunOptions& options, std::int64_t first_tick)
       steps_per_trace_(whole(s.run.trace_period_s / s.run.plant_step_s)),
       steps_(whole(s.run.duration_s / s.run.trace_period_s) * steps_per_trace_),
       plant_(s, options.noise_run),
-      sensors_(s, options.noise_run) {
+      sensors_(s, options.noise_run),
+      events_(s) {
   speed_control_ = !s.reference.speed_rpm.empty();
   speed_reference_ = Profile(s.reference.speed_rpm, rad_s_per_rpm);
   torque_reference_ = Profile(s.reference.torque_Nm, 1.0);
@@ -140,8 +141,23 @@ void Run::run_estimators(std::int64_t k) {
   }
 }
 
+void Run::act(const Event& event) {
+  switch (event.kind) {
+    case Event::Kind::speed_sensor:
+      sensors_.set_speed_fault(event.fault, plant_);
+      break;
+    case Event::Kind::current_sensor:
+      sensors_.set_current_fault(event.phase, event.fault);
+      break;
+    case Event::Kind::speed_from:
+      speed_from_ = closing_estimator(event.estimator);
+      break;
+  }
+}
+
 void Run::control_tick(std::int64_t k) {
   plant_.disturb(k);
+  while (const Event* event = events_.due(k)) act(*event);
   run_estimators(k);
   if (!controller_) return;
   const double t = static_cast<double>(std::max<std::int64_t>(k, 0)) * scenario_.run.control_period_s;
@@ -279,6 +295,7 @@ void Run::go(std::span<RunObserver* const> observers) {
   }
   outcome.simulated_s = static_cast<double>(n) * scenario_.run.plant_step_s;
   outcome.clipped_samples = sensors_.clipped();
+  outcome.events = events_.acted();
   outcome.step_ns.assign(step_seconds_.size(), 0.0);
   for (std::size_t i = 0; i < step_seconds_.size(); ++i) {
     outcome.step_ns[i] = timed_ticks_ > 0 ? step_seconds_[i] / static_cast<double>(timed_ticks_) * 1e9 : nan;

@@ -8,6 +8,7 @@
 #include <memory>
 #include <vector>
 
+#include "sim/engine/events.hpp"
 #include "sim/engine/plant.hpp"
 #include "sim/engine/ports.hpp"
 #include "sim/engine/sensors.hpp"
@@ -31,6 +32,7 @@ class Run {
  private:
   void place_at_start();
   void control_tick(std::int64_t k);
+  void act(const Event& event);
   void run_estimators(std::int64_t k);
   void plant_steps(std::int64_t n, std::int64_t count);
   [[nodiscard]] Vec2<double> believed_voltage(const Reading& before, const Reading& now, std::int64_t k) const;
@@ -43,6 +45,7 @@ class Run {
   std::int64_t first_tick_, steps_per_control_, steps_per_trace_, steps_;
   Plant plant_;
   Sensors sensors_;
+  Events events_;
   std::vector<std::unique_ptr<EstimatorPort>> estimators_;
   std::unique_ptr<ControllerPort> controller_;
   std::vector<Estimate<double>> estimates_;

@@ -84,14 +84,19 @@ void Sensors::settle(Three& channels, const Phases<double>& x) {
 void Sensors::filter(Three& channels, const Phases<double>& x) {
   if (!channels.front().filtered) return;
   const std::array<double, 3> inputs{x.a, x.b, x.c};
-  for (std::size_t i = 0; i < channels.size(); ++i) filter_step(channels[i].state, inputs[i], channels[i].sensor);
+  for (std::size_t i = 0; i < channels.size(); ++i) {
+    const double input = channels[i].fault == Fault::no_signal ? 0.0 : inputs[i];
+    filter_step(channels[i].state, input, channels[i].sensor);
+  }
 }
 
 double Sensors::convert_one(Channel& channel, double input, std::int64_t tick) {
-  if (!channel.filtered) channel.state.filtered = input;
+  if (channel.fault == Fault::stuck) return channel.last;
+  if (!channel.filtered) channel.state.filtered = channel.fault == Fault::no_signal ? 0.0 : input;
   const double normal = tick >= 0 && channel.sensor.noise_rms > 0.0 ? channel.noise.at(noise_, tick) : 0.0;
   const AnalogReading<double> reading = convert(channel.state, normal, channel.sensor);
   if (tick >= 0 && reading.clipped != 0.0) ++clipped_;
+  channel.last = reading.value;
   return reading.value;
 }
 
@@ -113,9 +118,20 @@ void Sensors::follow(const Plant& plant, std::int64_t step) {
   if (has_voltage_ && voltage_.front().filtered) filter(voltage_, phases_of(plant.voltage_at(step)));
   if (has_dc_link_) filter(dc_link_, {plant.dc_link(), 0.0, 0.0});
   if (has_speed_) {
-    advance(speed_state_, angle_before_, plant.angle(), plant.speed(), step - 1, speed_, timing_);
-    angle_before_ = plant.angle();
+    if (speed_fault_ == Fault::no_signal && timing_.kind == SpeedSensorKind::encoder) return;
+    const double angle = plant.angle() - angle_unseen_;
+    advance(speed_state_, angle_before_, angle, plant.speed(), step - 1, speed_, timing_);
+    angle_before_ = angle;
   }
+}
+
+void Sensors::set_speed_fault(Fault fault, const Plant& plant) {
+  if (speed_fault_ == Fault::no_signal && fault != Fault::no_signal && timing_.kind == SpeedSensorKind::encoder) {
+    const double per_rad = speed_.encoder.edges_per_rad;
+    angle_unseen_ += floor((plant.angle() - angle_unseen_ - angle_before_) * per_rad) / per_rad;
+    angle_before_ = plant.angle() - angle_unseen_;
+  }
+  speed_fault_ = fault;
 }
 
 const Reading& Sensors::read(const Plant& plant, std::int64_t tick) {
@@ -140,7 +156,11 @@ const Reading& Sensors::read(const Plant& plant, std::int64_t tick) {
   reading_.dc_link = has_dc_link_ ? convert_one(dc_link_[0], plant.dc_link(), tick) : believed_dc_link_;
   if (!mains_) values_[at++] = reading_.dc_link;
   const bool noisy = timing_.kind == SpeedSensorKind::tachogenerator && tick >= 0;
-  reading_.speed = read_speed(speed_state_, tick, noisy ? speed_noise_.at(noise_, tick) : 0.0, speed_, timing_);
+  const double speed = read_speed(speed_state_, tick, noisy ? speed_noise_.at(noise_, tick) : 0.0, speed_, timing_);
+  if (speed_fault_ == Fault::no_signal && timing_.kind != SpeedSensorKind::encoder)
+    reading_.speed = 0.0;
+  else if (speed_fault_ != Fault::stuck)
+    reading_.speed = speed;
   if (has_speed_) values_[at++] = reading_.speed / rad_s_per_rpm;
   return reading_;
 }

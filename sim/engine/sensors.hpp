@@ -1,4 +1,10 @@
 // All sensors of a scenario: what the control electronics knows of the drive at each control tick.
+//
+// A sensor may fail and be repaired under way:
+//   no signal  current: its channel sees 0, so it reads offset and noise, still quantised; encoder: no edges arrive, and the
+//              evaluation goes to 0 by its own rules (encoder.hpp); ideal sensor and tachogenerator read 0
+//   stuck      the last reading stays
+// A repaired encoder counts on from the edges it has seen: those that passed meanwhile are lost.
 #pragma once
 
 #include <cstdint>
@@ -6,6 +12,7 @@
 #include <vector>
 
 #include "sim/engine/analog_sensor.hpp"
+#include "sim/engine/events.hpp"
 #include "sim/engine/noise.hpp"
 #include "sim/engine/plant.hpp"
 #include "sim/engine/speed_sensor.hpp"
@@ -33,6 +40,10 @@ class Sensors {
   // The sample at control tick `tick`; noise only from tick 0 on.
   const Reading& read(const Plant& plant, std::int64_t tick);
 
+  // From the next reading on.
+  void set_speed_fault(Fault fault, const Plant& plant);
+  void set_current_fault(std::size_t phase, Fault fault) { current_[phase].fault = fault; }
+
   [[nodiscard]] std::vector<Column> columns() const;
   [[nodiscard]] std::span<const double> values() const { return values_; }
   [[nodiscard]] std::int64_t clipped() const { return clipped_; }
@@ -44,6 +55,8 @@ class Sensors {
     AnalogState<double> state;
     NoiseStream noise;
     bool filtered;
+    Fault fault = Fault::none;
+    double last = 0.0;  // reading
   };
   using Three = std::vector<Channel>;
 
@@ -57,7 +70,10 @@ class Sensors {
   bool mains_, two_currents_, has_voltage_, has_dc_link_, has_speed_;
   bool tracks_ = false;  // some sensor has a memory between control ticks
   std::int64_t steps_per_tick_;
-  double believed_dc_link_ = 0.0, current_noise_ = 0.0, angle_before_ = 0.0;
+  double believed_dc_link_ = 0.0, current_noise_ = 0.0;
+  double angle_before_ = 0.0;  // of the shaft as the encoder counts it, rad
+  double angle_unseen_ = 0.0;  // turned while the encoder gave no edges: a whole number of them
+  Fault speed_fault_ = Fault::none;
   Three current_, voltage_, dc_link_;
   SpeedSensorTiming timing_;
   SpeedSensor<double> speed_;

@@ -8,6 +8,7 @@
 #include <string>
 #include <vector>
 
+#include "sim/engine/events.hpp"
 #include "sim/engine/observer.hpp"
 #include "sim/scenario/scenario.hpp"
 
@@ -25,6 +26,7 @@ struct RunOutcome {
   std::string diverged_what;  // "stator flux of the plant", "estimate of 'ekf', which closes the loop", ...
   double simulated_s = 0.0, wall_s = 0.0;  // wall_s leaves start-up out
   std::int64_t clipped_samples = 0;        // ADC readings at the end of their range
+  std::vector<ActedEvent> events;          // that acted, in order
   std::vector<double> step_ns;             // mean wall time of each estimator's step, in file order
 };
 

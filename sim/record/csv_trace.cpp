@@ -18,16 +18,9 @@ void append_number(std::string& text, double number) {
 
 void CsvTrace::begin(const RunInfo& info) {
   line_.clear();
-  columns_ = 0;
-  const auto add = [&](const std::vector<Column>& columns) {
-    for (const Column& column : columns) {
-      if (columns_++ > 0) line_ += ',';
-      line_ += column.name;
-    }
-  };
-  add(info.plant);
-  add(info.measured);
-  for (const std::string& name : info.estimator_names) add(estimator_columns(name));
+  const std::vector<Column> columns = trace_columns(info);
+  columns_ = columns.size();
+  for (const Column& column : columns) line_ += (line_.empty() ? "" : ",") + column.name;
   line_ += '\n';
   file_.write(line_);
 }

@@ -4,30 +4,26 @@
 
 #include <string>
 
-#include "sim/engine/observer.hpp"
 #include "sim/record/out_file.hpp"
+#include "sim/record/trace.hpp"
 
 namespace slipbench {
 
 // Appends the shortest text that reads back the same number; "nan", "inf", "-inf" for the rest.
 void append_number(std::string& text, double number);
 
-class CsvTrace : public RunObserver {
+class CsvTrace : public Trace {
  public:
   explicit CsvTrace(const std::string& path) : file_(path) {}  // throws OutsideError
   void begin(const RunInfo& info) override;
   void trace_row(const RowView& view) override;
 
-  [[nodiscard]] bool failed() const { return file_.failed(); }  // a full disk, say: worth stopping for
-  void finish() { file_.finish(); }                             // throws OutsideError
-  [[nodiscard]] std::int64_t rows() const { return rows_; }
-  [[nodiscard]] std::size_t columns() const { return columns_; }
+  [[nodiscard]] bool failed() const override { return file_.failed(); }
+  void finish() override { file_.finish(); }
 
  private:
   OutFile file_;
   std::string line_;
-  std::int64_t rows_ = 0;
-  std::size_t columns_ = 0;
 };
 
 }  // namespace slipbench

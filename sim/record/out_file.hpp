@@ -20,6 +20,8 @@ class OutFile {
   [[nodiscard]] bool failed() const { return error_ != 0; }
   void finish();  // throws OutsideError when any byte did not reach the file
   [[nodiscard]] const std::string& path() const { return path_; }
+  // Where the bytes go until then; `path` itself where that is a pipe or a device.
+  [[nodiscard]] const std::string& working_path() const { return working_path_; }
 
  private:
   std::string path_, working_path_;

@@ -33,21 +33,6 @@ void check_estimator_names(const Scenario& s, const Node& root) {
   }
 }
 
-void check_named(const Scenario& s, const Node& root, const std::string& key, const std::string& name,
-                 bool or_measured) {
-  std::vector<std::string_view> names;
-  if (or_measured) names.push_back("measured");
-  for (const EstimatorSettings& e : s.estimators) names.push_back(e.name);
-  if (std::count(names.begin(), names.end(), name) > 0) return;
-  std::string list;
-  for (const std::string_view n : names) list += (list.empty() ? "" : ", ") + std::string(n);
-  if (list.empty())
-    refuse_at(root, key, "'" + key + "' is \"" + printable(name) + "\", but the scenario has no [[estimator]]");
-  refuse_at(root, key,
-            "'" + key + "' is \"" + printable(name) + "\"; wanted is one of " + list + "; nearest is " +
-                std::string(nearest(name, names)));
-}
-
 void check_controller(const Scenario& s, const Node& root) {
   const ControllerSettings& c = s.controller;
   if (c.kind.empty()) {
@@ -183,12 +168,28 @@ void check_drifts(const Scenario& s, const Node& root) {
 
 }  // namespace
 
+void check_named(const Scenario& s, const Node& root, const std::string& key, const std::string& name,
+                 bool or_measured) {
+  std::vector<std::string_view> names;
+  if (or_measured) names.push_back("measured");
+  for (const EstimatorSettings& e : s.estimators) names.push_back(e.name);
+  if (std::count(names.begin(), names.end(), name) > 0) return;
+  std::string list;
+  for (const std::string_view n : names) list += (list.empty() ? "" : ", ") + std::string(n);
+  if (list.empty())
+    refuse_at(root, key, "'" + key + "' is \"" + printable(name) + "\", but the scenario has no [[estimator]]");
+  refuse_at(root, key,
+            "'" + key + "' is \"" + printable(name) + "\"; wanted is one of " + list + "; nearest is " +
+                std::string(nearest(name, names)));
+}
+
 void check_wiring(const Scenario& s, const Node& root) {
   check_estimator_names(s, root);
   check_supply(s, root);
   check_loads(s, root);
   check_sensors(s, root);
   check_drifts(s, root);
+  check_events(s, root);
   if (s.belief.has_machine && s.belief.machine.pole_pairs != s.machine.pole_pairs) {
     refuse_at(root, "belief.file",
               "the believed machine has " + std::to_string(s.belief.machine.pole_pairs) + " pole pairs, the true one " +

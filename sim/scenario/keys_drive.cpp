@@ -89,11 +89,28 @@ void belief_and_score_keys(std::vector<Key>& keys) {
   score.number("settled_error", AT(score.settled_error), "", positive(10.0), "speed error, of rated speed: settled");
 }
 
+void event_keys(std::vector<Key>& keys) {
+  Rows k(keys, "event[]");
+  k.number("at_s", AT(events[i].at_s), "s", up_to(any_time), "acts at the first control tick at or after it").must();
+  k.word("kind", AT(events[i].kind), "what happens")
+      .must()
+      .words({"speed_sensor_fault", "current_sensor_fault", "speed_from"});
+  k.word("fault", AT(events[i].fault), "signal gone, reading held where it is, or all well again")
+      .must()
+      .with({"speed_sensor_fault", "current_sensor_fault"})
+      .words({"no_signal", "stuck", "repaired"});
+  k.word("phase", AT(events[i].phase), "whose sensor").must().with({"current_sensor_fault"}).words({"a", "b", "c"});
+  k.word("estimator", AT(events[i].estimator), "\"measured\", or the estimator the controller takes its speed from")
+      .must()
+      .with({"speed_from"});
+}
+
 }  // namespace
 
 void drive_keys(std::vector<Key>& keys) {
   sensor_keys(keys);
   control_keys(keys);
+  event_keys(keys);
   belief_and_score_keys(keys);
 }
 

@@ -34,7 +34,9 @@ Circuit<double> Scenario::believed_circuit() const {
   return c;
 }
 
-// Steady state at stator frequency w and slip frequency w_s, from the rotor and stator voltage equations:
-//   v = psi_r [ (R_s + j w sigma L_s) (1 + j w_s tau_r) / L_m + j w L_m / L_r ]
+std::int64_t EventSettings::tick(double control_period_s) const {
+  constexpr double rounding = 1e-5;  // of a tick: times of 1e10 ticks still carry it
+  return static_cast<std::int64_t>(std::ceil(at_s / control_period_s - rounding));
+}
 
 }  // namespace slipbench

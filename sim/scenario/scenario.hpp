@@ -114,6 +114,17 @@ struct DriftSettings {
   Knots factor;
 };
 
+struct EventSettings {
+  double at_s = 0;
+  std::string kind;       // speed_sensor_fault | current_sensor_fault | speed_from
+  std::string fault;      // no_signal | stuck | repaired
+  std::string phase;      // current_sensor_fault: a | b | c
+  std::string estimator;  // speed_from: an estimator's name, or measured
+
+  // The control tick it acts at: the first at or after its time; a time that is a tick up to rounding is that tick.
+  [[nodiscard]] std::int64_t tick(double control_period_s) const;
+};
+
 struct ScoreSettings {
   double from_s = 0, to_s = 0;  // to_s filled with the run's end by the reader
   double lost_error = 0.1, lost_for_s = 0.05, settled_error = 0.02;
@@ -135,6 +146,7 @@ struct Scenario {
   std::vector<EstimatorSettings> estimators;
   BeliefSettings belief;
   std::vector<DriftSettings> drifts;
+  std::vector<EventSettings> events;  // in file order
   ScoreSettings score;
 
   [[nodiscard]] bool on_mains() const { return supply.kind == "mains"; }

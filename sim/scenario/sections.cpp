@@ -41,6 +41,10 @@ const std::vector<Section>& scenario_sections() {
       {.path = "drift[]",
        .enter = [](Scenario& s, std::size_t count) { s.drifts.resize(count); },
        .meaning = "the true machine changing under way"},
+      {.path = "event[]",
+       .selector = "kind",
+       .enter = [](Scenario& s, std::size_t count) { s.events.resize(count); },
+       .meaning = "what happens at a time: sensors fail, the speed is taken from elsewhere"},
       {.path = "score", .meaning = "window and thresholds of the figures"},
   };
   return table;
@@ -126,6 +130,7 @@ const Key* find_key(Scenario& scenario, std::string_view dotted) {
   const std::size_t lists = at.path.starts_with("load[]")        ? scenario.loads.size()
                             : at.path.starts_with("estimator[]") ? scenario.estimators.size()
                             : at.path.starts_with("drift[]")     ? scenario.drifts.size()
+                            : at.path.starts_with("event[]")     ? scenario.events.size()
                                                                  : 1;
   if (at.index >= lists) return nullptr;
   for (const Key& key : scenario_keys()) {

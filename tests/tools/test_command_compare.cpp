@@ -81,6 +81,20 @@ TEST_CASE("compare: in the loop, each estimator is judged as if it alone were in
   }
 }
 
+TEST_CASE("compare: in the loop, a handover under way goes to each estimator in turn", "[tools][property]") {
+  const Folder folder;
+  const std::string file =
+      folder.write("s.toml", scenario_text() + "[[event]]\nat_s = 0.15\nkind = \"speed_from\"\nestimator = \"obs\"\n" +
+                                 "[[event]]\nat_s = 0.25\nkind = \"speed_from\"\nestimator = \"measured\"\n");
+  const auto j = folder.run({"compare", file, "--runs", "1", "--in-loop", "--json"}).json();
+  for (const std::string name : {"obs", "ekf"}) {
+    const auto run = folder.run({"run", file, "--json", "--set", "event.0.estimator=" + name}).json();
+    CHECK(j["estimators"][name]["speed_tracking_rmse_rpm"]["mean"] == run["drive"]["speed_tracking_rmse_rpm"]);
+  }
+  CHECK(j["estimators"]["obs"]["speed_tracking_rmse_rpm"]["mean"] !=
+        j["estimators"]["ekf"]["speed_tracking_rmse_rpm"]["mean"]);
+}
+
 TEST_CASE("compare: tables for people, a figure, and what it refuses", "[tools][command]") {
   const Folder folder;
   const std::string file = folder.write("s.toml", scenario_text());

@@ -237,3 +237,30 @@ TEST_CASE("run: a diverged plant is 1, named, and the rows done are kept", "[too
   CHECK_FALSE(j["diverged"]["what"].get<std::string>().empty());
   CHECK(read_trace(folder.file("t.csv")).at("time_s").size() > 1);
 }
+
+TEST_CASE("run: events stand in JSON, summary and figure, with their tick and time", "[tools][contract]") {
+  const Folder folder;
+  const std::string events = R"([[event]]
+at_s = 0.15
+kind = "speed_from"
+estimator = "ekf"
+[[event]]
+at_s = 0.12001
+kind = "speed_sensor_fault"
+fault = "stuck"
+)";
+  const std::string file = folder.write("s.toml", scenario_text() + events);
+  const auto j = folder.run({"run", file, "--json"}).json();
+  REQUIRE(j["events"].size() == 2);
+  CHECK(j["events"][0] == nlohmann::json{{"tick", 1201}, {"time_s", 1201 * 100e-6}, {"what", "speed sensor: stuck"}});
+  CHECK(j["events"][1]["tick"] == 1500);
+  CHECK(j["events"][1]["what"] == "speed from ekf");
+  CHECK(folder.run({"run", folder.write("none.toml", scenario_text()), "--json"}).json()["events"].empty());
+  const Answer people = folder.run({"run", file, "--figure", folder.file("f.svg")});
+  CHECK_THAT(people.out, Catch::Contains("Events") && Catch::Contains("0.1201  speed sensor: stuck"));
+  CHECK_THAT(content(folder.file("f.svg")),
+             Catch::Contains("speed sensor: stuck") && Catch::Contains("speed from ekf"));
+  const Answer late = folder.run({"run", file, "--set", "event.1.at_s=0.31"});
+  CHECK(late.status == 2);
+  CHECK_THAT(late.err, Catch::Contains("--set:event.1.at_s") && Catch::Contains("ends at 0.3 s"));
+}

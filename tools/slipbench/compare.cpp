@@ -15,12 +15,21 @@ namespace slipbench {
 
 namespace {
 
-// The scenario in which estimator `index` closes the loop, alone. Read again with the change as an override, so that the
-// reader's checks apply to it.
+// The scenario in which estimator `index` closes the loop, alone. Wherever the file takes the speed from an estimator, at
+// the start or by an event, it takes it from this one; "measured" stays, so that a handover under way is compared as one.
+// Where it never does, this one closes the loop from the start. Read again with the changes as overrides, so that the
+// reader's checks apply to them.
 Scenario closed_by(const Request& request, const Scenario& plain, std::size_t index) {
   std::vector<Override> overrides = request.overrides;
   const std::string quoted = "\"" + plain.estimators[index].name + "\"";
-  overrides.push_back({"controller.speed_from", quoted});
+  bool handed_over = false;
+  for (std::size_t i = 0; i < plain.events.size(); ++i) {
+    const EventSettings& e = plain.events[i];
+    if (e.kind != "speed_from" || e.estimator == "measured") continue;
+    overrides.push_back({"event." + std::to_string(i) + ".estimator", quoted});
+    handed_over = true;
+  }
+  if (plain.controller.speed_from != "measured" || !handed_over) overrides.push_back({"controller.speed_from", quoted});
   const bool direct = plain.controller.orientation == "direct";
   if (direct) overrides.push_back({"controller.flux_from", quoted});
   Scenario closed = read_scenario(request.file, overrides, request.seed);

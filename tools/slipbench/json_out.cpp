@@ -47,6 +47,9 @@ std::string json_document(const RunResult& r) {
   document["simulated_s"] = r.outcome.simulated_s;
   document["wall_s"] = r.outcome.wall_s;
   document["clipped_samples"] = r.outcome.clipped_samples;
+  document["events"] = Json::array();
+  for (const ActedEvent& e : r.outcome.events)
+    document["events"].push_back({{"tick", e.tick}, {"time_s", e.time_s}, {"what", e.what}});
   document["final"] = columns(r.final);
   document["mean"] = columns(r.mean);
   document["drive"] = Json::object();

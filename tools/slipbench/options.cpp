@@ -7,6 +7,7 @@
 #include <charconv>
 #include <map>
 
+#include "sim/record/trace.hpp"
 #include "sim/scenario/nearest.hpp"
 
 namespace slipbench {
@@ -40,7 +41,7 @@ constexpr std::array<OptionRow, 11> option_rows = {{
     {"--runs", "N", "compare", "noise runs (20)"},
     {"--in-loop", "", "compare", "each estimator closes the speed loop in turn, instead of all riding along"},
     {"--threads", "N", "compare", "threads (all cores); the results do not depend on it"},
-    {"--trace", "FILE.csv", "run", "write the trace"},
+    {"--trace", "FILE.csv|FILE.h5", "run", "write the trace, as CSV or HDF5"},
     {"--figure", "FILE.svg", "run compare", "draw the result"},
     {"--json", "", "run check compare", "one JSON document on standard output, nothing else"},
     {"--quiet", "", "run check compare", "print nothing but errors"},
@@ -126,11 +127,8 @@ Request request_of(const std::string& verb, Given& given) {
     }
     r.overrides.push_back({setting.substr(0, equals), setting.substr(equals + 1)});
   }
-  if (r.trace.ends_with(".h5") || r.trace.ends_with(".hdf5")) {
-    refuse("--trace", "--trace: HDF5 is not written by this version; name a CSV file, as in --trace run.csv");
-  }
-  if (!r.trace.empty() && !r.trace.ends_with(".csv") && !r.trace.starts_with("/dev/")) {
-    refuse("--trace", fmt::format("--trace '{}': the file's ending tells the format; expected .csv", r.trace));
+  if (!r.trace.empty() && !r.trace.ends_with(".csv") && !is_hdf5_name(r.trace) && !r.trace.starts_with("/dev/")) {
+    refuse("--trace", fmt::format("--trace '{}': the file's ending tells the format; expected .csv or .h5", r.trace));
   }
   if (!r.figure.empty() && !r.figure.ends_with(".svg") && !r.figure.starts_with("/dev/")) {
     refuse("--figure", fmt::format("--figure '{}': expected a name that ends in .svg", r.figure));

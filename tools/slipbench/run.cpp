@@ -3,8 +3,10 @@
 
 #include <memory>
 
-#include "sim/record/csv_trace.hpp"
 #include "sim/record/digest.hpp"
+#include "sim/record/out_file.hpp"
+#include "sim/record/trace.hpp"
+#include "sim/scenario/tree.hpp"
 #include "sim/score/drive_score.hpp"
 #include "sim/score/estimator_score.hpp"
 #include "tools/slipbench/interrupt.hpp"
@@ -27,6 +29,14 @@ std::string status_of(const RunResult& result) {
   return "done";
 }
 
+TraceOrigin origin_of(const Request& request, const Scenario& scenario) {
+  std::string why;
+  TraceOrigin origin{SLIPBENCH_VERSION, read_text(request.file, why).value_or(""), "", scenario.seed,
+                     request.noise_run};
+  for (const Override& o : request.overrides) origin.overrides += o.key + "=" + o.value + "\n";
+  return origin;
+}
+
 }  // namespace
 
 int run_verb(const Request& request) {
@@ -35,9 +45,9 @@ int run_verb(const Request& request) {
   const ScoreBasis basis = score_basis(scenario);
 
   // Outputs are opened first: a path that cannot be written costs no simulation.
-  std::unique_ptr<CsvTrace> trace;
+  std::unique_ptr<Trace> trace;
   std::unique_ptr<OutFile> figure_file;
-  if (!request.trace.empty()) trace = std::make_unique<CsvTrace>(request.trace);
+  if (!request.trace.empty()) trace = open_trace(request.trace, origin_of(request, scenario));
   if (!request.figure.empty()) figure_file = std::make_unique<OutFile>(request.figure);
 
   EstimatorScore estimator_score(basis);
@@ -86,7 +96,7 @@ int run_verb(const Request& request) {
     const std::string ended = o.diverged           ? fmt::format("DIVERGED at {} s", plain(o.diverged_at_s, 4))
                               : result.interrupted ? fmt::format("INTERRUPTED at {} s", plain(o.simulated_s, 4))
                                                    : "";
-    figure_file->write(figure.svg(scenario, figures, ended));
+    figure_file->write(figure.svg(scenario, figures, ended, o.events));
     figure_file->finish();
     result.files.push_back(fmt::format("figure: {}", request.figure));
   }

@@ -100,6 +100,31 @@ std::string panel(const svg::Axis& x, const svg::Axis& y, const svg::Ticks& x_ti
   return out + svg::text(x.from_px, y.to_px - 9, name, {12, "start", svg::ink, true});
 }
 
+// Load steps and events as thin lines. Their names stand between the panels, where they hide nothing: in the first of two
+// rows with room, or not at all.
+std::string marks(const svg::Axis& x, const std::vector<double>& load_steps, const std::vector<ActedEvent>& events) {
+  std::vector<std::pair<double, std::string>> all;
+  for (const double step : load_steps) {
+    if (step >= 0.0 && step <= x.high) all.emplace_back(step, "load step");
+  }
+  for (const ActedEvent& event : events) all.emplace_back(event.time_s, event.what);
+  std::stable_sort(all.begin(), all.end(), [](const auto& a, const auto& b) { return a.first < b.first; });
+  std::string out;
+  std::array<double, 2> free_from{left, left};
+  for (const auto& [time, name] : all) {
+    const double at = x.at(time), wide = svg::width_px(name, 11) + 12.0;
+    out += svg::line(at, speed_top, at, error_bottom, svg::soft_ink, 1.0, "1 3");
+    const double from = std::min(at, right - wide);  // moved left where it would run off
+    for (std::size_t row = 0; row < free_from.size(); ++row) {
+      if (from < free_from[row]) continue;
+      out += svg::text(from + 4, speed_bottom + 14 + 11 * static_cast<double>(row), name, {11, "start", svg::soft_ink});
+      free_from[row] = from + wide;
+      break;
+    }
+  }
+  return out;
+}
+
 }  // namespace
 
 void RunFigure::begin(const RunInfo& info) {
@@ -135,7 +160,7 @@ void RunFigure::control_tick(const TickView& view) {
 }
 
 std::string RunFigure::svg(const Scenario& scenario, const std::vector<EstimatorFigures>& figures,
-                           const std::string& ended) const {
+                           const std::string& ended, const std::vector<ActedEvent>& events) const {
   Range speed, error;
   speed.take(truth_);
   speed.take(reference_);
@@ -182,14 +207,7 @@ std::string RunFigure::svg(const Scenario& scenario, const std::vector<Estimator
   const Plane speed_plane{speed.low, speed.high, speed_top, speed_bottom},
       error_plane{error.low, error.high, error_top, error_bottom};
   const std::string reference = mean_line(reference_, speed_plane);
-  double free_from = left;  // names of load steps stand between the panels, where they hide nothing
-  for (const double step : load_steps_s_) {
-    if (step < 0.0 || step > info_.duration_s) continue;
-    body += svg::line(x.at(step), speed_top, x.at(step), error_bottom, svg::soft_ink, 1.0, "1 3");
-    if (x.at(step) < free_from || x.at(step) + 60.0 > right) continue;
-    body += svg::text(x.at(step) + 4, speed_bottom + 14, "load step", {11, "start", svg::soft_ink});
-    free_from = x.at(step) + 66.0;
-  }
+  body += marks(x, load_steps_s_, events);
   body += "<g clip-path=\"url(#a)\">\n" + path(mean_line(truth_, speed_plane), svg::ink, 3.4, "") +
           path(reference, "#c8c8c8", 1.6, "5 3");
   for (std::size_t i = 0; i < estimates_.size(); ++i) {

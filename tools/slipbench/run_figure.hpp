@@ -5,6 +5,7 @@
 #include <string>
 #include <vector>
 
+#include "sim/engine/events.hpp"
 #include "sim/engine/observer.hpp"
 #include "sim/score/basis.hpp"
 #include "sim/score/figures.hpp"
@@ -19,9 +20,9 @@ class RunFigure : public RunObserver {
       : window_(window), load_steps_s_(std::move(load_steps_s)) {}
   void begin(const RunInfo& info) override;
   void control_tick(const TickView& view) override;
-  // `ended` says why the run stopped early, "" if it did not.
+  // `ended` says why the run stopped early, "" if it did not; `events`: those that acted, to be marked.
   [[nodiscard]] std::string svg(const Scenario& scenario, const std::vector<EstimatorFigures>& figures,
-                                const std::string& ended = "") const;
+                                const std::string& ended = "", const std::vector<ActedEvent>& events = {}) const;
 
  private:
   ScoreWindow window_;

@@ -62,6 +62,14 @@ std::string estimator_text(const RunResult& result) {
   return table.text();
 }
 
+std::string event_text(const std::vector<ActedEvent>& events) {
+  Table table;
+  table.column("at", "s");
+  table.column("", "", Table::Align::left);
+  for (const ActedEvent& e : events) table.row({plain(e.time_s), e.what});
+  return table.text();
+}
+
 std::string status_text(const RunResult& result) {
   std::string text;
   if (result.outcome.diverged) {
@@ -89,6 +97,7 @@ std::string run_summary(const RunResult& result) {
                       significant(o.wall_s > 0.0 ? o.simulated_s / o.wall_s : 0.0, 2), s.seed, plain(s.score.from_s),
                       plain(s.score.to_s));
   text += "Drive\n" + drive_text(result);
+  if (!o.events.empty()) text += "\nEvents\n" + event_text(o.events);
   if (!result.estimators.empty()) text += "\nEstimates against the truth\n" + estimator_text(result);
   const std::string status = status_text(result);
   if (!status.empty()) text += "\n" + status;

@@ -37,7 +37,8 @@ struct Counter : RunObserver {
 }  // namespace
 
 TEST_CASE("control tick: allocates nothing", "[engine]") {
-  // Everything at once: three estimators, noise, converters, filters, an encoder, drift, a profile, process noise, tracing.
+  // Everything at once: three estimators, noise, converters, filters, an encoder, drift, a profile, process noise, tracing,
+  // events.
   Scenario s = inverter_drive(krause_3hp(), 0.6, 8.0, "measured");
   s.run.duration_s = 0.2;
   s.sensors.speed.kind = "encoder";
@@ -46,9 +47,14 @@ TEST_CASE("control tick: allocates nothing", "[engine]") {
   s.sensors.current.range = 50.0;
   s.process_noise = {0.5, 0.01, 1e-4};
   s.drifts.push_back({"rotor_resistance", {{0.0, 1.0}, {0.1, 1.2}}});
+  s.events = {{0.05, "current_sensor_fault", "no_signal", "a", ""},
+              {0.06, "current_sensor_fault", "repaired", "a", ""},
+              {0.1, "speed_sensor_fault", "stuck", "", ""},
+              {0.12, "speed_from", "", "", "extended_kalman"}};
   Counter counter;
   RunObserver* observer = &counter;
-  simulate(s, {&observer, 1});
+  const RunOutcome outcome = simulate(s, {&observer, 1});
+  CHECK(outcome.events.size() == 4);
   CHECK(counter.at_first > 0);  // set-up does allocate, and is seen to
   CHECK(counter.at_last == counter.at_first);
 }

@@ -41,7 +41,7 @@ TEST_CASE("keys: each belongs to a known table, has a meaning, and stands once a
 
 TEST_CASE("keys: a fresh scenario's defaults are allowed values", "[scenario][keys]") {
   Scenario fresh;
-  fresh.loads.resize(1), fresh.estimators.resize(1), fresh.drifts.resize(1);
+  fresh.loads.resize(1), fresh.estimators.resize(1), fresh.drifts.resize(1), fresh.events.resize(1);
   for (const Key& key : scenario_keys()) {
     if (key.need == Need::required || !key.otherwise.empty()) continue;
     INFO(key.path);

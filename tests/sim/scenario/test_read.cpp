@@ -159,7 +159,7 @@ TEST_CASE("scenario: the files of configs/ read", "[scenario][configs]") {
   for (const auto& entry : std::filesystem::directory_iterator(configs / "machines")) {
     INFO(entry.path());
     CHECK(kind_of_file(entry.path().string()) == FileKind::machine);
-    CHECK(read_machine(entry.path().string()).pole_pairs == 2);
+    CHECK(read_machine(entry.path().string()).pole_pairs > 0);
     ++machines;
   }
   CHECK(scenarios >= 3);
