@@ -29,6 +29,9 @@ slipbench_export(engine "Boost 1.74")
 slipbench_export(lanes)
 slipbench_export(score "Boost 1.74")
 slipbench_export(record)
+if(TARGET stream)
+  slipbench_export(stream "Boost 1.74" cppzmq Threads)
+endif()
 
 # slipbench::slipbench: all of them.
 add_library(all_libraries INTERFACE)
