@@ -181,6 +181,12 @@ Scenario ScenarioFile::read(const std::vector<Override>& overrides, std::optiona
   return scenario;
 }
 
+std::vector<std::string> ScenarioFile::machine_files() const {
+  std::vector<std::string> paths;
+  for (const auto& [path, node] : parsed_->machines) paths.push_back(path);
+  return paths;
+}
+
 FileKind kind_of_file(const std::string& path) { return kind_of(parse_file(path)); }
 
 Scenario read_scenario(const std::string& path, const std::vector<Override>& overrides,

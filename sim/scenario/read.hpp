@@ -38,6 +38,8 @@ class ScenarioFile {
   ScenarioFile(const std::string& text, const std::string& name, const std::string& folder);
   [[nodiscard]] Scenario read(const std::vector<Override>& overrides = {},
                               std::optional<std::uint64_t> seed = {}) const;
+  // Paths of the machine files that it names and that could be read.
+  [[nodiscard]] std::vector<std::string> machine_files() const;
 
  private:
   std::shared_ptr<const ParsedScenario> parsed_;

@@ -159,9 +159,9 @@ DrawnKey drawn_of(const Table& t) {
   return key;
 }
 
-Sample sample_of(const Node& node, std::uint64_t scenario_seed) {
+Sampling sample_of(const Node& node, std::uint64_t scenario_seed) {
   const Table t(node, "sample", {"kind", "count", "seed", "key"});
-  Sample sample;
+  Sampling sample;
   const std::string kind = t.word("kind", {"random", "latin_hypercube", "sobol", "saltelli"});
   sample.kind = kind == "random"            ? DrawKind::random
                 : kind == "latin_hypercube" ? DrawKind::latin_hypercube

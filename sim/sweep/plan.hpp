@@ -32,7 +32,7 @@ struct DrawnKey {
   [[nodiscard]] double at(double u) const;  // the quantile, 0 < u < 1
 };
 
-struct Sample {
+struct Sampling {
   DrawKind kind = DrawKind::random;
   std::uint64_t count = 0, seed = 1;  // saltelli: base points
   std::vector<DrawnKey> keys;
@@ -45,7 +45,7 @@ struct SweepPlan {
   std::vector<Override> overrides;  // --set for the scenario; win over nothing that the plan varies
   std::optional<std::uint64_t> seed;
   std::vector<Vary> varies;
-  std::optional<Sample> sample;
+  std::optional<Sampling> sample;
 
   [[nodiscard]] std::uint64_t cases() const;
   // Every key that varies, in the plan's order; coupled keys one after the other.
