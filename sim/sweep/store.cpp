@@ -7,43 +7,11 @@
 #include <sstream>
 
 #include "sim/scenario/input_error.hpp"
-#include "sim/scenario/tree.hpp"
+#include "sim/sweep/sqlite.hpp"
 
 namespace slipbench {
 
 namespace {
-
-constexpr int fixed = 4;  // "case", run, status, message
-
-std::string quoted(const std::string& name) {
-  std::string out = "\"";
-  for (const char c : name) out += c == '"' ? std::string("\"\"") : std::string(1, c);
-  return out + "\"";
-}
-
-// Finalises when it leaves.
-struct Statement {
-  explicit Statement(sqlite3_stmt* s) : at(s) {}
-  ~Statement() { sqlite3_finalize(at); }
-  Statement(const Statement&) = delete;
-  Statement& operator=(const Statement&) = delete;
-  sqlite3_stmt* at;
-};
-
-std::string text_at(sqlite3_stmt* s, int column) {
-  const auto* text = reinterpret_cast<const char*>(sqlite3_column_text(s, column));
-  return text == nullptr ? std::string() : std::string(text, static_cast<std::size_t>(sqlite3_column_bytes(s, column)));
-}
-
-// A number in the shortest text that reads back the same: SQLite's own text of it has fifteen digits.
-std::string value_at(sqlite3_stmt* s, int column) {
-  const int type = sqlite3_column_type(s, column);
-  return type == SQLITE_FLOAT || type == SQLITE_INTEGER ? number_text(sqlite3_column_double(s, column)) : text_at(s, column);
-}
-
-void bind_text(sqlite3_stmt* s, int column, const std::string& text) {
-  sqlite3_bind_text(s, column, text.data(), static_cast<int>(text.size()), SQLITE_TRANSIENT);
-}
 
 // The first line in which two texts differ, for the eye.
 std::string first_difference(const std::string& was, const std::string& is) {
@@ -224,24 +192,24 @@ std::uint64_t Store::rows_between(std::uint32_t run, std::uint64_t first, std::u
 
 void Store::each_row(const std::function<bool(const ResultRow&)>& visit) const {
   const Statement all(prepare("SELECT * FROM result ORDER BY \"case\", run"));
-  ResultRow row;
   int code = SQLITE_ROW;
   while ((code = sqlite3_step(all.at)) == SQLITE_ROW) {
-    row.case_number = static_cast<std::uint64_t>(sqlite3_column_int64(all.at, 0));
-    row.run = static_cast<std::uint32_t>(sqlite3_column_int64(all.at, 1));
-    row.status = text_at(all.at, 2);
-    row.message = text_at(all.at, 3);
-    row.values.clear();
-    row.figures.clear();
-    int at = fixed;
-    for (std::size_t i = 0; i < columns_.keys.size(); ++i) row.values.push_back(value_at(all.at, at++));
-    for (std::size_t i = 0; i < columns_.figures.size(); ++i, ++at) {
-      row.figures.push_back(sqlite3_column_type(all.at, at) == SQLITE_NULL ? Figure()
-                                                                           : Figure(sqlite3_column_double(all.at, at)));
-    }
-    if (!visit(row)) return;
+    if (!visit(row_of(all.at))) return;
   }
   if (code != SQLITE_DONE) fail(code);
+}
+
+ResultRow Store::row_of(sqlite3_stmt* s) const {
+  ResultRow row;
+  row.case_number = static_cast<std::uint64_t>(sqlite3_column_int64(s, 0));
+  row.run = static_cast<std::uint32_t>(sqlite3_column_int64(s, 1));
+  row.status = text_at(s, 2);
+  row.message = text_at(s, 3);
+  int at = fixed;
+  for (std::size_t i = 0; i < columns_.keys.size(); ++i) row.values.push_back(value_at(s, at++));
+  for (std::size_t i = 0; i < columns_.figures.size(); ++i, ++at)
+    row.figures.push_back(sqlite3_column_type(s, at) == SQLITE_NULL ? Figure() : Figure(sqlite3_column_double(s, at)));
+  return row;
 }
 
 sqlite3_stmt* Store::prepare(const std::string& sql) const {

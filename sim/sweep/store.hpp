@@ -55,6 +55,15 @@ class Store {
   // Cases in order, runs in order within a case; false from `visit` stops.
   void each_row(const std::function<bool(const ResultRow&)>& visit) const;
 
+  // store_queries.cpp. Of one figure (its name): how many rows have it; the values at these ranks (0: the least) among them; the rows with
+  // the largest, largest first. SQLite sorts, on disk where memory is short.
+  [[nodiscard]] std::uint64_t figure_count(const std::string& figure) const;
+  [[nodiscard]] std::vector<double> at_ranks(const std::string& figure, const std::vector<std::uint64_t>& ranks) const;
+  [[nodiscard]] std::vector<ResultRow> largest(const std::string& figure, std::size_t rows) const;
+  [[nodiscard]] std::uint64_t status_count(const std::string& status) const;
+
+  // InputError that says what differs, where it was made from something else.
+  void demand_same(const Origin& wanted) const;
   [[nodiscard]] const Origin& origin() const { return origin_; }
   [[nodiscard]] const StoreColumns& columns() const { return columns_; }
   [[nodiscard]] const std::string& path() const { return path_; }
@@ -63,10 +72,11 @@ class Store {
   void open(bool writable);
   void make();
   void read_origin();
-  void demand_same(const Origin& wanted) const;
   void execute(const std::string& sql) const;
   [[nodiscard]] sqlite3_stmt* prepare(const std::string& sql) const;
   [[noreturn]] void fail(int code) const;
+  [[nodiscard]] ResultRow row_of(sqlite3_stmt* statement) const;
+  [[nodiscard]] std::uint64_t counted(const std::string& condition) const;
 
   std::string path_;
   Origin origin_;

@@ -20,7 +20,7 @@ namespace {
 using Clock = std::chrono::steady_clock;
 
 constexpr auto time_between_batches = std::chrono::milliseconds(200);
-constexpr std::size_t units_ahead = 64;  // for each thread
+constexpr std::size_t units_ahead = 64;                         // for each thread
 constexpr std::size_t most_waiting_rows = 64 * cases_per_unit;  // then workers wait for the store
 
 struct Unit {
@@ -32,13 +32,17 @@ struct Unit {
 class Units {
  public:
   Units(const SweepPlan& plan, Shard shard)
-      : cases_(plan.cases()), per_run_((cases_ + cases_per_unit - 1) / cases_per_unit), all_(per_run_ * plan.runs), shard_(shard) {}
+      : cases_(plan.cases()),
+        per_run_((cases_ + cases_per_unit - 1) / cases_per_unit),
+        all_(per_run_ * plan.runs),
+        shard_(shard) {}
   [[nodiscard]] std::uint64_t count() const {
     return all_ > shard_.index ? (all_ - shard_.index - 1) / shard_.count + 1 : 0;
   }
   [[nodiscard]] Unit at(std::uint64_t number) const {
     const std::uint64_t u = number * shard_.count + shard_.index, block = u % per_run_;
-    return {static_cast<std::uint32_t>(u / per_run_), block * cases_per_unit, std::min(cases_, (block + 1) * cases_per_unit)};
+    return {static_cast<std::uint32_t>(u / per_run_), block * cases_per_unit,
+            std::min(cases_, (block + 1) * cases_per_unit)};
   }
 
  private:
@@ -134,8 +138,8 @@ class Queue {
 };
 
 // Runs one unit: its cases are read, grouped into packs by the runner, and come back as rows.
-std::vector<ResultRow> run_unit(const SweepPlan& plan, const ScenarioFile& file, CaseMaker& maker, PackRunner& runner, const Unit& unit,
-                                std::size_t keys, std::size_t figures) {
+std::vector<ResultRow> run_unit(const SweepPlan& plan, const ScenarioFile& file, CaseMaker& maker, PackRunner& runner,
+                                const Unit& unit, std::size_t keys, std::size_t figures) {
   std::vector<ResultRow> rows(unit.last - unit.first);
   std::vector<PackCase> cases;
   cases.reserve(rows.size());
@@ -252,7 +256,8 @@ SweepOutcome run_sweep(const SweepPlan& plan, Store& store, const SweepOptions& 
       count(outcome, rows);
       if (finished.error()) std::rethrow_exception(finished.error());
       const double seconds = std::chrono::duration<double>(Clock::now() - begun).count();
-      if (options.keep_going && !options.keep_going({outcome.rows, outcome.done + outcome.resumed, outcome.resumed, seconds})) {
+      if (options.keep_going &&
+          !options.keep_going({outcome.rows, outcome.done + outcome.resumed, outcome.resumed, seconds})) {
         outcome.stopped = true;
         break;
       }

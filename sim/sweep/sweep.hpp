@@ -39,8 +39,8 @@ struct SweepOutcome {
   unsigned threads = 1;
   std::size_t lanes = 1;  // of a pack
   std::string isa;
-  std::uint64_t in_lanes = 0;                              // rows that ran in packs
-  std::map<std::string, std::uint64_t> not_in_lanes;       // rows that ran alone, by reason
+  std::uint64_t in_lanes = 0;                         // rows that ran in packs
+  std::map<std::string, std::uint64_t> not_in_lanes;  // rows that ran alone, by reason
   bool stopped = false;
 };
 
