@@ -160,6 +160,7 @@ void Run::control_tick(std::int64_t k) {
   speed_reference_now_ = now(speed_reference_);
   torque_reference_now_ = now(torque_reference_);
   Measurement<double> m;
+  m.tick = k;
   m.current = reading_.current;
   m.dc_link = reading_.dc_link;
   m.speed = speed_from_ < 0 ? reading_.speed : estimates_[static_cast<std::size_t>(speed_from_)].speed;
