@@ -67,6 +67,7 @@ struct ControllerSetup {
   bool sensorless = false;               // speed comes from an estimator: default bandwidths are lower
   double rotor_flux_reference_Wb = 0.0;  // upper limit
   double start_rotor_flux_Wb = 0.0;      // rotor flux up at tick 0, along alpha; 0: magnetise first
+  double start_speed_rad_s = 0.0;        // of the shaft at tick 0, mechanical, where the flux is up
 };
 
 static_assert(sizeof(Measurement<double>) == sizeof(slipbench_measurement));

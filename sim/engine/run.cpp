@@ -72,6 +72,7 @@ void Run::place_at_start() {
   if (!s.on_mains()) {
     ControllerSetup c = controller_setup(s, modulation_, compensated_, speed_from_ >= 0);
     c.start_rotor_flux_Wb = e.start_rotor_flux_Wb;
+    c.start_speed_rad_s = e.start_speed_rad_s;
     try {
       controller_ = make_controller(s.controller.kind, c, s.controller.settings);
     } catch (const std::invalid_argument& unfit) {
