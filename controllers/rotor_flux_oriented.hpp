@@ -86,7 +86,13 @@ struct RotorFluxOriented {
     const Real torque = control_speed(s.speed, c.speed, m, per_ampere * d.i_q_limit, hold);
     s.current_reference = {d.i_d, torque / per_ampere};
     const VoltageCommand<Real> u = control_current(s.current, c.current, frame, s.current_reference, limit, m.dc_link);
-    return {u.duty, u.clipped, s.flux.reference, torque, s.current_reference};
+    Command<Real> out;
+    out.duty = u.duty;
+    out.clipped = u.clipped;
+    out.rotor_flux_reference = s.flux.reference;
+    out.torque_reference = torque;
+    out.current_reference = s.current_reference;
+    return out;
   }
 };
 

@@ -48,6 +48,14 @@ void check_controller(const Scenario& s, const Node& root) {
     refuse_at(root, "reference.torque_Nm",
               "'reference.torque_Nm' stands beside reference.speed_rpm; the controller follows one of them");
   }
+  if (!c.takes_speed()) {
+    if (torque) {
+      refuse_at(root, "reference.torque_Nm",
+                "'reference.torque_Nm' does not go with " + c.kind +
+                    ", which holds a frequency; give reference.speed_rpm, or take rotor_flux_oriented");
+    }
+    return;
+  }
   check_named(s, root, "controller.speed_from", c.speed_from, true);
   const bool direct = c.orientation == "direct";
   if (direct && c.flux_from.empty()) {
