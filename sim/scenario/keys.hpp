@@ -64,7 +64,8 @@ struct Key {
 struct Section {
   std::string_view path;  // "run", "load[]", "sensors.current"
   Need need = Need::optional;
-  std::string_view selector{};  // the key whose word decides which others belong: "kind"
+  std::string_view selector{};   // the key whose word decides which others belong: "kind"
+  std::string_view rest_from{};  // the key that names a file which gives what is missing here: "file"
   void (*enter)(Scenario&, std::size_t count) = nullptr;
   std::string_view meaning{};
   [[nodiscard]] bool is_list() const { return path.ends_with("[]"); }
@@ -73,6 +74,9 @@ struct Section {
 const std::vector<Key>& scenario_keys();
 const std::vector<Section>& scenario_sections();
 const Section* find_section(std::string_view path);
+
+// What may stand beside [machine] in a machine file, as text but for the first.
+inline constexpr std::array<std::string_view, 3> machine_file_heads = {"format", "title", "source"};
 
 // Its parts: keys_plant.cpp, keys_drive.cpp, method_keys.cpp.
 void plant_keys(std::vector<Key>& keys);

@@ -17,7 +17,7 @@ void run_keys(std::vector<Key>& keys) {
   Rows top(keys, "");
   top.number("format", format_slot(), "", {1, 1}, "version of this format");
   top.word("title", AT(title), "what the run is called");
-  top.number("seed", AT(seed), "", {0, 9223372036854775807.0}, "every noise sample derives from it");
+  top.number("seed", AT(seed), "", {0}, "every noise sample derives from it");
   Rows k(keys, "run");
   k.number("duration_s", AT(run.duration_s), "s", positive(any_time), "whole multiple of the trace period")
       .must()

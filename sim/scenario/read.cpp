@@ -1,6 +1,7 @@
 // Files: what kind they are, where their machine files lie, and the way through parsing, overrides, filling and checks.
 #include "sim/scenario/read.hpp"
 
+#include <algorithm>
 #include <filesystem>
 #include <map>
 #include <utility>
@@ -40,8 +41,8 @@ FileKind kind_of(const Node& root) {
   const Node* machine = root.child("machine");
   bool alone = machine != nullptr;
   for (const Node& child : root.children) {
-    alone =
-        alone && (child.name == "machine" || child.name == "format" || child.name == "title" || child.name == "source");
+    const bool head = std::count(machine_file_heads.begin(), machine_file_heads.end(), child.name) > 0;
+    alone = alone && (head || child.name == "machine");
   }
   if (alone) return FileKind::machine;
   // A scenario that lacks [run] is still meant as one: let its reader name the missing key.
@@ -72,7 +73,7 @@ const Node& machine_table(const Node& root) {
     if (child.name == "format") {
       Scenario nowhere;
       store(nowhere, *find_key(nowhere, "format"), 0, child, "format");
-    } else if (child.name == "title" || child.name == "source") {
+    } else if (std::count(machine_file_heads.begin(), machine_file_heads.end(), child.name) > 0) {
       if (child.kind != Node::Kind::text)
         refuse(child.place, child.name, "'" + child.name + "' is " + found_text(child) + "; wanted is a string",
                "type");

@@ -12,7 +12,11 @@ const std::vector<Section>& scenario_sections() {
   static const std::vector<Section> table = {
       {.path = "", .meaning = "the file as a whole"},
       {.path = "run", .need = Need::required, .meaning = "time steps, method and start"},
-      {.path = "machine", .need = Need::required, .selector = "circuit", .meaning = "equivalent circuit and nameplate"},
+      {.path = "machine",
+       .need = Need::required,
+       .selector = "circuit",
+       .rest_from = "file",
+       .meaning = "equivalent circuit and nameplate"},
       {.path = "shaft", .need = Need::required, .meaning = "inertia and friction"},
       {.path = "load[]",
        .selector = "kind",

@@ -93,6 +93,7 @@ std::string check_summary(const CheckDocument& document) {
 }  // namespace
 
 int check_verb(const Request& request) {
+  if (request.wants_reference()) return print_reference(request);
   const FileKind kind = kind_of_file(request.file);
   CheckDocument document;
   document.file = request.file;

@@ -9,48 +9,13 @@
 
 #include "sim/record/trace.hpp"
 #include "sim/scenario/nearest.hpp"
+#include "tools/slipbench/command_table.hpp"
+#include "tools/slipbench/completion.hpp"
+#include "tools/slipbench/man_page.hpp"
 
 namespace slipbench {
 
 namespace {
-
-constexpr std::string_view caution =
-    "Caution: a simulation does not replace commissioning by qualified people under local codes.\n"
-    "Inverters hold charge after switch-off and motors start without warning: isolate, discharge, verify, guard.";
-
-struct VerbRow {
-  std::string_view name, meaning, example;
-};
-constexpr std::array<VerbRow, 3> verb_rows = {{
-    {"run", "simulate a scenario once and print the summary",
-     "slipbench run configs/scenarios/conveyor_hot_rotor.toml --set belief.rotor_resistance=1.5 --figure run.svg"},
-    {"check", "read and validate a scenario or machine file, run nothing",
-     "slipbench check configs/scenarios/hoist_lowering.toml --set run.plant_step_s=5e-6"},
-    {"compare", "judge all estimators of a scenario over paired noise runs",
-     "slipbench compare configs/scenarios/conveyor_hot_rotor.toml --runs 50 --in-loop --figure compare.svg"},
-}};
-
-// Every option once: the verbs it means something for, and whether it takes a value.
-struct OptionRow {
-  std::string_view name, value, verbs, meaning;
-};
-constexpr std::array<OptionRow, 11> option_rows = {{
-    {"--set", "KEY=VALUE", "run check compare", "set a key of the file, dotted; VALUE is TOML or text; repeatable"},
-    {"--seed", "N", "run check compare", "seed of every noise; wins over the file and --set"},
-    {"--run", "R", "run", "take noise run R, as `compare` numbers them from 0"},
-    {"--runs", "N", "compare", "noise runs (20)"},
-    {"--in-loop", "", "compare", "each estimator closes the speed loop in turn, instead of all riding along"},
-    {"--threads", "N", "compare", "threads (all cores); the results do not depend on it"},
-    {"--trace", "FILE.csv|FILE.h5", "run", "write the trace, as CSV or HDF5"},
-    {"--figure", "FILE.svg", "run compare", "draw the result"},
-    {"--json", "", "run check compare", "one JSON document on standard output, nothing else"},
-    {"--quiet", "", "run check compare", "print nothing but errors"},
-    {"--progress", "", "run compare", "show progress on standard error even if it is no terminal"},
-}};
-
-bool means_something(const OptionRow& option, std::string_view verb) {
-  return (" " + std::string(option.verbs) + " ").find(" " + std::string(verb) + " ") != std::string::npos;
-}
 
 [[noreturn]] void refuse(std::string_view key, const std::string& message) {
   throw InputError("command line", std::string(key), message, "usage");
@@ -70,13 +35,13 @@ Whole whole_number(std::string_view option, const std::string& text, Whole low, 
 
 [[noreturn]] void refuse_verb(const std::string& word) {
   std::vector<std::string_view> names;
-  for (const VerbRow& row : verb_rows) names.push_back(row.name);
+  for (const VerbRow& row : verb_rows()) names.push_back(row.name);
   refuse(word, fmt::format("unknown verb '{}'; there are {}; the nearest is '{}'", word, listed(names),
                            nearest(word, names)));
 }
 
 bool is_verb(std::string_view word) {
-  return std::any_of(verb_rows.begin(), verb_rows.end(), [&](const VerbRow& row) { return row.name == word; });
+  return std::any_of(verb_rows().begin(), verb_rows().end(), [&](const VerbRow& row) { return row.name == word; });
 }
 
 [[noreturn]] void refuse_extra(const std::string& verb, const std::string& word) {
@@ -85,13 +50,44 @@ bool is_verb(std::string_view word) {
   }
   const std::string name = word.substr(0, word.find('='));
   std::vector<std::string_view> known = {"--help"};
-  for (const OptionRow& row : option_rows) {
+  for (const OptionRow& row : option_rows()) {
     if (row.name == name) {
       refuse(name, fmt::format("{} means nothing for {}; it belongs to: {}", name, verb, row.verbs));
     }
-    if (means_something(row, verb)) known.push_back(row.name);
+    if (row.for_verb(verb)) known.push_back(row.name);
   }
   refuse(name, fmt::format("unknown option '{}' of {}; the nearest is {}", name, verb, nearest(name, known)));
+}
+
+void want_word(const OptionRow& row, const std::string& word) {
+  const std::vector<std::string_view> words = row.words();
+  if (std::count(words.begin(), words.end(), word) > 0) return;
+  refuse(row.name, fmt::format("{} '{}': expected {}; the nearest is {}", row.name, word, fmt::join(words, " or "),
+                               nearest(word, words)));
+}
+
+// --keys and --schema tell of the format itself: no file, and no change to one, goes with them.
+void check_reference(const Request& r) {
+  if (!r.wants_reference()) {
+    if (r.markdown) refuse("--markdown", "--markdown goes with --keys: slipbench check --keys --markdown");
+    return;
+  }
+  const std::string name = r.schema.empty() ? "--keys" : "--schema";
+  if (!r.schema.empty()) {
+    for (const OptionRow& row : option_rows()) {
+      if (row.name == name) want_word(row, r.schema);
+    }
+  }
+  if (!r.file.empty()) {
+    refuse(name, fmt::format("{} tells what any file may hold and reads none: leave out '{}', or leave out {} to check "
+                             "that file",
+                             name, r.file, name));
+  }
+  if (!r.overrides.empty()) refuse("--set", fmt::format("--set means nothing with {}: no file is read", name));
+  if (r.seed) refuse("--seed", fmt::format("--seed means nothing with {}: no file is read", name));
+  if (r.markdown && (r.json || !r.schema.empty())) {
+    refuse("--markdown", fmt::format("--markdown stands beside {}: one form at a time", r.json ? "--json" : name));
+  }
 }
 
 // What was given for each option.
@@ -133,40 +129,86 @@ Request request_of(const std::string& verb, Given& given) {
   if (!r.figure.empty() && !r.figure.ends_with(".svg") && !r.figure.starts_with("/dev/")) {
     refuse("--figure", fmt::format("--figure '{}': expected a name that ends in .svg", r.figure));
   }
-  if (r.file.empty()) refuse("FILE", fmt::format("{} needs a FILE, as in: slipbench {} demo.toml", verb, verb));
+  r.keys = given.flags["--keys"], r.markdown = given.flags["--markdown"];
+  if (flag("--schema")) r.schema = text("--schema").empty() ? "scenario" : text("--schema");
+  check_reference(r);
+  if (r.file.empty() && !r.wants_reference()) {
+    refuse("FILE", fmt::format("{} needs a FILE, as in: slipbench {} demo.toml", verb, verb));
+  }
   return r;
+}
+
+// The part of help, and of parsing, that belongs to one verb.
+void add_verb(CLI::App& app, const VerbRow& verb, Given& given) {
+  CLI::App* sub = app.add_subcommand(std::string(verb.name), std::string(verb.meaning));
+  sub->allow_extras();
+  sub->add_option("FILE", given.file, std::string(verb.file))->type_name("");
+  for (const OptionRow& row : option_rows()) {
+    if (!row.for_verb(verb.name)) continue;
+    if (row.value.empty()) {
+      sub->add_flag(std::string(row.name), given.flags[row.name], std::string(row.meaning));
+    } else {  // one value each time it is given, so that FILE may follow
+      sub->add_option(std::string(row.name), given.values[row.name], std::string(row.meaning))
+          ->type_name("")
+          ->option_text(std::string(row.value))
+          ->type_size(row.value_may_be_left_out() ? 0 : 1, 1)
+          ->allow_extra_args(false);
+    }
+  }
+  const char* heading = verb.examples.size() > 1 ? "Examples" : "Example";
+  sub->footer(fmt::format("{}:\n  {}\n\n{}", heading, fmt::join(verb.examples, "\n  "), caution));
+}
+
+// What stands in place of a verb: the text it asks for.
+std::optional<std::string> program_text(Given& given, const std::string& verb) {
+  const std::vector<std::string>& shells = given.values["--completion"];
+  const bool man = given.flags["--man"];
+  if (shells.empty() && !man) return {};
+  const std::string name = man ? "--man" : "--completion";
+  if (!verb.empty() || shells.size() + (man ? 1 : 0) > 1) {
+    refuse(name, fmt::format("{} stands alone, as in: slipbench {}{}", name, name, man ? "" : " bash"));
+  }
+  if (man) return man_page();
+  for (const OptionRow& row : program_rows()) {
+    if (row.name == name) want_word(row, shells.front());
+  }
+  return shells.front() == "zsh" ? zsh_completion() : bash_completion();
+}
+
+std::string verb_wanted() {
+  std::vector<std::string_view> names;
+  for (const VerbRow& row : verb_rows()) names.push_back(row.name);
+  return fmt::format("a verb is needed: {}; `slipbench --help` tells more", listed(names));
 }
 
 }  // namespace
 
 CommandLine parse_command_line(const std::vector<std::string>& arguments) {
-  CLI::App app("slipbench: a bench in software for induction-motor drives and their estimators", "slipbench");
-  app.set_version_flag("--version", std::string("slipbench ") + SLIPBENCH_VERSION, "print the version");
+  CLI::App app(fmt::format("slipbench: {}", program_meaning), "slipbench");
   Given given;
-  std::string footer = "Examples:\n";
-  for (const VerbRow& verb : verb_rows) {
-    CLI::App* sub = app.add_subcommand(std::string(verb.name), std::string(verb.meaning));
-    sub->allow_extras();
-    sub->add_option("FILE", given.file, verb.name == "check" ? "scenario or machine file" : "scenario file")
-        ->type_name("");
-    for (const OptionRow& row : option_rows) {
-      if (!means_something(row, verb.name)) continue;
-      if (row.value.empty()) {
-        sub->add_flag(std::string(row.name), given.flags[row.name], std::string(row.meaning));
-      } else {  // one value each time it is given, so that FILE may follow
-        sub->add_option(std::string(row.name), given.values[row.name], std::string(row.meaning))
-            ->type_name("")
-            ->option_text(std::string(row.value))
-            ->type_size(1)
-            ->allow_extra_args(false);
-      }
+  for (const OptionRow& row : program_rows()) {
+    const std::string name(row.name), meaning(row.meaning);
+    if (name == "--help") {
+      app.set_help_flag("-h,--help", meaning);
+    } else if (name == "--version") {
+      app.set_version_flag(name, std::string("slipbench ") + SLIPBENCH_VERSION, meaning);
+    } else if (row.value.empty()) {
+      app.add_flag(name, given.flags[row.name], meaning);
+    } else {
+      app.add_option(name, given.values[row.name], meaning)
+          ->type_name("")
+          ->option_text(std::string(row.value))
+          ->allow_extra_args(false);
     }
-    sub->footer(fmt::format("Example:\n  {}\n\n{}", verb.example, caution));
-    footer += fmt::format("  {}\n", verb.example);
+  }
+  std::string footer = "Examples:\n";
+  for (const VerbRow& verb : verb_rows()) {
+    add_verb(app, verb, given);
+    for (const std::string_view example : verb.examples) footer += fmt::format("  {}\n", example);
   }
   app.footer(fmt::format("{}\n{}", footer, caution));
 
-  if (arguments.empty()) refuse("VERB", "a verb is needed: run, check or compare; `slipbench --help` tells more");
+  if (arguments.empty()) refuse("VERB", verb_wanted());
   if (const std::string& first = arguments.front(); !first.starts_with('-') && !is_verb(first)) {
     refuse_verb(first);
   }
@@ -187,7 +229,8 @@ CommandLine parse_command_line(const std::vector<std::string>& arguments) {
     refuse("", error.what());
   }
   const auto chosen = app.get_subcommands();
-  if (chosen.empty()) refuse("VERB", "a verb is needed: run, check or compare; `slipbench --help` tells more");
+  if (auto text = program_text(given, chosen.empty() ? "" : chosen.front()->get_name())) return {{}, std::move(*text)};
+  if (chosen.empty()) refuse("VERB", verb_wanted());
   CLI::App& sub = *chosen.front();
   if (const auto extras = app.remaining(true); !extras.empty()) refuse_extra(sub.get_name(), extras.front());
   return {request_of(sub.get_name(), given), ""};

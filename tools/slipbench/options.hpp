@@ -20,6 +20,9 @@ struct Request {
   std::uint32_t runs = 20;      // compare: --runs N
   bool in_loop = false;
   unsigned threads = 0;  // 0: all cores
+  bool keys = false, markdown = false;
+  std::string schema;  // check: of "scenario" or "machine" files; "": none
+  [[nodiscard]] bool wants_reference() const { return keys || !schema.empty(); }  // then there is no file
 };
 
 struct CommandLine {

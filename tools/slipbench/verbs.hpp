@@ -12,6 +12,8 @@ enum ExitStatus : int { done = 0, bad_result = 1, bad_input = 2, outside_failed 
 int run_verb(const Request& request);
 int check_verb(const Request& request);
 int compare_verb(const Request& request);
+// check --keys, check --schema.
+int print_reference(const Request& request);
 
 // Throws InputError when the file is of another kind than the verb wants.
 void want_scenario(const Request& request);

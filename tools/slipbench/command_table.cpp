@@ -1,0 +1,89 @@
+#include "tools/slipbench/command_table.hpp"
+
+#include <string>
+
+namespace slipbench {
+
+std::span<const VerbRow> verb_rows() {
+  static const std::vector<VerbRow> rows = {
+      {"run",
+       "simulate a scenario once and print the summary",
+       "scenario file",
+       {"slipbench run configs/scenarios/conveyor_hot_rotor.toml --set belief.rotor_resistance=1.5 --figure run.svg"}},
+      {"check",
+       "read and validate a scenario or machine file, run nothing; or tell what such files may hold",
+       "scenario or machine file",
+       {"slipbench check configs/scenarios/hoist_lowering.toml --set run.plant_step_s=5e-6",
+        "slipbench check --keys | grep rotor_resistance"}},
+      {"compare",
+       "judge all estimators of a scenario over paired noise runs",
+       "scenario file",
+       {"slipbench compare configs/scenarios/conveyor_hot_rotor.toml --runs 10 --in-loop --figure compare.svg"}},
+  };
+  return rows;
+}
+
+std::span<const OptionRow> option_rows() {
+  static constexpr OptionRow rows[] = {
+      {"--set", "KEY=VALUE", "run check compare", "set a key of the file, dotted; VALUE is TOML or text; repeatable",
+       Takes::key},
+      {"--seed", "N", "run check compare", "seed of every noise; wins over the file and --set", Takes::number},
+      {"--run", "R", "run", "take noise run R, as `compare` numbers them from 0", Takes::number},
+      {"--runs", "N", "compare", "noise runs (20)", Takes::number},
+      {"--in-loop", "", "compare", "each estimator closes the speed loop in turn, instead of all riding along"},
+      {"--threads", "N", "compare", "threads (all cores); the results do not depend on it", Takes::number},
+      {"--trace", "FILE.csv|FILE.h5", "run", "write the trace, as CSV or HDF5", Takes::file},
+      {"--figure", "FILE.svg", "run compare", "draw the result", Takes::file},
+      {"--keys", "", "check", "in place of FILE: every key of a scenario, with range, default and meaning", {}, true},
+      {"--markdown", "", "check", "with --keys: as Markdown tables"},
+      {"--schema", "[scenario|machine]", "check", "in place of FILE: JSON Schema of such files, for TOML editors",
+       Takes::word, true},
+      {"--json", "", "run check compare", "one JSON document on standard output, nothing else"},
+      {"--quiet", "", "run check compare", "print nothing but errors"},
+      {"--progress", "", "run compare", "show progress on standard error even if it is no terminal"},
+  };
+  return rows;
+}
+
+std::span<const OptionRow> program_rows() {
+  static constexpr OptionRow rows[] = {
+      {"--help", "", "", "help; after a verb: its options and an example"},
+      {"--version", "", "", "print the version"},
+      {"--completion", "bash|zsh", "", "print the shell's completion script", Takes::word},
+      {"--man", "", "", "print the man page, as roff"},
+  };
+  return rows;
+}
+
+std::span<const StatusRow> status_rows() {
+  static constexpr StatusRow rows[] = {
+      {0, "done"},
+      {1, "it ran, but the result is bad: diverged, or an estimator lost in `run`"},
+      {2, "bad usage, or a bad or missing input file"},
+      {3, "something outside failed: an output file, standard output, the network"},
+      {130, "interrupted; what was done is kept"},
+  };
+  return rows;
+}
+
+bool OptionRow::for_verb(std::string_view verb) const {
+  return (" " + std::string(verbs) + " ").find(" " + std::string(verb) + " ") != std::string::npos;
+}
+
+std::vector<std::string_view> OptionRow::words() const {
+  std::vector<std::string_view> words;
+  std::string_view rest = value_may_be_left_out() ? value.substr(1, value.size() - 2) : value;
+  while (!rest.empty()) {
+    words.push_back(rest.substr(0, rest.find('|')));
+    rest.remove_prefix(words.back().size() + (rest.size() > words.back().size() ? 1 : 0));
+  }
+  return words;
+}
+
+std::vector<std::string_view> OptionRow::endings() const {
+  std::vector<std::string_view> endings = words();
+  for (std::string_view& ending : endings) ending.remove_prefix(std::string_view("FILE").size());
+  return endings;
+}
+
+}  // namespace slipbench
