@@ -12,6 +12,7 @@
 // flux that stands still; measured, R_s i would be fed back whole and that flux never die out. k_d gives way to
 // quick torque alone and damps the light-load oscillation of voltage-fed machines. With s = 1 slip compensation is the integral
 // part of a speed control: w_slip is about T over the machine's own stiffness, so its filter is kept slower than that loop.
+// The legs' dead time goes by the current measured now: a filtered one lags, and its sign feeds the light-load oscillation.
 // Near zero stator frequency (braking at slip speed) the voltage tells nothing of the flux, here as anywhere: below about 2 Hz
 // a braking machine is not held.
 //
@@ -110,7 +111,7 @@ struct VoltsPerHertz {
     const Vec2<Real> turning{c.boost * load.i_x_per_flux * s.flux, c.boost * s.current.y + s.stator_frequency * s.flux};
     const Vec2<Real> wanted = select(hold, standing, turning);
     const Vec2<Real> limited = min(one, limit / max(magnitude(wanted), Real(1e-3))) * wanted;
-    const LegCommand<Real> legs = command_legs(c.legs, angle, s.stator_frequency, limited, s.current, m.dc_link);
+    const LegCommand<Real> legs = command_legs(c.legs, angle, s.stator_frequency, limited, current, m.dc_link);
 
     const Real turned = s.angle + c.period * s.stator_frequency, turn(6.28318530717958647692);
     s.angle = turned - turn * floor(turned / turn + half);
