@@ -5,6 +5,7 @@
 #include <CLI/CLI.hpp>
 #include <algorithm>
 #include <charconv>
+#include <cmath>
 #include <map>
 
 #include "sim/scenario/nearest.hpp"
@@ -33,7 +34,7 @@ constexpr std::array<VerbRow, 3> verb_rows = {{
 struct OptionRow {
   std::string_view name, value, verbs, meaning;
 };
-constexpr std::array<OptionRow, 11> option_rows = {{
+constexpr std::array<OptionRow, 14> option_rows = {{
     {"--set", "KEY=VALUE", "run check compare", "set a key of the file, dotted; VALUE is TOML or text; repeatable"},
     {"--seed", "N", "run check compare", "seed of every noise; wins over the file and --set"},
     {"--run", "R", "run", "take noise run R, as `compare` numbers them from 0"},
@@ -42,6 +43,9 @@ constexpr std::array<OptionRow, 11> option_rows = {{
     {"--threads", "N", "compare", "threads (all cores); the results do not depend on it"},
     {"--trace", "FILE.csv", "run", "write the trace"},
     {"--figure", "FILE.svg", "run compare", "draw the result"},
+    {"--publish", "ENDPOINT", "run", "publish the run as it happens: tcp://HOST:PORT, ipc://PATH or PORT (loopback)"},
+    {"--publish-wait", "N", "run", "start when N subscribers are there"},
+    {"--pace", "FACTOR", "run", "run no faster than FACTOR times real time"},
     {"--json", "", "run check compare", "one JSON document on standard output, nothing else"},
     {"--quiet", "", "run check compare", "print nothing but errors"},
     {"--progress", "", "run compare", "show progress on standard error even if it is no terminal"},
@@ -63,6 +67,15 @@ Whole whole_number(std::string_view option, const std::string& text, Whole low, 
   const auto [end, error] = std::from_chars(text.data(), text.data() + text.size(), value);
   if (error != std::errc{} || end != text.data() + text.size() || value < low || value > high) {
     refuse(option, fmt::format("{} '{}': expected a whole number from {} to {}", option, text, low, high));
+  }
+  return value;
+}
+
+double positive_number(std::string_view option, const std::string& text) {
+  double value = 0.0;
+  const auto [end, error] = std::from_chars(text.data(), text.data() + text.size(), value);
+  if (error != std::errc{} || end != text.data() + text.size() || !(value > 0.0) || !std::isfinite(value)) {
+    refuse(option, fmt::format("{} '{}': expected a number above 0, as in {} 1.0", option, text, option));
   }
   return value;
 }
@@ -119,6 +132,11 @@ Request request_of(const std::string& verb, Given& given) {
   if (flag("--run")) r.noise_run = whole_number<std::uint32_t>("--run", text("--run"), 0, UINT32_MAX);
   if (flag("--runs")) r.runs = whole_number<std::uint32_t>("--runs", text("--runs"), 1, 1000000);
   if (flag("--threads")) r.threads = whole_number<unsigned>("--threads", text("--threads"), 1, 1024);
+  if (flag("--publish")) r.publish = text("--publish");
+  if (flag("--publish-wait"))
+    r.publish_wait = whole_number<unsigned>("--publish-wait", text("--publish-wait"), 1, 1024);
+  if (r.publish_wait > 0 && !r.publish) refuse("--publish-wait", "--publish-wait needs --publish ENDPOINT beside it");
+  if (flag("--pace")) r.pace = positive_number("--pace", text("--pace"));
   for (const std::string& setting : given.values["--set"]) {
     const std::size_t equals = setting.find('=');
     if (equals == std::string::npos || equals == 0) {
