@@ -53,7 +53,7 @@ const read = {
 };
 
 async function listen(endpoint, seconds) {
-  const socket = new Subscriber({linger: 0, receiveTimeout: 1000 * seconds});
+  const socket = new Subscriber({linger: 0});
   socket.subscribe();
   socket.connect(endpoint);
   try {
@@ -62,8 +62,10 @@ async function listen(endpoint, seconds) {
       const word = topic.toString("ascii").split("/")[0];
       seen.first_word ??= word;
       const m = decode(body);
-      if (word === "describe") read.describe(m);
-      else if (word in read && m.run === run) read[word](m);
+      if (word === "describe") {
+        read.describe(m);
+        socket.receiveTimeout = 1000 * seconds;
+      } else if (word in read && m.run === run) read[word](m);
       else if (word in read) seen.unnamed += 1;  // not described yet
     }
   } catch (error) {

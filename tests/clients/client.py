@@ -1,7 +1,7 @@
 #!/usr/bin/env python3
 """A client of the stream, written from sim/stream/README.md alone, with pyzmq and msgpack only.
 
-usage: client.py ENDPOINT [SECONDS]     gives up after SECONDS (5) without a message
+usage: client.py ENDPOINT [SECONDS]     waits for a run, then gives up after SECONDS (5) without a message
 
 Prints one JSON object: what came and what was missed. Each column has a SHA-256, over its float64 in little-endian order,
 a NaN as 7ff8000000000000; `sha256` is over these digests in the order of the columns. Exit status 0 after `end`, 1 without
@@ -67,7 +67,6 @@ class Listener:
     def listen(self, endpoint, silence_s):
         socket = zmq.Context.instance().socket(zmq.SUB)
         socket.setsockopt(zmq.LINGER, 0)
-        socket.setsockopt(zmq.RCVTIMEO, int(1000 * silence_s))
         socket.subscribe(b"")
         socket.connect(endpoint)
         try:
@@ -78,6 +77,7 @@ class Listener:
                 m = msgpack.unpackb(body)
                 if word == "describe":
                     self.describe(m)
+                    socket.setsockopt(zmq.RCVTIMEO, int(1000 * silence_s))
                 elif word in ("samples", "end"):
                     if m["run"] == self.run:
                         getattr(self, word)(m)

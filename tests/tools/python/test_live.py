@@ -32,8 +32,8 @@ class Live(unittest.TestCase):
         self.endpoint, self.picture = self.folder.endpoint, str(self.folder.path / "out.png")
         self.addCleanup(plt.close, "all")
 
-    def publish(self, scenario, *arguments):
-        return start(self, "run", scenario, "--publish", self.endpoint, "--publish-wait", 1, *arguments)
+    def publish(self, scenario, *arguments, wait=1):
+        return start(self, "run", scenario, "--publish", self.endpoint, "--publish-wait", wait, *arguments)
 
     def live(self, *arguments, status=0):
         error = io.StringIO()
@@ -70,14 +70,21 @@ class Live(unittest.TestCase):
         self.assertIn("done: 2001 rows", figure.figure._suptitle.get_text())  # get_suptitle() comes with matplotlib 3.8
 
     def test_a_stopped_publisher_is_given_up_and_its_picture_kept(self):
-        run = self.publish(CONVEYOR, "--pace", 1)
-        threading.Timer(1.0, run.send_signal, [signal.SIGSTOP]).start()
+        run = self.publish(CONVEYOR, "--pace", 1, wait=2)
+
+        def stop_it():
+            with Stream(self.endpoint) as stream:
+                next(block for block in stream if block.first_tick > 500)
+                run.send_signal(signal.SIGSTOP)
+        stopper = threading.Thread(target=stop_it)
+        stopper.start()
         error = self.live("--save", self.picture, "--timeout", "2", status=3)
+        stopper.join()
         self.assertIn("nothing for 2 s and no end", error)
         self.assertGreater(colours(self.picture)[COLOURS[0]], 100)
 
     def test_keys_and_closing(self):
-        self.publish(CONVEYOR, "--pace", 1)
+        self.publish(CONVEYOR, "--pace", 0.1)  # far longer than 30 pictures take
         figure = Figure(plt, window_s=5.0)
         figure.shown = True  # as on a screen: draws under way
         drawn = []
