@@ -9,7 +9,7 @@ import re
 import sys
 
 FOLDERS = ("plant", "estimators", "controllers", "sim", "tools", "tests", "configs", "cmake")
-SKIPPED = {"build", "out", "node_modules", "__pycache__"}
+SKIPPED = {"build", "out", "node_modules", "__pycache__", "slipbench_client.egg-info"}
 SOURCES = (".hpp", ".cpp", ".h", ".c", ".py", ".cmake", ".ts", ".js")
 LONGEST = 400  # lines; past that a file holds two ideas
 
