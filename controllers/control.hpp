@@ -3,6 +3,7 @@
 //
 //   struct Controller {
 //     static constexpr std::string_view kind;
+//     static constexpr bool takes_speed;   // from a sensor or an estimator: its scenario may say which
 //     static constexpr std::array<Setting, n> settings;
 //     template <class Real> struct Constants { ...; SLIPBENCH_FIELDS(...) };
 //     template <class Real> struct State { ...; SLIPBENCH_FIELDS(...) };

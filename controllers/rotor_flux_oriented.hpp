@@ -21,6 +21,7 @@ namespace slipbench {
 
 struct RotorFluxOriented {
   static constexpr std::string_view kind = "rotor_flux_oriented";
+  static constexpr bool takes_speed = true;
   static constexpr std::array<Setting, 7> settings{{
       {"current_bandwidth_Hz", "Hz", 1.0, 5000.0, derived,
        "bandwidth alpha_c / 2 pi of the current loop; default 0.06 / ((d + 1/2) T), at most 500 Hz"},

@@ -31,6 +31,7 @@ namespace slipbench {
 
 struct VoltsPerHertz {
   static constexpr std::string_view kind = "volts_per_hertz";
+  static constexpr bool takes_speed = false;
   static constexpr std::array<Setting, 7> settings{{
       {"frequency_ramp_Hz_per_s", "Hz/s", 0.01, 1e5, derived,
        "how fast the frequency may change; default what half the rated torque gives the inertia; never faster than "

@@ -70,10 +70,10 @@ void check_controller(const Scenario& s, const Node& root) {
               "'controller.flux_from' goes with orientation = \"direct\" only; indirect orientation takes its angle "
               "from slip and speed");
   }
-  if (c.speed_from == "measured" && s.sensors.speed.kind == "none" && (speed || !direct)) {
+  if (c.speed_from == "measured" && s.sensors.speed.kind == "none") {
     refuse_at(root, "controller.speed_from",
               std::string("'controller.speed_from' is \"measured\", but there is no speed sensor; ") +
-                  (speed ? "the speed loop" : "indirect orientation") +
+                  (speed ? "the speed loop" : direct ? "the current loop's decoupling" : "indirect orientation") +
                   " needs one: set sensors.speed.kind, or name an estimator here");
   }
 }

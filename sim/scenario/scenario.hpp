@@ -94,7 +94,7 @@ struct ControllerSettings {
   std::int64_t delay_periods = 1;
   bool dead_time_compensation = true;
   Settings settings;                                                                // of that kind
-  [[nodiscard]] bool takes_speed() const { return kind == "rotor_flux_oriented"; }  // from a sensor or an estimator
+  [[nodiscard]] bool takes_speed() const;  // from a sensor or an estimator
 };
 
 struct EstimatorSettings {

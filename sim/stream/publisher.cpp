@@ -135,6 +135,7 @@ void StreamPublisher::serve() {
     const bool again = now >= next_describe;
     if (again) next_describe = now + describe_every;
     describe(again);
+    longest_queue_.store(socket_.longest_queue(), std::memory_order_relaxed);
     if (const Block* block = ring_->front()) {
       publish(*block);
       ring_->pop();
@@ -172,7 +173,7 @@ void StreamPublisher::publish(const Block& block) {
   }
   dropped_ += message.dropped;
   MessageStore::release(message);
-  queued_bytes_.store(socket_.store().bytes(), std::memory_order_relaxed);
+  buffer_bytes_.store(socket_.store().bytes(), std::memory_order_relaxed);
 }
 
 void StreamPublisher::say_end() {

@@ -9,6 +9,7 @@
 #include <thread>
 
 #include "sim/engine/observer.hpp"
+#include "sim/stream/figures.hpp"
 #include "sim/stream/socket.hpp"
 
 namespace slipbench {
@@ -21,12 +22,6 @@ struct StreamLabel {
 struct StreamLimits {
   std::size_t store_bytes = 64 << 20;  // blocks not sent yet
   std::size_t queue_bytes = 64 << 20;  // of one subscriber; all together hold at most four times this
-};
-
-struct StreamFigures {
-  std::string endpoint;
-  std::int64_t subscribers = 0;  // most at a time
-  std::int64_t blocks = 0, rows = 0, dropped = 0;
 };
 
 class StreamPublisher : public RunObserver {
@@ -53,9 +48,9 @@ class StreamPublisher : public RunObserver {
 
   [[nodiscard]] std::size_t blocks_in_store() const { return ring_ ? ring_->blocks() : 0; }
   [[nodiscard]] std::size_t blocks_waiting() const { return ring_ ? ring_->in_use() : 0; }
-  [[nodiscard]] std::size_t bytes() const {
-    return (ring_ ? ring_->bytes() : 0) + queued_bytes_.load();
-  }  // all buffers
+  // From any thread, a moment old: bytes of all buffers, and in the longest queue of a subscriber.
+  [[nodiscard]] std::size_t bytes() const { return (ring_ ? ring_->bytes() : 0) + buffer_bytes_.load(); }
+  [[nodiscard]] std::size_t longest_queue() const { return longest_queue_.load(); }
 
  private:
   void close_block();
@@ -80,7 +75,7 @@ class StreamPublisher : public RunObserver {
   std::atomic<bool> hand_over_{false};  // by the sender: a tenth of a second is over
   std::atomic<bool> over_{false};       // by the run: nothing follows
   std::string status_ = "interrupted";
-  std::atomic<std::size_t> queued_bytes_{0};
+  std::atomic<std::size_t> buffer_bytes_{0}, longest_queue_{0};
 
   // The sending thread.
   std::int64_t expected_ = 0, dropped_ = 0;  // the next block's sequence

@@ -128,7 +128,6 @@ bool StreamSocket::send(int number, Subscriber& to, Topic topic, Message& messag
   const std::size_t limit = std::min(queue_bytes_, 4 * queue_bytes_ / subscribers_.size());
   const bool room = to.queued_bytes.load(std::memory_order_acquire) + message.size <= limit;
   if (topic == Topic::samples) {
-    to.full = !room;
     to.started |= room;
     if (!room) to.miss(1);
   }
@@ -142,14 +141,24 @@ bool StreamSocket::send(int number, Subscriber& to, Topic topic, Message& messag
   return true;
 }
 
+std::size_t StreamSocket::longest_queue() const {
+  std::size_t longest = 0;
+  for (const auto& [number, s] : subscribers_)
+    longest = std::max(longest, s.queued_bytes.load(std::memory_order_acquire));
+  return longest;
+}
+
 void StreamSocket::flush() {
   using namespace std::chrono;
   const auto begun = steady_clock::now();
-  const auto waited_for = [&](const Subscriber& s) {
-    return s.queued_bytes.load(std::memory_order_acquire) > 0 &&
-           steady_clock::now() - begun < (s.full ? milliseconds(200) : milliseconds(2000));
-  };
-  while (std::any_of(subscribers_.begin(), subscribers_.end(), [&](const auto& s) { return waited_for(s.second); })) {
+  for (auto now = begun; now - begun < milliseconds(2000); now = steady_clock::now()) {
+    bool waiting = false;
+    for (auto& [number, s] : subscribers_) {
+      const std::size_t queued = s.queued_bytes.load(std::memory_order_acquire);
+      if (now == begun || queued != s.seen_queued) s.seen_queued = queued, s.moved = now;
+      waiting |= queued > 0 && (s.missed == 0 || now - s.moved < milliseconds(200));
+    }
+    if (!waiting) return;
     take_subscriptions();
     wait(milliseconds(1));
   }

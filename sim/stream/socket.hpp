@@ -26,13 +26,15 @@ struct Subscriber {
   std::array<int, topic_names.size()> subscriptions{};  // that cover each topic
   std::atomic<std::size_t> queued_bytes{0};
   bool described = false;
-  bool started = false, full = false;  // it was given its first block; the last one found no room
-  std::int64_t missed = 0;             // blocks since its first
+  bool started = false;         // it was given its first block
+  std::int64_t missed = 0;      // blocks since its first
+  std::size_t seen_queued = 0;  // by flush(), and since when it is so
+  std::chrono::steady_clock::time_point moved;
 
   void miss(std::int64_t blocks) {
     if (started) missed += blocks;
   }
-  void forget() { started = full = false, missed = 0; }
+  void forget() { started = false, missed = 0; }
   [[nodiscard]] bool wants(Topic topic) const { return subscriptions[static_cast<std::size_t>(topic)] > 0; }
 };
 
@@ -46,7 +48,7 @@ class StreamSocket {
   void wait(std::chrono::milliseconds atmost);  // until one comes
   // Queues a body for one subscriber, without ever waiting. A block that finds no room is counted in `missed`: false.
   bool send(int number, Subscriber& to, Topic topic, Message& message);
-  // Waits until all queues are empty: 2 s at most, 0.2 s for those known not to keep up.
+  // Waits until all queues are empty: 2 s at most, and for one who has missed blocks only while it moves: 0.2 s.
   void flush();
   void close(std::chrono::milliseconds linger);
 
@@ -54,6 +56,7 @@ class StreamSocket {
   [[nodiscard]] const std::string& endpoint() const { return bound_; }
   [[nodiscard]] std::int64_t present() const { return present_; }  // subscriptions that cover `samples`
   [[nodiscard]] std::int64_t most_present() const { return most_present_; }
+  [[nodiscard]] std::size_t longest_queue() const;  // bytes
   [[nodiscard]] MessageStore& store() { return store_; }
 
  private:

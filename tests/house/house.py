@@ -41,7 +41,8 @@ STRANGER = "tests/outside"
 LIBRARIES = (
     (r"toml(\+\+|\.h|pp)", ("sim/scenario",), "toml++"),
     (r"(hdf5|H5|highfive)", ("sim/record",), "HDF5"),
-    (r"(zmq|zmq_addon|cppzmq)", ("sim/stream",), "ZeroMQ"),
+    (r"(zmq|zmq_addon|cppzmq)", ("sim/stream", "tests/sim/stream", "tools/bench"), "ZeroMQ"),
+    (r"msgpack", ("sim/stream", "tests/sim/stream"), "MessagePack"),
     (r"sqlite3", ("sim/sweep",), "SQLite"),
     (r"CLI/", ("tools",), "CLI11"),
     (r"nlohmann/", ("tools", "tests"), "JSON"),

@@ -8,7 +8,7 @@
 #include "sim/engine/simulate.hpp"
 #include "sim/score/figures.hpp"
 #include "sim/score/means.hpp"
-#include "sim/stream/publisher.hpp"
+#include "sim/stream/figures.hpp"
 
 namespace slipbench {
 
