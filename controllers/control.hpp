@@ -1,8 +1,9 @@
-// A controller's door in C++, over any number type: what it sees at control tick k and what it commands.
-// SI units; motor convention; space vectors amplitude-invariant in the stationary frame.
+// A controller's door in C++, over any number type: what it sees at control tick k and what it commands. For double they have
+// the very layout of controller_abi.h, which says what each field means.
 //
 //   struct Controller {
 //     static constexpr std::string_view kind;
+//     static constexpr bool takes_speed;   // from a sensor or an estimator: its scenario may say which
 //     static constexpr std::array<Setting, n> settings;
 //     template <class Real> struct Constants { ...; SLIPBENCH_FIELDS(...) };
 //     template <class Real> struct State { ...; SLIPBENCH_FIELDS(...) };
@@ -14,8 +15,11 @@
 #pragma once
 
 #include <array>
+#include <cstddef>
+#include <cstdint>
 #include <string_view>
 
+#include "controllers/controller_abi.h"
 #include "plant/math/elementary.hpp"
 #include "plant/math/frames.hpp"
 #include "plant/modulation.hpp"
@@ -26,22 +30,21 @@ namespace slipbench {
 
 template <class Real>
 struct Measurement {
-  Vec2<Real> current;                     // measured at k, A
-  Real dc_link{};                         // measured at k, V
-  Real speed{};                           // mechanical rad/s, from the sensor or the estimator that closes the loop
-  Real rotor_flux{}, rotor_flux_angle{};  // of the estimator named by flux_from (direct orientation), else 0
-  Real speed_reference{};                 // rad/s (speed control)
-  Real torque_reference{};                // N m (torque control)
+  std::uint32_t size = sizeof(Measurement);
+  std::uint32_t version = SLIPBENCH_CONTROLLER_ABI_VERSION;
+  std::int64_t tick = 0;
+  Vec2<Real> current;
+  Real dc_link{}, speed{}, rotor_flux{}, rotor_flux_angle{}, speed_reference{}, torque_reference{};
   SLIPBENCH_FIELDS(current, dc_link, speed, rotor_flux, rotor_flux_angle, speed_reference, torque_reference)
 };
 
 template <class Real>
 struct Command {
-  Phases<Real> duty{};             // of each leg, 0..1, acting over [k+d, k+d+1)
-  Real clipped{};                  // 1 where the voltage limit cut the command, else 0
-  Real rotor_flux_reference{};     // after field weakening, Wb
-  Real torque_reference{};         // after limits, N m
-  Vec2<Real> current_reference{};  // d-q, A
+  std::uint32_t size = sizeof(Command);
+  std::uint32_t version = SLIPBENCH_CONTROLLER_ABI_VERSION;
+  Phases<Real> duty{};
+  Real clipped{}, rotor_flux_reference{}, torque_reference{};
+  Vec2<Real> current_reference{};  // d-q
   SLIPBENCH_FIELDS(duty, clipped, rotor_flux_reference, torque_reference, current_reference)
 };
 
@@ -65,6 +68,27 @@ struct ControllerSetup {
   bool sensorless = false;               // speed comes from an estimator: default bandwidths are lower
   double rotor_flux_reference_Wb = 0.0;  // upper limit
   double start_rotor_flux_Wb = 0.0;      // rotor flux up at tick 0, along alpha; 0: magnetise first
+  double start_speed_rad_s = 0.0;        // of the shaft at tick 0, mechanical, where the flux is up
 };
+
+static_assert(sizeof(Measurement<double>) == sizeof(slipbench_measurement));
+static_assert(offsetof(Measurement<double>, tick) == offsetof(slipbench_measurement, tick));
+static_assert(offsetof(Measurement<double>, current.x) == offsetof(slipbench_measurement, i_alpha_A));
+static_assert(offsetof(Measurement<double>, current.y) == offsetof(slipbench_measurement, i_beta_A));
+static_assert(offsetof(Measurement<double>, dc_link) == offsetof(slipbench_measurement, dc_link_V));
+static_assert(offsetof(Measurement<double>, speed) == offsetof(slipbench_measurement, speed_rad_s));
+static_assert(offsetof(Measurement<double>, rotor_flux) == offsetof(slipbench_measurement, rotor_flux_Wb));
+static_assert(offsetof(Measurement<double>, rotor_flux_angle) == offsetof(slipbench_measurement, rotor_flux_angle_rad));
+static_assert(offsetof(Measurement<double>, speed_reference) == offsetof(slipbench_measurement, speed_reference_rad_s));
+static_assert(offsetof(Measurement<double>, torque_reference) == offsetof(slipbench_measurement, torque_reference_Nm));
+static_assert(sizeof(Command<double>) == sizeof(slipbench_command));
+static_assert(offsetof(Command<double>, duty.a) == offsetof(slipbench_command, duty_a));
+static_assert(offsetof(Command<double>, duty.b) == offsetof(slipbench_command, duty_b));
+static_assert(offsetof(Command<double>, duty.c) == offsetof(slipbench_command, duty_c));
+static_assert(offsetof(Command<double>, clipped) == offsetof(slipbench_command, clipped));
+static_assert(offsetof(Command<double>, rotor_flux_reference) == offsetof(slipbench_command, rotor_flux_reference_Wb));
+static_assert(offsetof(Command<double>, torque_reference) == offsetof(slipbench_command, torque_reference_Nm));
+static_assert(offsetof(Command<double>, current_reference.x) == offsetof(slipbench_command, i_d_reference_A));
+static_assert(offsetof(Command<double>, current_reference.y) == offsetof(slipbench_command, i_q_reference_A));
 
 }  // namespace slipbench

@@ -7,20 +7,17 @@
 // The PI's zero cancels the machine's pole R / L_sigma: the open loop is alpha_c / s with a delay of (d + 1/2) T. In
 // samples, d = 1: i(k+1) = i(k) + alpha_c T (i_ref(k-1) - i(k-1)), both poles at 1/2 for alpha_c T = 1/4.
 //
-// Voltage limit: circle of the modulation's linear limit times the measured DC link, less 4/3 of the leg error that
-// is to be compensated. The d axis goes first (it holds flux and frame), with at most 0.9 of the circle, so that q
+// Voltage limit (legs.hpp): the d axis goes first (it holds flux and frame), with at most 0.9 of the circle, so that q
 // always keeps 0.43 of it against the back-EMF. Anti-windup is back-calculation from the voltage that the duties
-// really give. The vector stands over [k+d, k+d+1) in the stationary frame: it is turned by angle + w_s (d + 1/2)
-// T. Dead time: the mean leg errors believed at the reference current turned to that same mid angle are added back
-// as a vector, tied legs left out; the reference is free of noise where the current crosses zero.
+// really give. Delay and dead time as in legs.hpp, at the reference current: it is free of noise.
 //
 // u V, i A, psi Wb (all peak), alpha_c rad/s.
 // Source: L. Harnefors, H.-P. Nee, "Model-based current control of AC machines using the internal model control
 // method", IEEE Trans. Ind. Appl. 34(1), 1998, 133-141 (from memory).
 #pragma once
 
+#include "controllers/legs.hpp"
 #include "controllers/orientation.hpp"
-#include "plant/inverter_averaged.hpp"
 
 namespace slipbench {
 
@@ -29,12 +26,9 @@ struct CurrentConstants {
   Real k_p{}, k_i_period{}, back{};  // ohm, ohm per period, R T / L_sigma
   Real resistance{}, leakage{};      // R, L_sigma
   Real flux_ratio{}, rotor_rate{};   // L_m / L_r, 1 / tau_r
-  Real advance{}, delay{};           // (d + 1/2) T s, d
-  Real linear_limit{};               // of the DC link
-  Real modulation{};                 // 0 space vector, 1 sine, 2 discontinuous
-  LegError<Real> believed;           // zero without compensation
-  SLIPBENCH_FIELDS(k_p, k_i_period, back, resistance, leakage, flux_ratio, rotor_rate, advance, delay, linear_limit,
-                   modulation, believed)
+  Real delay{};                      // d
+  LegConstants<Real> legs;
+  SLIPBENCH_FIELDS(k_p, k_i_period, back, resistance, leakage, flux_ratio, rotor_rate, delay, legs)
 };
 
 template <class Real>
@@ -47,8 +41,7 @@ struct CurrentState {
 
 template <class Real>
 Real voltage_limit(const CurrentConstants<Real>& c, const Real& dc_link) {
-  const Real reserve = Real(4.0 / 3.0) * (c.believed.dead_share * dc_link + c.believed.device_drop);
-  return max(c.linear_limit * dc_link - reserve, Real(0.0));
+  return voltage_limit(c.legs, dc_link);
 }
 
 // Mean stator voltage over the period that ends at this tick: the command of d + 1 ticks ago.
@@ -76,28 +69,12 @@ VoltageCommand<Real> control_current(CurrentState<Real>& s, const CurrentConstan
   const Real most_q = sqrt(max(square(limit) - square(u_d), Real(0.0)));
   const Vec2<Real> limited{u_d, clamp(wanted.y, -most_q, most_q)};
 
-  const SinCos<Real> ahead = sincos(f.stator_frequency * c.advance);
-  const SinCos<Real> middle{f.angle.sin * ahead.cos + f.angle.cos * ahead.sin,
-                            f.angle.cos * ahead.cos - f.angle.sin * ahead.sin};
-  const Vec2<Real> voltage = turn_forward(middle, limited);
-  const Phases<Real> current = phases_of(turn_forward(middle, reference));
-  const auto leg_error_at = [&](const Phases<Real>& duty) {
-    return clarke(leg_errors(c.believed, current, duty, dc_link));
-  };
-  VoltageCommand<Real> out;
-  const Vec2<Real> raised = voltage - leg_error_at(modulate(c.modulation, voltage, dc_link));
-  out.duty = modulate(c.modulation, raised, dc_link);
-
-  const Vec2<Real> applied = applied_voltage(out.duty, dc_link) + leg_error_at(out.duty);
-  s.commanded = {applied, s.commanded[0], s.commanded[1]};
-  const Vec2<Real> missing = turn_back(middle, applied) - wanted;
+  const LegCommand<Real> legs = command_legs(c.legs, f.angle, f.stator_frequency, limited, reference, dc_link);
+  s.commanded = {legs.applied, s.commanded[0], s.commanded[1]};
+  const Vec2<Real> missing = turn_back(legs.middle, legs.applied) - wanted;
   const Vec2<Real> integral = s.integral + c.k_i_period * error + c.back * missing;
   s.integral = {clamp(integral.x, -limit, limit), clamp(integral.y, -limit, limit)};
-  // Cut by the circle or by the rails, beyond what rounding leaves, in single precision too. (`missing` is more: with a tied
-  // leg that changes, the compensation is off by that leg's dead time.)
-  const Vec2<Real> by_circle = limited - wanted, by_rails = applied_voltage(out.duty, dc_link) - raised;
-  const Real cut = max(dot(by_circle, by_circle), dot(by_rails, by_rails));
-  out.clipped = select(cut > square(Real(1e-4) * limit), Real(1.0), Real(0.0));
+  const VoltageCommand<Real> out{legs.duty, clipped_by(limited - wanted, legs.by_rails, limit)};
   return out;
 }
 

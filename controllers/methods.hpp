@@ -4,10 +4,11 @@
 #include <tuple>
 
 #include "controllers/rotor_flux_oriented.hpp"
+#include "controllers/volts_per_hertz.hpp"
 
 namespace slipbench {
 
-using ControllerMethods = std::tuple<RotorFluxOriented>;
+using ControllerMethods = std::tuple<RotorFluxOriented, VoltsPerHertz>;
 
 template <class F>
 void each_controller_method(F&& f) {

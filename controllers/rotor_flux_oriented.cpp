@@ -69,9 +69,8 @@ SpeedConstants<double> speed_of(const ControllerSetup& setup, const Settings& gi
   return c;
 }
 
-CurrentConstants<double> current_of(const ControllerSetup& setup, double alpha_c, double advance) {
+CurrentConstants<double> current_of(const ControllerSetup& setup, double alpha_c) {
   const InverseGamma<double> g = to_inverse_gamma(setup.circuit);
-  const InverterBelief& inverter = setup.inverter;
   const double T = setup.control_period_s;
   CurrentConstants<double> c;
   c.resistance = g.stator_resistance + g.rotor_resistance;
@@ -81,14 +80,8 @@ CurrentConstants<double> current_of(const ControllerSetup& setup, double alpha_c
   c.back = c.resistance * T / c.leakage;
   c.flux_ratio = g.flux_ratio;
   c.rotor_rate = setup.circuit.rotor_resistance / setup.circuit.rotor_inductance();
-  c.advance = advance;
   c.delay = setup.delay_periods;
-  c.linear_limit = linear_limit(setup.modulation);
-  c.modulation = setup.modulation == Modulation::space_vector ? 0.0 : setup.modulation == Modulation::sine ? 1.0 : 2.0;
-  const double width = inverter.zero_current_width_A > 0.0 ? inverter.zero_current_width_A : 1.0;
-  c.believed = setup.compensate_dead_time
-                   ? leg_error(inverter.dead_time_s, inverter.switching_frequency_Hz, inverter.device_drop_V, width)
-                   : leg_error(0.0, 0.0, 0.0, width);
+  c.legs = legs_of(setup);
   return c;
 }
 
@@ -109,7 +102,7 @@ RotorFluxOriented::Constants<double> RotorFluxOriented::prepare(const Controller
   c.orientation = orientation_of(setup);
   c.flux = flux_of(setup, given, alpha_c);
   c.speed = speed_of(setup, given, alpha_c, advance);
-  c.current = current_of(setup, alpha_c, advance);
+  c.current = current_of(setup, alpha_c);
   c.torque_per_ampere = 1.5 * c.orientation.pole_pairs * c.current.flux_ratio;
   require(c.flux.current_limit > 1.05 * c.flux.limit / c.flux.L_m,
           "current_limit_peak_A: less than 1.05 of the magnetising current of the flux reference");

@@ -21,6 +21,7 @@ namespace slipbench {
 
 struct RotorFluxOriented {
   static constexpr std::string_view kind = "rotor_flux_oriented";
+  static constexpr bool takes_speed = true;
   static constexpr std::array<Setting, 7> settings{{
       {"current_bandwidth_Hz", "Hz", 1.0, 5000.0, derived,
        "bandwidth alpha_c / 2 pi of the current loop; default 0.06 / ((d + 1/2) T), at most 500 Hz"},
@@ -86,7 +87,13 @@ struct RotorFluxOriented {
     const Real torque = control_speed(s.speed, c.speed, m, per_ampere * d.i_q_limit, hold);
     s.current_reference = {d.i_d, torque / per_ampere};
     const VoltageCommand<Real> u = control_current(s.current, c.current, frame, s.current_reference, limit, m.dc_link);
-    return {u.duty, u.clipped, s.flux.reference, torque, s.current_reference};
+    Command<Real> out;
+    out.duty = u.duty;
+    out.clipped = u.clipped;
+    out.rotor_flux_reference = s.flux.reference;
+    out.torque_reference = torque;
+    out.current_reference = s.current_reference;
+    return out;
   }
 };
 

@@ -44,6 +44,7 @@ concept ControllerMethod = requires(const ControllerSetup& setup, const Settings
                                     typename M::template State<double> state) {
   { M::kind } -> std::convertible_to<std::string_view>;
   { M::settings } -> std::convertible_to<std::span<const Setting>>;
+  { M::takes_speed } -> std::convertible_to<bool>;
   { M::prepare(setup, given) } -> std::convertible_to<typename M::template Constants<double>>;
   { M::begin(setup, constants) } -> std::convertible_to<typename M::template State<double>>;
   { M::template step<double>(state, seen, constants) } -> std::same_as<Command<double>>;
@@ -59,7 +60,7 @@ void add_estimator() {
 
 template <ControllerMethod Method>
 void add_controller() {
-  add_controller_keys(Method::kind, Method::settings);
+  add_controller_keys(Method::kind, Method::settings, Method::takes_speed);
   add_controller_maker(Method::kind, [](const ControllerSetup& setup, const Settings& given) {
     return std::unique_ptr<ControllerPort>(std::make_unique<MethodController<Method>>(setup, given));
   });

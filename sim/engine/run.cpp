@@ -78,6 +78,7 @@ void Run::place_at_start() {
   if (!s.on_mains()) {
     ControllerSetup c = controller_setup(s, modulation_, compensated_, speed_from_ >= 0);
     c.start_rotor_flux_Wb = e.start_rotor_flux_Wb;
+    c.start_speed_rad_s = e.start_speed_rad_s;
     try {
       controller_ = make_controller(s.controller.kind, c, s.controller.settings);
     } catch (const std::invalid_argument& unfit) {
@@ -166,6 +167,7 @@ void Run::control_tick(std::int64_t k) {
   speed_reference_now_ = now(speed_reference_);
   torque_reference_now_ = now(torque_reference_);
   Measurement<double> m;
+  m.tick = k;
   m.current = reading_.current;
   m.dc_link = reading_.dc_link;
   m.speed = speed_from_ < 0 ? reading_.speed : estimates_[static_cast<std::size_t>(speed_from_)].speed;

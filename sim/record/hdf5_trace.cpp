@@ -73,7 +73,9 @@ Hdf5Trace::Hdf5Trace(const std::string& path, TraceOrigin origin) : file_(path),
   if (file_.working_path() == path) throw OutsideError("cannot write '" + path + "': HDF5 needs a regular file");
   H5dont_atexit();  // a file that could not be closed (full disk) would crash HDF5's own clean-up at exit
   H5Eset_auto2(H5E_DEFAULT, nullptr, nullptr);  // told in our own words
-  h5_ = H5Fcreate(file_.working_path().c_str(), H5F_ACC_TRUNC, H5P_DEFAULT, H5P_DEFAULT);
+  const Held list(H5Pcreate(H5P_FILE_CREATE), H5Pclose);
+  H5Pset_link_creation_order(list, H5P_CRT_ORDER_TRACKED | H5P_CRT_ORDER_INDEXED);  // columns in contract order
+  h5_ = H5Fcreate(file_.working_path().c_str(), H5F_ACC_TRUNC, list, H5P_DEFAULT);
   check(h5_);
   if (failed_) throw OutsideError("cannot write '" + path + "': " + why_);
 }

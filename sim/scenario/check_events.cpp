@@ -43,6 +43,10 @@ void check_source(const Scenario& s, const Node& root, std::size_t i) {
                   "' is \"speed_from\", which has no place on mains: there is no controller that "
                   "takes a speed");
   }
+  if (!s.controller.takes_speed()) {
+    refuse_at(root, key_of(i, "kind"),
+              "'" + key_of(i, "kind") + "' is \"speed_from\", but " + s.controller.kind + " takes a speed from nobody");
+  }
   check_named(s, root, key_of(i, "estimator"), e.estimator, true);
   if (e.estimator == "measured" && s.sensors.speed.kind == "none") {
     refuse_at(root, key_of(i, "estimator"),

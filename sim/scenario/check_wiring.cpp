@@ -48,6 +48,14 @@ void check_controller(const Scenario& s, const Node& root) {
     refuse_at(root, "reference.torque_Nm",
               "'reference.torque_Nm' stands beside reference.speed_rpm; the controller follows one of them");
   }
+  if (!c.takes_speed()) {
+    if (torque) {
+      refuse_at(root, "reference.torque_Nm",
+                "'reference.torque_Nm' does not go with " + c.kind +
+                    ", which holds a frequency; give reference.speed_rpm, or take rotor_flux_oriented");
+    }
+    return;
+  }
   check_named(s, root, "controller.speed_from", c.speed_from, true);
   const bool direct = c.orientation == "direct";
   if (direct && c.flux_from.empty()) {
@@ -62,10 +70,10 @@ void check_controller(const Scenario& s, const Node& root) {
               "'controller.flux_from' goes with orientation = \"direct\" only; indirect orientation takes its angle "
               "from slip and speed");
   }
-  if (c.speed_from == "measured" && s.sensors.speed.kind == "none" && (speed || !direct)) {
+  if (c.speed_from == "measured" && s.sensors.speed.kind == "none") {
     refuse_at(root, "controller.speed_from",
               std::string("'controller.speed_from' is \"measured\", but there is no speed sensor; ") +
-                  (speed ? "the speed loop" : "indirect orientation") +
+                  (speed ? "the speed loop" : direct ? "the current loop's decoupling" : "indirect orientation") +
                   " needs one: set sensors.speed.kind, or name an estimator here");
   }
 }

@@ -89,7 +89,9 @@ std::vector<std::string_view> controller_kinds();
 // last scenario. Not while another thread adds or reads. Throws std::logic_error once the table is built, for a kind that
 // is there already, and for settings that cannot be told from other keys.
 void add_estimator_keys(std::string_view kind, std::span<const Setting> settings);
-void add_controller_keys(std::string_view kind, std::span<const Setting> settings);
+void add_controller_keys(std::string_view kind, std::span<const Setting> settings, bool takes_speed);
+// Those that are told a speed, from a sensor or an estimator.
+std::vector<std::string_view> speed_taking_controllers();
 
 // "load.0.torque_Nm" -> row path "load[].torque_Nm" and index 0.
 struct KeyPath {

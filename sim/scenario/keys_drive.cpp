@@ -57,9 +57,12 @@ void control_keys(std::vector<Key>& keys) {
   Rows k(keys, "controller");
   k.word("kind", AT(controller.kind), "control method").must().words(controller_kinds());
   k.word("orientation", AT(controller.orientation), "flux angle from slip and speed, or from an estimator")
+      .with(speed_taking_controllers())
       .words({"indirect", "direct"});
-  k.word("flux_from", AT(controller.flux_from), "estimator that gives the flux (direct orientation)");
-  k.word("speed_from", AT(controller.speed_from), "\"measured\", or an estimator's name: sensorless");
+  k.word("flux_from", AT(controller.flux_from), "estimator that gives the flux (direct orientation)")
+      .with(speed_taking_controllers());
+  k.word("speed_from", AT(controller.speed_from), "\"measured\", or an estimator's name: sensorless")
+      .with(speed_taking_controllers());
   k.number("delay_periods", AT(controller.delay_periods), "", {0, 2}, "control periods from sample to voltage");
   k.word("dead_time_compensation", AT(controller.dead_time_compensation), "add the believed inverter error");
   Rows estimator(keys, "estimator[]");

@@ -12,6 +12,7 @@ namespace {
 struct MethodKind {
   std::string_view kind;
   std::span<const Setting> settings;
+  bool takes_speed = true;  // of a controller
 };
 using MethodKinds = std::vector<MethodKind>;
 
@@ -34,7 +35,7 @@ MethodKinds all_estimators() {
 
 MethodKinds all_controllers() {
   MethodKinds all;
-  each_controller_method([&]<class Method>() { all.push_back({Method::kind, Method::settings}); });
+  each_controller_method([&]<class Method>() { all.push_back({Method::kind, Method::settings, Method::takes_speed}); });
   all.insert(all.end(), own_kinds().controllers.begin(), own_kinds().controllers.end());
   return all;
 }
@@ -112,14 +113,27 @@ std::vector<Key> method_keys() {
 std::vector<std::string_view> estimator_kinds() { return names_of(all_estimators()); }
 std::vector<std::string_view> controller_kinds() { return names_of(all_controllers()); }
 
+std::vector<std::string_view> speed_taking_controllers() {
+  MethodKinds takers;
+  for (const MethodKind& method : all_controllers()) {
+    if (method.takes_speed) takers.push_back(method);
+  }
+  return names_of(takers);
+}
+
+bool ControllerSettings::takes_speed() const {
+  const std::vector<std::string_view> takers = speed_taking_controllers();
+  return std::count(takers.begin(), takers.end(), kind) > 0;
+}
+
 void add_estimator_keys(std::string_view kind, std::span<const Setting> settings) {
   admit({kind, settings}, all_estimators(), "estimator", "estimator[]");
   own_kinds().estimators.push_back({kind, settings});
 }
 
-void add_controller_keys(std::string_view kind, std::span<const Setting> settings) {
-  admit({kind, settings}, all_controllers(), "controller", "controller");
-  own_kinds().controllers.push_back({kind, settings});
+void add_controller_keys(std::string_view kind, std::span<const Setting> settings, bool takes_speed) {
+  admit({kind, settings, takes_speed}, all_controllers(), "controller", "controller");
+  own_kinds().controllers.push_back({kind, settings, takes_speed});
 }
 
 }  // namespace slipbench

@@ -4,7 +4,7 @@
 
 #include <array>
 
-#include "controllers/rotor_flux_oriented.hpp"
+#include "controllers/methods.hpp"
 #include "plant/inverter_averaged.hpp"
 #include "plant/machine.hpp"
 #include "tests/published/circuits.hpp"
@@ -53,7 +53,8 @@ inline ControllerSetup setup_for(const PublishedMachine& m) {
   return s;
 }
 
-class ClosedLoop {
+template <class Method>
+class ClosedLoopOf {
  public:
   // The true machine and inverter; the controller believes what `setup` says.
   Machine<double> machine;
@@ -64,20 +65,20 @@ class ClosedLoop {
   double speed = 0.0;
 
   ControllerSetup setup;
-  RotorFluxOriented::Constants<double> constants;
-  RotorFluxOriented::State<double> state;
+  typename Method::template Constants<double> constants;
+  typename Method::template State<double> state;
   Measurement<double> measured;
   Command<double> command;
   std::int64_t tick = 0;
 
-  ClosedLoop(const PublishedMachine& truth, const ControllerSetup& believed, const Settings& given = {})
+  ClosedLoopOf(const PublishedMachine& truth, const ControllerSetup& believed, const Settings& given = {})
       : machine(make_machine(truth.circuit)),
         leg(leg_error(0.0, 0.0, 0.0, 1.0)),
         inertia(truth.inertia_kgm2),
         dc_link(believed.inverter.dc_link_V),
         setup(believed),
-        constants(RotorFluxOriented::prepare(believed, given)),
-        state(RotorFluxOriented::begin(believed, constants)) {
+        constants(Method::prepare(believed, given)),
+        state(Method::begin(believed, constants)) {
     if (setup.start_rotor_flux_Wb > 0.0) magnetise();
     pending_.fill({0.5, 0.5, 0.5});
   }
@@ -87,7 +88,7 @@ class ClosedLoop {
   [[nodiscard]] double rotor_flux() const { return magnitude(psi.rotor); }
   // Stator current seen from the true rotor flux.
   [[nodiscard]] Vec2<double> true_dq() const { return (1.0 / rotor_flux()) * seen_from(psi.rotor, current()); }
-  // The controller's angle less the true one, rad, at the last control tick.
+  // The rotor-flux-oriented controller's angle less the true one, rad, at the last control tick.
   [[nodiscard]] double angle_error() const { return angle_error_; }
   // Means over the last period, stationary frame and seen from the true rotor flux.
   [[nodiscard]] Vec2<double> mean_voltage() const { return mean_voltage_; }
@@ -102,9 +103,11 @@ class ClosedLoop {
     measured.speed = speed;
     measured.rotor_flux = rotor_flux();
     measured.rotor_flux_angle = slipbench::atan2(psi.rotor.y, psi.rotor.x);
-    command = RotorFluxOriented::step(state, measured, constants);
-    const Vec2<double> model = state.orientation.rotor_flux;
-    angle_error_ = slipbench::atan2(cross(psi.rotor, model), dot(psi.rotor, model));
+    command = Method::step(state, measured, constants);
+    if constexpr (std::is_same_v<Method, RotorFluxOriented>) {
+      const Vec2<double> model = state.orientation.rotor_flux;
+      angle_error_ = slipbench::atan2(cross(psi.rotor, model), dot(psi.rotor, model));
+    }
     for (std::size_t i = pending_.size() - 1; i > 0; --i) pending_[i] = pending_[i - 1];
     pending_[0] = command.duty;
     apply(pending_[static_cast<std::size_t>(setup.delay_periods)]);
@@ -162,5 +165,7 @@ class ClosedLoop {
     psi.stator = {setup.circuit.stator_inductance() * flux / L_m, 0.0};
   }
 };
+
+using ClosedLoop = ClosedLoopOf<RotorFluxOriented>;
 
 }  // namespace slipbench::test

@@ -9,7 +9,7 @@ import re
 import sys
 
 FOLDERS = ("plant", "estimators", "controllers", "sim", "tools", "tests", "configs", "cmake")
-SKIPPED = {"build", "out", "node_modules", "__pycache__"}
+SKIPPED = {"build", "out", "node_modules", "__pycache__", "slipbench_client.egg-info"}
 SOURCES = (".hpp", ".cpp", ".h", ".c", ".py", ".cmake", ".ts", ".js")
 LONGEST = 400  # lines; past that a file holds two ideas
 
@@ -41,7 +41,8 @@ STRANGER = "tests/outside"
 LIBRARIES = (
     (r"toml(\+\+|\.h|pp)", ("sim/scenario",), "toml++"),
     (r"(hdf5|H5|highfive)", ("sim/record",), "HDF5"),
-    (r"(zmq|zmq_addon|cppzmq)", ("sim/stream",), "ZeroMQ"),
+    (r"(zmq|zmq_addon|cppzmq)", ("sim/stream", "tests/sim/stream", "tools/bench"), "ZeroMQ"),
+    (r"msgpack", ("sim/stream", "tests/sim/stream"), "MessagePack"),
     (r"sqlite3", ("sim/sweep",), "SQLite"),
     (r"CLI/", ("tools",), "CLI11"),
     (r"nlohmann/", ("tools", "tests"), "JSON"),

@@ -95,6 +95,18 @@ TEST_CASE("compare: in the loop, a handover under way goes to each estimator in 
         j["estimators"]["ekf"]["speed_tracking_rmse_rpm"]["mean"]);
 }
 
+TEST_CASE("compare: in the loop of a controller that takes no speed there is nothing to compare", "[tools][command]") {
+  const Folder folder;
+  const std::string text = replaced(
+      scenario_text(), "kind = \"rotor_flux_oriented\"\norientation = \"indirect\"\nspeed_from = \"measured\"\n",
+      "kind = \"volts_per_hertz\"\n");
+  const std::string file = folder.write("s.toml", text);
+  const Answer refused = folder.run({"compare", file, "--runs", "2", "--in-loop"});
+  CHECK(refused.status == 2);
+  CHECK_THAT(refused.err, Catch::Contains("volts_per_hertz") && Catch::Contains("takes no speed"));
+  CHECK(folder.run({"compare", file, "--runs", "2", "--quiet"}).status == 0);
+}
+
 TEST_CASE("compare: tables for people, a figure, and what it refuses", "[tools][command]") {
   const Folder folder;
   const std::string file = folder.write("s.toml", scenario_text());

@@ -51,6 +51,13 @@ std::vector<ComparisonJob> jobs_of(const Request& request, const Scenario& scena
                      "--in-loop: this scenario has no [controller], so there is no loop for an estimator to close",
                      "usage");
   }
+  if (!scenario.controller.takes_speed()) {
+    throw InputError("command line", "--in-loop",
+                     "--in-loop: controller.kind is \"" + scenario.controller.kind +
+                         "\", which takes no speed from anybody, so there is no loop for an estimator to close; leave "
+                         "--in-loop out, or take rotor_flux_oriented",
+                     "usage");
+  }
   for (std::size_t i = 0; i < scenario.estimators.size(); ++i) jobs.push_back({closed_by(request, scenario, i), {i}});
   return jobs;
 }

@@ -63,6 +63,13 @@ std::string json_document(const RunResult& r) {
     document["estimators"][e.name] = std::move(entry);
     document["digest"][e.name] = e.digest;
   }
+  if (r.stream) {
+    document["stream"] = {{"endpoint", r.stream->endpoint},
+                          {"subscribers", r.stream->subscribers},
+                          {"blocks", r.stream->blocks},
+                          {"rows", r.stream->rows},
+                          {"dropped", r.stream->dropped}};
+  }
   return text_of(document);
 }
 

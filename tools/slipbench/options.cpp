@@ -5,6 +5,7 @@
 #include <CLI/CLI.hpp>
 #include <algorithm>
 #include <charconv>
+#include <cmath>
 #include <map>
 
 #include "sim/record/trace.hpp"
@@ -29,6 +30,15 @@ Whole whole_number(std::string_view option, const std::string& text, Whole low, 
   const auto [end, error] = std::from_chars(text.data(), text.data() + text.size(), value);
   if (error != std::errc{} || end != text.data() + text.size() || value < low || value > high) {
     refuse(option, fmt::format("{} '{}': expected a whole number from {} to {}", option, text, low, high));
+  }
+  return value;
+}
+
+double positive_number(std::string_view option, const std::string& text) {
+  double value = 0.0;
+  const auto [end, error] = std::from_chars(text.data(), text.data() + text.size(), value);
+  if (error != std::errc{} || end != text.data() + text.size() || !(value > 0.0) || !std::isfinite(value)) {
+    refuse(option, fmt::format("{} '{}': expected a number above 0, as in {} 1.0", option, text, option));
   }
   return value;
 }
@@ -116,6 +126,11 @@ Request request_of(const std::string& verb, Given& given) {
   if (flag("--run")) r.noise_run = whole_number<std::uint32_t>("--run", text("--run"), 0, UINT32_MAX);
   if (flag("--runs")) r.runs = whole_number<std::uint32_t>("--runs", text("--runs"), 1, 1000000);
   if (flag("--threads")) r.threads = whole_number<unsigned>("--threads", text("--threads"), 1, 1024);
+  if (flag("--publish")) r.publish = text("--publish");
+  if (flag("--publish-wait"))
+    r.publish_wait = whole_number<unsigned>("--publish-wait", text("--publish-wait"), 1, 1024);
+  if (r.publish_wait > 0 && !r.publish) refuse("--publish-wait", "--publish-wait needs --publish ENDPOINT beside it");
+  if (flag("--pace")) r.pace = positive_number("--pace", text("--pace"));
   for (const std::string& setting : given.values["--set"]) {
     const std::size_t equals = setting.find('=');
     if (equals == std::string::npos || equals == 0) {

@@ -19,6 +19,9 @@ struct Request {
   std::uint32_t noise_run = 0;  // run: --run R
   std::uint32_t runs = 20;      // compare: --runs N
   bool in_loop = false;
+  std::optional<std::string> publish;  // run: --publish ENDPOINT
+  unsigned publish_wait = 0;
+  double pace = 0.0;     // run: times real time at most; 0: as fast as it goes
   unsigned threads = 0;  // 0: all cores
   bool keys = false, markdown = false;
   std::string schema;  // check: of "scenario" or "machine" files; "": none

@@ -11,7 +11,9 @@
 #include "sim/score/estimator_score.hpp"
 #include "tools/slipbench/interrupt.hpp"
 #include "tools/slipbench/json_out.hpp"
+#include "tools/slipbench/pace.hpp"
 #include "tools/slipbench/progress.hpp"
+#include "tools/slipbench/publish.hpp"
 #include "tools/slipbench/run_figure.hpp"
 #include "tools/slipbench/run_result.hpp"
 #include "tools/slipbench/table.hpp"
@@ -55,9 +57,13 @@ int run_verb(const Request& request) {
   ColumnMeans means(basis.window);
   RunDigest digest;
   RunFigure figure(basis.window, basis.load_steps_s);
+  const std::unique_ptr<StreamPublisher> stream = start_publishing(request, scenario);
+  Pace pace(request.pace);
   std::vector<RunObserver*> observers = {&estimator_score, &drive_score, &means, &digest};
   if (trace) observers.push_back(trace.get());
   if (figure_file) observers.push_back(&figure);
+  if (stream) observers.push_back(stream.get());
+  if (request.pace > 0.0) observers.push_back(&pace);
 
   RunOptions options;
   options.noise_run = request.noise_run;
@@ -99,6 +105,12 @@ int run_verb(const Request& request) {
     figure_file->write(figure.svg(scenario, figures, ended, o.events));
     figure_file->finish();
     result.files.push_back(fmt::format("figure: {}", request.figure));
+  }
+  if (stream) {
+    result.stream = stream->finish(result.outcome.diverged  ? "diverged"
+                                   : result.outcome.stopped ? "interrupted"
+                                                            : "done");
+    result.files.push_back(stream_line(*result.stream));
   }
   if (request.json) {
     print(json_document(result));

@@ -1,12 +1,14 @@
 // All that a run left behind, as plain data for the summary and for JSON.
 #pragma once
 
+#include <optional>
 #include <string>
 #include <vector>
 
 #include "sim/engine/simulate.hpp"
 #include "sim/score/figures.hpp"
 #include "sim/score/means.hpp"
+#include "sim/stream/figures.hpp"
 
 namespace slipbench {
 
@@ -25,6 +27,7 @@ struct RunResult {
   DriveFigures drive;
   std::vector<EstimatorResult> estimators;
   std::string plant_digest;
+  std::optional<StreamFigures> stream;
   std::vector<std::string> files;  // "trace: run.csv (2001 rows, 41 columns)"
 };
 

@@ -238,3 +238,23 @@ TEST_CASE("run: a processor that flushes denormals is refused", "[engine][run]")
   CHECK_NOTHROW(log_of(s));
 }
 #endif
+
+TEST_CASE("run: volts per hertz starts from standstill, magnetised and steady, and blind", "[engine][run]") {
+  for (const char* start : {"standstill", "magnetised", "steady"}) {
+    Scenario s = drive(3.0);
+    s.run.start = start;
+    s.run.trace_period_s = 1e-2;
+    s.controller.kind = "volts_per_hertz";
+    s.sensors.speed.kind = "none";
+    const bool steady = s.run.start == "steady";
+    s.reference.speed_rpm = {{0.0, steady ? 1000.0 : 0.0}, {0.5, steady ? 1000.0 : 0.0}, {1.5, 1000.0}};
+    load(s, {{0.0, steady ? 8.0 : 0.0}, {1.5, steady ? 8.0 : 0.0}, {1.6, 8.0}});
+    const Log log = log_of(s);
+    INFO(start);
+    // What is left after 1.4 s of the slip filter's 0.24 s: e^-5 of 50 rpm.
+    CHECK(log.plant.back()[P::speed_rpm] == Approx(1000.0).margin(steady ? 0.01 : 1.0));
+    if (!steady) continue;
+    for (const PlantRow& row : log.plant)
+      CHECK(row[P::speed_rpm] == Approx(1000.0).margin(0.01));  // 1e-6 a control tick
+  }
+}

@@ -103,14 +103,41 @@ TEST_CASE("relations: who closes the loop", "[scenario][relations]") {
                 "one of luenberger, reduced_order, extended_kalman"});
   broken(text,
          {"estimator plug-in", "kind = \"luenberger\"", "kind = \"plugin\"", "estimator.1.kind", "one of luenberger"});
-  broken(text, {"controller kind", "kind = \"rotor_flux_oriented\"", "kind = \"volts_per_hertz\"", "controller.kind",
-                "rotor_flux_oriented"});
+  broken(text, {"controller kind", "kind = \"rotor_flux_oriented\"", "kind = \"vector_control\"", "controller.kind",
+                "one of rotor_flux_oriented, volts_per_hertz"});
   broken(text, {"setting of another kind", "adaptation_bandwidth_Hz = 80", "load_torque = true",
                 "estimator.1.load_torque", "only with extended_kalman"});
   broken(text, {"setting out of range", "adaptation_bandwidth_Hz = 80", "adaptation_bandwidth_Hz = 0",
                 "estimator.1.adaptation_bandwidth_Hz", "from 0.1 to"});
   broken(text,
          {"choice between 0 and 1", "load_torque = true", "load_torque = 0.5", "estimator.0.load_torque", "whole"});
+}
+
+TEST_CASE("relations: volts per hertz takes neither speed nor flux nor a torque reference", "[scenario][relations]") {
+  const std::string loop =
+      "kind = \"rotor_flux_oriented\"\norientation = \"direct\"\nflux_from = \"ekf\"\nspeed_from = "
+      "\"fast_1\"\n";
+  const std::string text = with(with(whole_text(), loop, "kind = \"volts_per_hertz\"\n"), "current_bandwidth_Hz = 300",
+                                "slip_compensation = 0.9");
+  REQUIRE(error_of(text).code() == "none");
+  for (const char* key : {"orientation = \"indirect\"", "flux_from = \"ekf\"", "speed_from = \"measured\"",
+                          "current_bandwidth_Hz = 300"}) {
+    const std::string given(key);
+    const InputError error = error_of(with(text, "slip_compensation", given + "\nslip_compensation"));
+    INFO(error.what());
+    CHECK(error.key() == "controller." + given.substr(0, given.find(' ')));
+    CHECK(error.message().find("only with rotor_flux_oriented") != std::string::npos);
+  }
+  broken(text, {"share", "slip_compensation = 0.9", "slip_compensation = 1.1", "controller.slip_compensation", "to 1"});
+  broken(text, {"torque", "speed_rpm = [[0.0, 0.0], [0.2, 0.0], [0.7, 1200.0]]", "torque_Nm = [[0.0, 5.0]]",
+                "reference.torque_Nm", "holds a frequency"});
+  broken(text, {"event", "[score]", "[[event]]\nat_s = 1\nkind = \"speed_from\"\nestimator = \"ekf\"\n[score]",
+                "event.0.kind", "takes a speed from nobody"});
+  // It needs no speed sensor.
+  CHECK(
+      error_of(with(text, "kind = \"encoder\"\nlines_per_rev = 2048\nclock_Hz = 20e6\nwindow_s = 2e-3\ntimeout_s = 0.2",
+                    "kind = \"none\""))
+          .code() == "none");
 }
 
 TEST_CASE("relations: mains and inverter", "[scenario][relations]") {
