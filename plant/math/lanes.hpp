@@ -84,6 +84,11 @@ template <class Isa, std::size_t W>
 struct LanesMask;
 template <class Isa, std::size_t W>
 struct LanesCount;
+template <class Isa, std::size_t W>
+struct Lanes;
+
+template <class Isa, std::size_t W>
+inline constexpr std::size_t width_of<Lanes<Isa, W>> = W;
 
 template <class Isa, std::size_t W>
 struct Lanes {
@@ -111,6 +116,9 @@ struct Lanes {
   }
   [[nodiscard]] double get(std::size_t lane) const { return part[lane / per_register][lane % per_register]; }
   void set(std::size_t lane, double x) { part[lane / per_register][lane % per_register] = x; }
+
+  friend double lane_of(const Lanes& x, std::size_t lane) { return x.get(lane); }
+  friend void set_lane(Lanes& x, std::size_t lane, double value) { x.set(lane, value); }
 
   // f(register of each operand) for each register; unrolled by pack expansion, whatever the optimiser's level.
   template <class F, class... Operand>
@@ -177,6 +185,14 @@ struct LanesMask {
   [[nodiscard]] bool get(std::size_t lane) const {
     constexpr std::size_t per_register = detail::Registers<Isa>::lanes;
     return part[lane / per_register][lane % per_register] != 0;
+  }
+  friend bool lane_of(const LanesMask& mask, std::size_t lane) { return mask.get(lane); }
+  friend SLIPBENCH_INLINE bool any(const LanesMask& mask) {
+    Register together = mask.part[0];
+    for (std::size_t r = 1; r < registers; ++r) together |= mask.part[r];
+    std::int64_t bits = 0;
+    for (std::size_t i = 0; i < detail::Registers<Isa>::lanes; ++i) bits |= together[i];
+    return bits != 0;
   }
   template <class F, class... Operand>
   SLIPBENCH_INLINE static LanesMask each(F f, const Operand&... x) {

@@ -50,7 +50,7 @@ void check_start(const Scenario& scenario) { Run(scenario, {}, 0); }
 RunOutcome simulate(const Scenario& scenario, std::span<RunObserver* const> observers, const RunOptions& options) {
   demand_denormals();
   const auto run = started(scenario, options);
-  const RunInfo info = run->info();
+  const RunInfo& info = run->info();
   for (RunObserver* o : observers) o->begin(info);
   const auto begun = std::chrono::steady_clock::now();
   run->go(observers);
