@@ -77,6 +77,17 @@ void prepare_controller(RunSetup& run, const std::string& kind, const Controller
     throw std::logic_error("no controller of kind " + kind);
 }
 
+bool is_built_in_estimator(std::string_view kind) {
+  bool found = false;
+  each_estimator_method([&]<class Method>() { found = found || kind == Method::kind; });
+  return found;
+}
+bool is_built_in_controller(std::string_view kind) {
+  bool found = false;
+  each_controller_method([&]<class Method>() { found = found || kind == Method::kind; });
+  return found;
+}
+
 void add_estimator_maker(std::string_view kind, EstimatorMaker make) {
   own_makers().estimators.emplace_back(kind, make);
 }

@@ -38,6 +38,9 @@ using ControllerPort = ControllerPortOf<double>;
 void prepare_estimator(RunSetup& run, const std::string& kind, const EstimatorSetup& setup, const Settings& settings);
 void prepare_controller(RunSetup& run, const std::string& kind, const ControllerSetup& setup, const Settings& settings);
 
+bool is_built_in_estimator(std::string_view kind);
+bool is_built_in_controller(std::string_view kind);
+
 // Makers of kinds that are not built in; own_methods.hpp is the door.
 using EstimatorMaker = std::unique_ptr<EstimatorPort> (*)(const EstimatorSetup&, const Settings&);
 using ControllerMaker = std::unique_ptr<ControllerPort> (*)(const ControllerSetup&, const Settings&);
