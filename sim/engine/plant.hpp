@@ -30,7 +30,7 @@ template <class Real>
   SourceAt<Real> source = known;
   const auto system = [&](const DriveState<Real>& at, DriveState<Real>& dx, double time) {
     if (time != source.time) source = {time, source_voltage(drive, input, time)};
-    dx = drive_derivative(drive, input, source.voltage, at, time);
+    drive_derivative(drive, input, source.voltage, at, time, dx);
   };
   odeint_step(method, system, x, t, h);
   known = source;
@@ -117,7 +117,7 @@ class Plant {
                                                   NoiseStream<Real>(NoiseChannel("process_current_beta"))},
       flux_noise_{NoiseStream<Real>(NoiseChannel("process_flux_alpha")),
                   NoiseStream<Real>(NoiseChannel("process_flux_beta"))};
-  bool load_walks_, current_moves_, flux_moves_;
+  bool lines_, load_walks_, current_moves_, flux_moves_;
 };
 
 }  // namespace slipbench

@@ -29,6 +29,7 @@ Plant<Real>::Plant(Cases cases)
     const auto factor = [i](const RunSetup& s) -> const Profile& { return s.drifts[i]; };
     drifts_.push_back({shape_.drifts[i], ProfilePack<Real>(cases, factor), Real(1.0)});
   }
+  lines_ = shape_.profiles > 0 || shape_.speed_imposed;
   const Real zero(0.0);
   load_walks_ = any(zero < c_.walk_per_tick);
   current_moves_ = any(zero < c_.current_noise);
@@ -126,19 +127,20 @@ void Plant<Real>::set_lines(std::int64_t n) {
 template <class Real>
 void Plant<Real>::step(std::int64_t n) {
   const double h = shape_.step_s, t = static_cast<double>(n) * h, middle = max(t + 0.5 * h, 0.0);
-  set_drift(middle, middle);
-  set_lines(n);
+  const bool drifts = !drifts_.empty();
+  if (drifts) set_drift(middle, middle);
+  if (lines_) set_lines(n);
   advance(drive_, input_, source_, shape_.method, x_, t, h);
   // What sensors and rows see at the step's end is the value just after a jump there.
   const double end = static_cast<double>(n + 1 > 0 ? n + 1 : 0) * h;
-  set_drift(end, end + 0.5 * h);
+  if (drifts) set_drift(end, end + 0.5 * h);
   if (shape_.speed_imposed) x_[4] = imposed_at(n + 1);
 }
 
 template <class Real>
 PlantRowOf<Real> Plant<Real>::row(std::int64_t n) {
   const double t = static_cast<double>(n) * shape_.step_s;
-  set_lines(n);
+  if (lines_) set_lines(n);
   const Real zero(0.0), one(1.0), nan(std::numeric_limits<double>::quiet_NaN());
   const MachineFlux<Real> psi = flux_of(x_);
   const Machine<Real>& m = drive_.machine;

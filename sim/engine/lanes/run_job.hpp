@@ -34,11 +34,11 @@ struct LanesRun {
   const RunSetup* const* cases = nullptr;  // as many as the set is wide, all of one shape
   std::size_t used = 0;                    // lanes that count; the pack ends when the last of them is lost
   const LanesSink* sink = nullptr;
-  std::int64_t ended_at_step = 0;     // answered
-  double* clipped_samples = nullptr;  // answered, one a lane
-  double* moving = nullptr;           // run-in only, answered: how much each lane still moves
+  std::int64_t ended_at_step = 0;      // answered
+  double* clipped_samples = nullptr;   // answered, one a lane
+  double* moving = nullptr;            // run-in only, answered: how much each lane still moves
   RunSetup* const* settled = nullptr;  // run-in only: setups of the used lanes, to be written as they stand at t = 0
-  bool failed = false;                // answered: out of memory while it was set up
+  bool failed = false;                 // answered: out of memory while it was set up
 };
 
 }  // namespace slipbench

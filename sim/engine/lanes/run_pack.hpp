@@ -22,7 +22,7 @@ namespace slipbench {
 
 // What a control tick, or a trace row, of a pack looks like: LanesView's columns, and which lanes count.
 struct PackView : LanesView {
-  std::size_t width = 0;               // lanes a column has
+  std::size_t width = 0;                // lanes a column has
   std::span<const std::uint8_t> lanes;  // one a case; 0: lost before
 
   [[nodiscard]] const double* column(P which) const { return plant + static_cast<std::size_t>(which) * width; }
@@ -38,7 +38,7 @@ class PackObserver {
   virtual void control_tick(const PackView&) {}
   virtual void trace_row(const PackView&) {}
   [[nodiscard]] virtual bool wants_rows() const { return false; }
-  virtual void lost(std::size_t /*lane*/, std::int64_t /*tick*/, Lost) {}  // after that tick was told
+  virtual void lost(std::size_t /*lane*/, std::int64_t /*tick*/, Lost) {}        // after that tick was told
   [[nodiscard]] virtual bool keep_going(std::int64_t /*tick*/) { return true; }  // asked at every tick
 };
 
@@ -47,8 +47,7 @@ class PackObserver {
 std::vector<RunOutcome> run_pack(const LaneSet& set, Cases cases, PackObserver& observer);
 
 // The same with observers of single runs, a list for each case: begin, ticks, rows as simulate() tells them, end.
-std::vector<RunOutcome> run_pack(const LaneSet& set, Cases cases,
-                                 std::span<const std::vector<RunObserver*>> observers);
+std::vector<RunOutcome> run_pack(const LaneSet& set, Cases cases, std::span<const std::vector<RunObserver*>> observers);
 
 // Why lanes cannot run this scenario (then simulate() must); empty: they can.
 std::string lanes_can_run(const Scenario& scenario);

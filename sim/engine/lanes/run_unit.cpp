@@ -84,7 +84,8 @@ void settle_in_lanes(LanesRun& job) noexcept {
     const Cases cases(job.cases, width);
     DriveLoop<Pack> loop(cases);
     PlantNumbers<Pack> plant;
-    side_by_side<Pack>(plant, cases, [](const RunSetup& s) -> const auto& { return s.plant; });
+    side_by_side<Pack>(
+        plant, cases, [](const RunSetup& s) -> const auto& { return s.plant; });
     run_in(loop, plant).store(job.moving);
     for (std::size_t lane = 0; lane < job.used; ++lane) loop.save(*job.settled[lane], lane);
   } catch (...) {

@@ -11,7 +11,7 @@ namespace slipbench::pack_tests {
 
 struct Family {
   std::string name;
-  std::function<Scenario(std::size_t)> scenario;             // of case i
+  std::function<Scenario(std::size_t)> scenario;  // of case i
   std::function<std::uint32_t(std::size_t)> noise_run;
 };
 
@@ -64,28 +64,30 @@ inline std::vector<Family> families() {
       {"own knots of load, reference and drift",
        [=](std::size_t i) {
          const std::string at = number(0.01 + 0.003 * of(i));
-         return conveyor({{"load.1.torque_Nm", "[[0.0, 0.0], [" + at + ", 0.0], [" + at + ", " + number(10 + of(i)) + "]]"},
-                          {"reference.speed_rpm", "[[" + at + ", 0.0], [0.05, " + number(100.0 + 30.0 * of(i)) + "]]"},
-                          {"drift.0.factor", "[[0.0, 1.0], [" + at + ", " + number(1.0 + 0.1 * of(i)) + "]]"}});
+         return conveyor(
+             {{"load.1.torque_Nm", "[[0.0, 0.0], [" + at + ", 0.0], [" + at + ", " + number(10 + of(i)) + "]]"},
+              {"reference.speed_rpm", "[[" + at + ", 0.0], [0.05, " + number(100.0 + 30.0 * of(i)) + "]]"},
+              {"drift.0.factor", "[[0.0, 1.0], [" + at + ", " + number(1.0 + 0.1 * of(i)) + "]]"}});
        },
        same_run});
   for (const char* quantity : {"dc_link", "inertia", "magnetizing_inductance", "stator_leakage", "rotor_leakage"}) {
     all.push_back({std::string("drift of ") + quantity,
                    [=](std::size_t i) {
                      const std::string to = number(0.95 - 0.01 * of(i));
-                     return conveyor({{"drift.2.quantity", quantity},
-                                      {"drift.2.factor", "[[0.01, 1.0], [0.02, " + to + "], [0.03, " + to + "], [0.03, 1.02]]"},
-                                      {"shaft.coulomb_friction_Nm", number(0.5 + 0.1 * of(i))}});
+                     return conveyor(
+                         {{"drift.2.quantity", quantity},
+                          {"drift.2.factor", "[[0.01, 1.0], [0.02, " + to + "], [0.03, " + to + "], [0.03, 1.02]]"},
+                          {"shaft.coulomb_friction_Nm", number(0.5 + 0.1 * of(i))}});
                    },
                    same_run});
   }
   all.push_back({"two current sensors, tachogenerator",
                  [=](std::size_t i) {
-                   Scenario s =
-                       shipped("hoist_lowering", {{"run.duration_s", "0.06"},
-                                                  {"score.from_s", "0.0"},
-                                                  {"sensors.current.gain_error", "[0.01, " + number(0.002 * of(i)) + ", 0.0]"},
-                                                  {"machine.rotor_resistance_ohm", number(1.4 + 0.05 * of(i))}});
+                   Scenario s = shipped("hoist_lowering",
+                                        {{"run.duration_s", "0.06"},
+                                         {"score.from_s", "0.0"},
+                                         {"sensors.current.gain_error", "[0.01, " + number(0.002 * of(i)) + ", 0.0]"},
+                                         {"machine.rotor_resistance_ohm", number(1.4 + 0.05 * of(i))}});
                    s.sensors.speed = {};
                    s.sensors.speed.kind = "tachogenerator";
                    s.sensors.speed.bandwidth_Hz = 200.0 + 10.0 * of(i);
@@ -103,10 +105,11 @@ inline std::vector<Family> families() {
   all.push_back({"torque control on an imposed speed",
                  [=](std::size_t i) {
                    const std::string at = number(0.02 + 0.002 * of(i));
-                   return shipped("winder_torque", {{"run.duration_s", "0.06"},
-                                                    {"score.from_s", "0.0"},
-                                                    {"load.0.speed_rpm", "[[0.0, 0.0], [" + at + ", 600.0]]"},
-                                                    {"reference.torque_Nm", "[[0.0, 0.0], [" + at + ", 7.0], [0.05, 17.5]]"}});
+                   return shipped("winder_torque",
+                                  {{"run.duration_s", "0.06"},
+                                   {"score.from_s", "0.0"},
+                                   {"load.0.speed_rpm", "[[0.0, 0.0], [" + at + ", 600.0]]"},
+                                   {"reference.torque_Nm", "[[0.0, 0.0], [" + at + ", 7.0], [0.05, 17.5]]"}});
                  },
                  same_run});
   for (const char* estimator : {"luenberger", "reduced", "ekf"}) {
@@ -164,14 +167,16 @@ inline std::vector<Family> failing_families() {
   all.push_back({"runaway speed",
                  [=](std::size_t i) {
                    Scenario s = numbered(i);
-                   if (i == 1 || i == 2) s.loads[1].torque_profile = {{0.0, 0.0}, {0.01 * static_cast<double>(i), -1e6}};
+                   if (i == 1 || i == 2)
+                     s.loads[1].torque_profile = {{0.0, 0.0}, {0.01 * static_cast<double>(i), -1e6}};
                    return s;
                  },
                  same_run});
   all.push_back({"runaway flux",
                  [=](std::size_t i) {
                    Scenario s = numbered(i);
-                   if (i == 1 || i == 2) s.drifts[0].factor = {{0.01, 1.0}, {0.01 * static_cast<double>(i) + 0.01, 1e7}};
+                   if (i == 1 || i == 2)
+                     s.drifts[0].factor = {{0.01, 1.0}, {0.01 * static_cast<double>(i) + 0.01, 1e7}};
                    return s;
                  },
                  same_run});
