@@ -18,16 +18,6 @@ struct RunIn {
 };
 constexpr std::array<RunIn, 3> run_ins{{{1.0, 1e-7}, {4.0, 1e-6}, {16.0, 5e-4}}};
 
-// Same bits on every machine hold only where small numbers are kept; a library can switch that off for a whole thread.
-void demand_denormals() {
-  const volatile double least = std::numeric_limits<double>::min();
-  const volatile double half = 0.5 * least;
-  if (half + half != least) {
-    throw OutsideError(
-        "the processor is set to flush denormal numbers to zero: results would differ from machine to machine");
-  }
-}
-
 std::unique_ptr<Run> started(const Scenario& scenario, const RunOptions& options) {
   if (scenario.run.start != "steady") return std::make_unique<Run>(scenario, options, 0);
   for (const RunIn& run_in : run_ins) {
@@ -45,12 +35,28 @@ std::unique_ptr<Run> started(const Scenario& scenario, const RunOptions& options
 
 }  // namespace
 
+// Same bits on every machine hold only where small numbers are kept; a library can switch that off for a whole thread.
+void demand_denormals() {
+  const volatile double least = std::numeric_limits<double>::min();
+  const volatile double half = 0.5 * least;
+  if (half + half != least) {
+    throw OutsideError(
+        "the processor is set to flush denormal numbers to zero: results would differ from machine to machine");
+  }
+}
+
+RunSetup ready_run(const Scenario& scenario, std::uint32_t noise_run) {
+  RunOptions options;
+  options.noise_run = noise_run;
+  return started(scenario, options)->onward();
+}
+
 void check_start(const Scenario& scenario) { Run(scenario, {}, 0); }
 
 RunOutcome simulate(const Scenario& scenario, std::span<RunObserver* const> observers, const RunOptions& options) {
   demand_denormals();
   const auto run = started(scenario, options);
-  const RunInfo info = run->info();
+  const RunInfo& info = run->info();
   for (RunObserver* o : observers) o->begin(info);
   const auto begun = std::chrono::steady_clock::now();
   run->go(observers);

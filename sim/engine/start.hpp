@@ -26,6 +26,6 @@ struct StartState {
 
 // The state at control tick `first_tick` (0, or earlier for a run-in; on mains the phase follows). May move `plant`'s speed to
 // find the load there. Throws InputError where there is no equilibrium.
-StartState start_state(const Scenario& scenario, Plant& plant, std::int64_t first_tick);
+StartState start_state(const Scenario& scenario, Plant<double>& plant, std::int64_t first_tick);
 
 }  // namespace slipbench

@@ -7,10 +7,13 @@
 #include <string>
 #include <vector>
 
+#include "sim/engine/setup.hpp"
 #include "sim/scenario/scenario.hpp"
 #include "sim/sweep/store.hpp"
 
 namespace slipbench {
+
+struct LaneSet;
 
 struct PackCase {
   Scenario scenario;
@@ -32,9 +35,17 @@ class PackRunner {
   [[nodiscard]] const std::map<std::string, std::uint64_t>& not_in_lanes() const { return not_in_lanes_; }
 
  private:
+  // A case that is set up and waits for its pack.
+  struct Ready {
+    PackCase* one;
+    RunSetup setup;
+  };
   void run_alone(PackCase& one, std::uint32_t noise_run, const std::string& why);
+  void run_together(const std::vector<Ready*>& pack);
 
   std::string isa_;
+  bool forced_;                   // a set that was asked for by name takes packs of any filling
+  const LaneSet* set_ = nullptr;  // none: all alone
   std::size_t lanes_ = 1;
   std::function<bool()> keep_going_;
   std::uint64_t in_lanes_ = 0;
