@@ -19,19 +19,32 @@ std::span<const VerbRow> verb_rows() {
        "judge all estimators of a scenario over paired noise runs",
        "scenario file",
        {"slipbench compare configs/scenarios/conveyor_hot_rotor.toml --runs 10 --in-loop --figure compare.svg"}},
+      {"sweep",
+       "run every case of a plan, in packs and threads, into a store; the same command resumes",
+       "sweep plan",
+       {"slipbench sweep configs/sweeps/resistance_grid.toml --store grid.sqlite --csv grid.csv"}},
   };
   return rows;
 }
 
 std::span<const OptionRow> option_rows() {
   static constexpr OptionRow rows[] = {
-      {"--set", "KEY=VALUE", "run check compare", "set a key of the file, dotted; VALUE is TOML or text; repeatable",
+      {"--set", "KEY=VALUE", "run check compare sweep", "set a key of the file, dotted; VALUE is TOML or text; repeatable",
        Takes::key},
-      {"--seed", "N", "run check compare", "seed of every noise; wins over the file and --set", Takes::number},
+      {"--seed", "N", "run check compare sweep", "seed of every noise; wins over the file and --set", Takes::number},
       {"--run", "R", "run", "take noise run R, as `compare` numbers them from 0", Takes::number},
       {"--runs", "N", "compare", "noise runs (20)", Takes::number},
       {"--in-loop", "", "compare", "each estimator closes the speed loop in turn, instead of all riding along"},
-      {"--threads", "N", "compare", "threads (all cores); the results do not depend on it", Takes::number},
+      {"--threads", "N", "compare sweep", "threads (all cores); the results do not depend on it", Takes::number},
+      {"--case", "K", "run", "of a sweep plan: run case K alone, as the sweep numbers them from 0", Takes::number},
+      {"--store", "FILE.sqlite", "sweep", "where the rows go (PLAN's name, in this folder); an older one is gone on with",
+       Takes::file},
+      {"--csv", "FILE.csv", "sweep", "write the whole store as CSV, one row a case and run", Takes::file},
+      {"--isa", "double|sse2|avx2|avx512", "sweep", "instruction set of the packs (the widest there is); double: none",
+       Takes::word},
+      {"--shard", "I/N", "sweep", "run part I of N (from 0) into a store of its own"},
+      {"--merge", "FILE.sqlite", "sweep", "join this store of a shard into --store and run nothing; repeatable",
+       Takes::file},
       {"--trace", "FILE.csv|FILE.h5", "run", "write the trace, as CSV or HDF5", Takes::file},
       {"--figure", "FILE.svg", "run compare", "draw the result", Takes::file},
       {"--publish", "ENDPOINT", "run", "publish the run as it happens: tcp://HOST:PORT, ipc://PATH or PORT (loopback)"},
@@ -41,9 +54,9 @@ std::span<const OptionRow> option_rows() {
       {"--markdown", "", "check", "with --keys: as Markdown tables"},
       {"--schema", "[scenario|machine]", "check", "in place of FILE: JSON Schema of such files, for TOML editors",
        Takes::word, true},
-      {"--json", "", "run check compare", "one JSON document on standard output, nothing else"},
-      {"--quiet", "", "run check compare", "print nothing but errors"},
-      {"--progress", "", "run compare", "show progress on standard error even if it is no terminal"},
+      {"--json", "", "run check compare sweep", "one JSON document on standard output, nothing else"},
+      {"--quiet", "", "run check compare sweep", "print nothing but errors"},
+      {"--progress", "", "run compare sweep", "show progress on standard error even if it is no terminal"},
   };
   return rows;
 }

@@ -6,6 +6,7 @@
 #include "sim/scenario/scenario.hpp"
 #include "tools/slipbench/comparison.hpp"
 #include "tools/slipbench/run_result.hpp"
+#include "tools/slipbench/sweep_result.hpp"
 
 namespace slipbench {
 
@@ -70,6 +71,31 @@ std::string json_document(const RunResult& r) {
                           {"rows", r.stream->rows},
                           {"dropped", r.stream->dropped}};
   }
+  return text_of(document);
+}
+
+std::string json_document(const SweepResult& r) {
+  const SweepOutcome& o = r.outcome;
+  Json document;
+  document["slipbench"] = SLIPBENCH_VERSION;
+  document["cases"] = r.plan->cases();
+  document["runs"] = r.plan->runs;
+  document["done"] = r.rows;
+  document["failed"] = r.diverged + r.refused;
+  document["diverged"] = r.diverged;
+  document["refused"] = r.refused;
+  document["lost"] = r.lost;
+  document["resumed"] = o.resumed;
+  document["wall_s"] = o.wall_s;
+  document["simulated_s"] = o.simulated_s;
+  document["lanes"] = o.lanes;
+  document["threads"] = o.threads;
+  document["isa"] = o.isa;
+  document["store"] = r.store;
+  document["ran_alone"] = Json::object();
+  for (const auto& [reason, rows] : o.not_in_lanes) document["ran_alone"][reason] = rows;
+  if (o.stopped) document["interrupted"] = true;
+  if (r.merged) document["merged"] = {{"rows", r.merged->rows}, {"twice", r.merged->twice}, {"missing", r.merged->missing}};
   return text_of(document);
 }
 

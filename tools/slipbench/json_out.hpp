@@ -10,6 +10,7 @@ namespace slipbench {
 
 struct RunResult;
 struct Comparison;
+struct SweepResult;
 
 struct ErrorDocument {
   std::string place, key, message, code;
@@ -28,6 +29,7 @@ struct CheckDocument {
 
 std::string json_document(const RunResult& result);
 std::string json_document(const Comparison& comparison);
+std::string json_document(const SweepResult& sweep);
 std::string json_document(const CheckDocument& check);
 std::string json_document(const ErrorDocument& error);
 

@@ -69,6 +69,17 @@ bool is_verb(std::string_view word) {
   refuse(name, fmt::format("unknown option '{}' of {}; the nearest is {}", name, verb, nearest(name, known)));
 }
 
+Shard shard_of(const std::string& text) {
+  const std::size_t slash = text.find('/');
+  if (slash == std::string::npos || text.find('/', slash + 1) != std::string::npos) {
+    refuse("--shard", fmt::format("--shard '{}': expected I/N, as in 0/3 for the first of three", text));
+  }
+  Shard shard;
+  shard.count = whole_number<std::uint64_t>("--shard", text.substr(slash + 1), 1, most_cases);
+  shard.index = whole_number<std::uint64_t>("--shard", text.substr(0, slash), 0, shard.count - 1);
+  return shard;
+}
+
 void want_word(const OptionRow& row, const std::string& word) {
   const std::vector<std::string_view> words = row.words();
   if (std::count(words.begin(), words.end(), word) > 0) return;
@@ -125,6 +136,10 @@ Request request_of(const std::string& verb, Given& given) {
   if (flag("--seed")) r.seed = whole_number<std::uint64_t>("--seed", text("--seed"), 0, UINT64_MAX);
   if (flag("--run")) r.noise_run = whole_number<std::uint32_t>("--run", text("--run"), 0, UINT32_MAX);
   if (flag("--runs")) r.runs = whole_number<std::uint32_t>("--runs", text("--runs"), 1, 1000000);
+  r.store = text("--store"), r.csv = text("--csv"), r.isa = text("--isa");
+  r.merge = given.values["--merge"];
+  if (flag("--case")) r.plan_case = whole_number<std::uint64_t>("--case", text("--case"), 0, most_cases);
+  if (flag("--shard")) r.shard = shard_of(text("--shard"));
   if (flag("--threads")) r.threads = whole_number<unsigned>("--threads", text("--threads"), 1, 1024);
   if (flag("--publish")) r.publish = text("--publish");
   if (flag("--publish-wait"))

@@ -7,6 +7,7 @@
 #include <vector>
 
 #include "sim/scenario/read.hpp"
+#include "sim/sweep/sweep.hpp"
 
 namespace slipbench {
 
@@ -23,6 +24,10 @@ struct Request {
   unsigned publish_wait = 0;
   double pace = 0.0;     // run: times real time at most; 0: as fast as it goes
   unsigned threads = 0;  // 0: all cores
+  std::string store, csv, isa;             // sweep
+  Shard shard;                             // sweep: --shard i/n
+  std::vector<std::string> merge;          // sweep: --merge STORE, repeatable
+  std::optional<std::uint64_t> plan_case;  // run PLAN --case K
   bool keys = false, markdown = false;
   std::string schema;  // check: of "scenario" or "machine" files; "": none
   [[nodiscard]] bool wants_reference() const { return keys || !schema.empty(); }  // then there is no file

@@ -1,0 +1,111 @@
+// sweep: every case of a plan into a store, or stores of shards joined.
+#include <fmt/format.h>
+
+#include <filesystem>
+#include <memory>
+
+#include "sim/record/csv_trace.hpp"
+#include "sim/record/out_file.hpp"
+#include "sim/sweep/merge.hpp"
+#include "sim/sweep/sweep.hpp"
+#include "tools/slipbench/interrupt.hpp"
+#include "tools/slipbench/json_out.hpp"
+#include "tools/slipbench/progress.hpp"
+#include "tools/slipbench/sweep_result.hpp"
+#include "tools/slipbench/table.hpp"
+#include "tools/slipbench/verbs.hpp"
+
+namespace slipbench {
+
+namespace {
+
+// NAME.sqlite beside nothing else: in the working folder, as other outputs are.
+std::string store_path(const Request& request) {
+  if (!request.store.empty()) return request.store;
+  const std::string stem = std::filesystem::path(request.file).stem().string();
+  if (request.shard.count == 1) return stem + ".sqlite";
+  return fmt::format("{}.{}-of-{}.sqlite", stem, request.shard.index, request.shard.count);
+}
+
+void write_csv(OutFile& file, const Store& store) {
+  std::string line = "case,run";
+  for (const std::string& key : store.columns().keys) line += "," + key;
+  for (const std::string& figure : store.columns().figures) line += "," + figure;
+  file.write(line + "\n");
+  store.each_row([&](const ResultRow& row) {
+    line = fmt::format("{},{}", row.case_number, row.run);
+    for (const std::string& value : row.values) {
+      const bool plain_text = value.find_first_of(",\"\n") == std::string::npos;
+      line += plain_text ? "," + value : ",\"" + value + "\"";
+    }
+    for (const Figure& figure : row.figures) {
+      line += ',';
+      append_number(line, figure.value_or(std::nan("")));
+    }
+    file.write(line + "\n");
+    return !file.failed();
+  });
+  file.finish();
+}
+
+// What a finished store says of each figure.
+void add_distributions(SweepResult& result, const Store& store) {
+  for (const std::string& figure : store.columns().figures) {
+    Distribution d{figure, store.figure_count(figure), {}};
+    if (d.count > 0) {
+      const auto rank = [&](double share) {
+        return static_cast<std::uint64_t>(share * static_cast<double>(d.count - 1) + 0.5);
+      };
+      d.values = store.at_ranks(figure, {0, rank(0.05), rank(0.5), rank(0.95), d.count - 1});
+    }
+    result.distributions.push_back(d);
+    if (figure.ends_with(".speed_rmse_rpm")) result.worst.push_back({figure, store.largest(figure, 3)});
+  }
+}
+
+}  // namespace
+
+int sweep_verb(const Request& request) {
+  want_plan(request);
+  const SweepPlan plan = read_plan(request.file, request.overrides, request.seed);
+  std::unique_ptr<OutFile> csv;
+  if (!request.csv.empty()) csv = std::make_unique<OutFile>(request.csv);
+  Store store(store_path(request), origin_of(plan), columns_of(plan));
+
+  SweepResult result;
+  result.plan = &plan;
+  result.store = store.path();
+  if (!request.merge.empty()) {
+    result.merged = merge_stores(plan, store, request.merge);
+  } else {
+    Progress progress("sweep", request.progress, request.quiet);
+    SweepOptions options;
+    options.threads = request.threads;
+    options.isa = request.isa;
+    options.shard = request.shard;
+    options.keep_going = [&](const SweepProgress& p) {
+      progress.update(p.rows > 0 ? static_cast<double>(p.done) / static_cast<double>(p.rows) : 1.0);
+      return !interrupted();
+    };
+    result.outcome = run_sweep(plan, store, options);
+  }
+  result.diverged = store.status_count("diverged");
+  result.refused = store.status_count("refused");
+  result.lost = store.status_count("lost");
+  result.rows = store.rows();
+  if (!request.json && !request.quiet) add_distributions(result, store);
+  if (csv) {
+    write_csv(*csv, store);
+    result.files.push_back(fmt::format("csv:   {}", request.csv));
+  }
+  if (request.json) {
+    print(json_document(result));
+  } else if (!request.quiet) {
+    print(sweep_summary(result));
+  }
+  if (result.outcome.stopped) return ExitStatus::stopped;
+  const bool gaps = result.merged && result.merged->missing > 0;
+  return result.diverged + result.refused > 0 || gaps ? ExitStatus::bad_result : ExitStatus::done;
+}
+
+}  // namespace slipbench
