@@ -1,36 +1,24 @@
 #include "sim/engine/simulate.hpp"
 
-#include <array>
 #include <chrono>
 #include <limits>
 
 #include "sim/engine/run.hpp"
+#include "sim/engine/start.hpp"
 #include "sim/scenario/input_error.hpp"
 
 namespace slipbench {
 
 namespace {
 
-// Run-in lengths tried for a steady start, and how still (share of the rated values) the drive must stand after each.
-// Only a limit cycle (dead time, encoder lines) keeps a drive from the first; its means must still stand.
-struct RunIn {
-  double seconds, allowed;
-};
-constexpr std::array<RunIn, 3> run_ins{{{1.0, 1e-7}, {4.0, 1e-6}, {16.0, 5e-4}}};
-
 std::unique_ptr<Run> started(const Scenario& scenario, const RunOptions& options) {
   if (scenario.run.start != "steady") return std::make_unique<Run>(scenario, options, 0);
   for (const RunIn& run_in : run_ins) {
-    const auto ticks = static_cast<std::int64_t>(run_in.seconds / scenario.run.control_period_s);
-    auto run = std::make_unique<Run>(scenario, options, -ticks);
+    auto run = std::make_unique<Run>(scenario, options, run_in.first_tick(scenario));
     const double moving = run->run_in();
     if (moving <= run_in.allowed) return run;
   }
-  throw InputError(
-      scenario.path, "run.start",
-      "start = \"steady\": no steady state at the first reference and load (the drive still moves after 16 s "
-      "of simulated time); start from \"standstill\" or \"magnetised\", or change the operating point",
-      "steady");
+  throw never_steady(scenario);
 }
 
 }  // namespace

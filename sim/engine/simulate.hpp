@@ -36,7 +36,8 @@ struct RunOutcome {
 // ends the run.
 RunOutcome simulate(const Scenario& scenario, std::span<RunObserver* const> observers, const RunOptions& options = {});
 
-// A run at t = 0, set up (a steady start run in) but not begun: what packs of lanes are filled with. Throws as simulate() does.
+// A run at t = 0, set up (a steady start run in) but not begun: what packs of lanes are filled with. Built-in methods only.
+// Throws as simulate() does.
 RunSetup ready_run(const Scenario& scenario, std::uint32_t noise_run = 0);
 
 // Throws OutsideError where the processor flushes denormals.

@@ -108,4 +108,12 @@ StartState start_state(const Scenario& s, Plant<double>& plant, std::int64_t fir
   return start;
 }
 
+InputError never_steady(const Scenario& s) {
+  return InputError(
+      s.path, "run.start",
+      "start = \"steady\": no steady state at the first reference and load (the drive still moves after 16 s "
+      "of simulated time); start from \"standstill\" or \"magnetised\", or change the operating point",
+      "steady");
+}
+
 }  // namespace slipbench

@@ -37,6 +37,24 @@ inline Scenario conveyor(std::vector<Override> more) {
   return shipped("conveyor_hot_rotor", all);
 }
 
+// Light cases settle in the first run-in, the encoder's limit cycle asks for a longer one.
+inline Family steady_family() {
+  return {"steady start",
+          [](std::size_t i) {
+            const double x = static_cast<double>(i);
+            Scenario s = conveyor({{"run.start", "steady"},
+                                   {"run.duration_s", "0.02"},
+                                   {"run.plant_step_s", "50e-6"},
+                                   {"run.trace_period_s", "0.5e-3"},
+                                   {"load.1.torque_Nm", "[[0.0, " + number(1.0 + x) + "]]"},
+                                   {"reference.speed_rpm", "[[0.0, " + number(300.0 + 40.0 * x) + "]]"}});
+            s.sensors.speed = {};
+            s.sensors.speed.kind = "ideal";
+            return s;
+          },
+          own_run};
+}
+
 inline std::vector<Family> families() {
   const auto of = [](std::size_t i) { return static_cast<double>(i); };
   std::vector<Family> all;
@@ -127,16 +145,7 @@ inline std::vector<Family> families() {
                    },
                    same_run});
   }
-  all.push_back({"steady start",
-                 [=](std::size_t i) {
-                   return conveyor({{"run.start", "steady"},
-                                    {"run.duration_s", "0.02"},
-                                    {"run.plant_step_s", "50e-6"},
-                                    {"run.trace_period_s", "0.5e-3"},
-                                    {"load.1.torque_Nm", "[[0.0, " + number(1.0 + of(i)) + "]]"},
-                                    {"reference.speed_rpm", "[[0.0, " + number(300.0 + 40.0 * of(i)) + "]]"}});
-                 },
-                 own_run});
+  all.push_back(steady_family());
   for (const char* method : {"euler", "midpoint", "cash_karp5"}) {
     const bool sine = method[0] == 'm';
     all.push_back({std::string("stepped by ") + method,
@@ -184,7 +193,7 @@ inline std::vector<Family> failing_families() {
                  [=](std::size_t i) {
                    Scenario s = numbered(i);
                    s.controller.speed_from = "luenberger";
-                   if (i == 1) s.belief.stator_leakage = 1e-12;
+                   if (i == 1) s.belief.stator_resistance = 1e200;
                    return s;
                  },
                  same_run});

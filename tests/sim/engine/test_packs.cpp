@@ -5,6 +5,7 @@
 #include <functional>
 #include <string>
 
+#include "sim/engine/lanes/ready_cases.hpp"
 #include "sim/engine/lanes/run_pack.hpp"
 #include "sim/record/digest.hpp"
 #include "sim/scenario/read.hpp"
@@ -63,17 +64,24 @@ Alone alone(const Scenario& s, std::uint32_t noise_run) {
 // One pack of the family's first `count` cases against each of them alone.
 void check_pack(const LaneSet& set, const Family& family, std::size_t count) {
   INFO(family.name << ", " << count << " cases on " << set.name);
-  std::vector<RunSetup> setups;
-  std::vector<const RunSetup*> cases;
+  std::vector<Scenario> scenarios;
+  std::vector<std::uint32_t> runs;
   std::vector<Fingerprint> prints(count);
   std::vector<std::vector<RunObserver*>> observers;
   for (std::size_t i = 0; i < count; ++i) {
-    const Scenario s = family.scenario(i);
-    REQUIRE(lanes_can_run(s).empty());
-    setups.push_back(ready_run(s, family.noise_run(i)));
+    scenarios.push_back(family.scenario(i));
+    runs.push_back(family.noise_run(i));
     observers.push_back({&prints[i]});
+    REQUIRE(lanes_can_run(scenarios[i]).empty());
   }
-  for (const auto& setup : setups) cases.push_back(&setup);
+  std::vector<const Scenario*> asked;
+  for (const auto& s : scenarios) asked.push_back(&s);
+  const std::vector<ReadyCase> ready = ready_cases(set, asked, runs);
+  std::vector<const RunSetup*> cases;
+  for (const auto& one : ready) {
+    REQUIRE(one.refused.empty());
+    cases.push_back(&one.setup);
+  }
   const std::vector<RunOutcome> outcomes = run_pack(set, cases, observers);
   for (std::size_t i = 0; i < count; ++i) {
     const Alone single = alone(family.scenario(i), family.noise_run(i));
@@ -106,12 +114,31 @@ TEST_CASE("packs sse2: each case has the bits it has alone", "[engine][bits][sse
 TEST_CASE("packs avx2: each case has the bits it has alone", "[engine][bits][avx2]") { check_set("avx2"); }
 TEST_CASE("packs avx512: each case has the bits it has alone", "[engine][bits][avx512]") { check_set("avx512"); }
 
+TEST_CASE("packs: a case that cannot start is refused as simulate() refuses it, the others are ready",
+          "[engine][packs]") {
+  const Family family = pack_tests::steady_family();
+  std::vector<Scenario> scenarios{family.scenario(0), family.scenario(1), family.scenario(2)};
+  scenarios[1].reference.speed_rpm.clear();
+  scenarios[1].reference.torque_Nm = {{0.0, 1e9}};  // no load takes it
+  const Scenario* asked[] = {&scenarios[0], &scenarios[1], &scenarios[2]};
+  const std::uint32_t runs[] = {0, 0, 0};
+  const auto ready = ready_cases(best_lane_set(), asked, runs);
+  CHECK((ready[0].refused.empty() && ready[2].refused.empty()));
+  CHECK_THROWS_WITH(simulate(scenarios[1], {}), ready[1].refused);
+}
+
 TEST_CASE("packs: a lane that diverges is told as simulate() tells it, and the others go on", "[engine][packs]") {
   const LaneSet& set = best_lane_set();
-  for (const Family& family : pack_tests::failing_families()) check_pack(set, family, set.width());
-  // What went wrong is told by name; alone() has checked the text against simulate()'s.
-  const Family family = pack_tests::failing_families().front();
-  CHECK(alone(family.scenario(1), 0).outcome.find("speed of the plant") != std::string::npos);
+  const std::vector<std::string> told{"speed of the plant", "flux of the plant",
+                                      "estimate of 'luenberger', which closes"};
+  const auto families = pack_tests::failing_families();
+  REQUIRE(told.size() == families.size());
+  for (std::size_t i = 0; i < told.size(); ++i) {
+    check_pack(set, families[i], set.width());
+    INFO(families[i].name);  // each meets the failure that it is named after
+    CHECK(alone(families[i].scenario(1), 0).outcome.find(told[i]) != std::string::npos);
+    CHECK(alone(families[i].scenario(0), 0).outcome.find("done") == 0);
+  }
 }
 
 TEST_CASE("packs: when every lane is lost the pack ends", "[engine][packs]") {
