@@ -12,7 +12,8 @@ static_assert(std::atomic<bool>::is_always_lock_free, "a signal handler may touc
 
 void on_interrupt(int signal) {
   asked.store(true);
-  std::signal(signal, SIG_DFL);
+  // `timeout` and closing terminals signal twice.
+  if (signal == SIGINT) std::signal(SIGINT, SIG_DFL);
 }
 
 }  // namespace

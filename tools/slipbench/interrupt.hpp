@@ -1,5 +1,5 @@
-// Ctrl-C, `kill`, a terminal that closes: the first asks the run to stop and keeps what was done, a second of the same kind ends
-// the program at once.
+// Ctrl-C, `kill`, a terminal that closes: the first asks the run to stop and keeps what was done. A second Ctrl-C ends the program
+// at once.
 #pragma once
 
 namespace slipbench {
