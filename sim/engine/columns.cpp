@@ -1,5 +1,7 @@
 #include "sim/engine/columns.hpp"
 
+#include "sim/engine/observer.hpp"
+
 namespace slipbench {
 
 const std::vector<Column>& plant_columns() {
@@ -34,6 +36,16 @@ std::vector<Column> estimator_columns(const std::string& name) {
           {name + ".rotor_flux_angle_rad", "rad", "estimated angle of the rotor flux"},
           {name + ".torque_Nm", "N m", "estimated electromagnetic torque"},
           {name + ".trust", "", "what the estimator thinks of itself, 0 to 1"}};
+}
+
+std::vector<Column> RunInfo::columns() const {
+  std::vector<Column> all = plant;
+  all.insert(all.end(), measured.begin(), measured.end());
+  for (const std::string& name : estimator_names) {
+    const std::vector<Column> five = estimator_columns(name);
+    all.insert(all.end(), five.begin(), five.end());
+  }
+  return all;
 }
 
 }  // namespace slipbench

@@ -21,7 +21,7 @@ struct TickView {
   bool clipped = false;                         // the controller's voltage limit acted
 };
 
-// One trace row: plant columns, measured columns, five columns for each estimator, as `RunInfo::columns` names them.
+// One trace row: plant columns, measured columns, five columns for each estimator, as `RunInfo::columns()` names them.
 struct RowView {
   std::int64_t row = 0;
   const PlantRow* plant = nullptr;
@@ -34,6 +34,8 @@ struct RunInfo {
   double trace_period_s = 0.0, control_period_s = 0.0, duration_s = 0.0;
   std::vector<Column> plant, measured;  // estimator columns follow from the names
   std::vector<std::string> estimator_names, estimator_kinds;
+
+  [[nodiscard]] std::vector<Column> columns() const;  // all that a row has, in contract order
 };
 
 class RunObserver {

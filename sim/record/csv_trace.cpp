@@ -18,7 +18,7 @@ void append_number(std::string& text, double number) {
 
 void CsvTrace::begin(const RunInfo& info) {
   line_.clear();
-  const std::vector<Column> columns = trace_columns(info);
+  const std::vector<Column> columns = info.columns();
   columns_ = columns.size();
   for (const Column& column : columns) line_ += (line_.empty() ? "" : ",") + column.name;
   line_ += '\n';

@@ -111,7 +111,7 @@ void Hdf5Trace::write_about(const RunInfo& info) {
 
 void Hdf5Trace::begin(const RunInfo& info) {
   write_about(info);
-  const std::vector<Column> columns = trace_columns(info);
+  const std::vector<Column> columns = info.columns();
   columns_ = columns.size();
   block_.assign(columns_ * rows_per_block, 0.0);
   const hsize_t none = 0, unlimited_rows = H5S_UNLIMITED, chunk = rows_per_block;

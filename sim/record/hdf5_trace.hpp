@@ -1,6 +1,7 @@
 // Trace of a run as HDF5, format 1: one float64 dataset a column at the root, `unit` and `meaning` as its attributes; group
-// `about` with what it was made from: dataset `scenario` (the file's text), attributes `format`, `slipbench`, `title`, `seed`,
-// `noise_run`, `trace_period_s`, `overrides`. NaN for none. The only place that knows HDF5.
+// `about` with what it was made from: datasets `scenario` (the file's text) and `overrides` (one `key=value` a line), attributes
+// `format`, `slipbench`, `title`, `seed`, `noise_run`, `trace_period_s`. Links keep the order of their creation, which is the
+// trace's. NaN for none. The only place that knows HDF5.
 #pragma once
 
 #include <string>

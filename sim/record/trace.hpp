@@ -33,8 +33,6 @@ struct TraceOrigin {
 
 // True for names that end in a format's ending.
 [[nodiscard]] bool is_hdf5_name(const std::string& path);  // .h5, .hdf5
-// All columns that a run's rows have, in contract order.
-[[nodiscard]] std::vector<Column> trace_columns(const RunInfo& info);
 // CSV for all other names. Throws OutsideError where the file cannot be written.
 std::unique_ptr<Trace> open_trace(const std::string& path, const TraceOrigin& origin);
 

@@ -58,7 +58,8 @@ Endpoint tcp(const std::string& text, std::string_view rest) {
 Endpoint ipc(const std::string& text, const std::string& path) {
   constexpr std::size_t longest = sizeof(sockaddr_un::sun_path) - 1;
   if (path.empty()) refuse(text, "no path");
-  if (path == "*") refuse(text, "ipc wants the path of a file");
+  // Libzmq takes these for a name of its own choice and for one that is no file (and that nobody would remove).
+  if (path == "*" || path.front() == '@') refuse(text, "ipc wants the path of a file");
   if (path.size() > longest) refuse(text, "the path is longer than " + std::to_string(longest) + " characters");
   if (path.find('\0') != std::string::npos) refuse(text, "the path has a zero character in it");
   return {"ipc://" + path, path, true};

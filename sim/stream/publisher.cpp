@@ -57,13 +57,7 @@ void StreamPublisher::wait_for(std::int64_t subscribers, const std::function<boo
 void StreamPublisher::begin(const RunInfo& info) {
   description_.period_s = info.trace_period_s;
   description_.duration_s = info.duration_s;
-  std::vector<Column>& columns = description_.columns;
-  columns = info.plant;
-  columns.insert(columns.end(), info.measured.begin(), info.measured.end());
-  for (const std::string& name : info.estimator_names) {
-    const std::vector<Column> own = estimator_columns(name);
-    columns.insert(columns.end(), own.begin(), own.end());
-  }
+  const std::vector<Column>& columns = description_.columns = info.columns();
   plant_columns_ = info.plant.size();
   const std::size_t row_bytes = columns.size() * sizeof(double);
   rows_per_block_ = std::clamp(largest_block / row_bytes / 8 * 8, std::size_t{8}, longest_block);

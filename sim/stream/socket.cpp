@@ -86,7 +86,15 @@ StreamSocket::StreamSocket(const Endpoint& endpoint, std::size_t queue_bytes) : 
 
 void StreamSocket::take_subscriptions() {
   zmq::message_t message;
-  while (socket_.handle() != nullptr && socket_.recv(message, zmq::recv_flags::dontwait)) {
+  const auto came = [&] {
+    try {
+      return socket_.recv(message, zmq::recv_flags::dontwait).has_value();
+    } catch (const zmq::error_t& error) {
+      if (error.num() != EINTR) throw;
+      return false;  // a Ctrl-C while subscribers are waited for: whoever waits asks for it
+    }
+  };
+  while (socket_.handle() != nullptr && came()) {
     const std::string_view text = message.to_string_view();
     if (text.empty() || text.front() > 1) continue;  // a SUB sends nothing but subscriptions
     subscription(text.front() == 1, text.substr(1), zmq_msg_get(message.handle(), ZMQ_SRCFD));

@@ -103,8 +103,9 @@ TEST_CASE("command: interrupted, a run keeps what was done and ends with 130", "
   const Folder folder;
   const std::string file =
       folder.write("s.toml", replaced(scenario_text(), "duration_s = 0.3", "duration_s = 100000.0"));
+  const std::string signal = GENERATE("INT", "TERM");
   // In the foreground `timeout` signals once; otherwise twice, and a second interrupt ends the command at once.
-  const std::string before = "timeout --foreground --preserve-status --signal=INT 1.5";
+  const std::string before = "timeout --foreground --preserve-status --signal=" + signal + " 1.5";
   const Answer run =
       folder.run({"run", file, "--json", "--trace", folder.file("t.csv"), "--set", "run.trace_period_s=1e-3"}, before);
   INFO(run.err);

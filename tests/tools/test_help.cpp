@@ -85,6 +85,9 @@ TEST_CASE("command line: what stands in place of a verb or of FILE", "[tools][co
   CHECK_THAT(refusal({"--completion"}), Contains("--completion needs a value"));
   CHECK_THAT(refusal({"--man", "run", "a.toml"}), Contains("--man stands alone"));
   CHECK_THAT(refusal({"--man", "--completion", "bash"}), Contains("stands alone"));
+  CHECK_THAT(refusal({"--completion", "bash", "zsh"}), Contains("--completion stands alone"));
+  CHECK_THAT(refusal({"--man", "a.toml"}), Contains("--man stands alone"));
+  CHECK_THAT(refusal({"check", "--keys", "--schema"}), Contains("one of them at a time"));
 
   const auto keys = parse_command_line({"check", "--keys", "--json"});
   CHECK(keys.request->keys);

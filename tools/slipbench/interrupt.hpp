@@ -1,4 +1,5 @@
-// Ctrl-C: the first one asks the run to stop and keeps what was done, the second one ends the program at once.
+// Ctrl-C, `kill`, a terminal that closes: the first asks the run to stop and keeps what was done. A second Ctrl-C ends the program
+// at once.
 #pragma once
 
 namespace slipbench {

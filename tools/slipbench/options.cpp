@@ -106,6 +106,7 @@ void check_reference(const Request& r) {
   }
   if (!r.overrides.empty()) refuse("--set", fmt::format("--set means nothing with {}: no file is read", name));
   if (r.seed) refuse("--seed", fmt::format("--seed means nothing with {}: no file is read", name));
+  if (r.keys && !r.schema.empty()) refuse("--schema", "--schema stands beside --keys: one of them at a time");
   if (r.markdown && (r.json || !r.schema.empty())) {
     refuse("--markdown", fmt::format("--markdown stands beside {}: one form at a time", r.json ? "--json" : name));
   }
@@ -189,15 +190,17 @@ void add_verb(CLI::App& app, const VerbRow& verb, Given& given) {
   sub->footer(fmt::format("{}:\n  {}\n\n{}", heading, fmt::join(verb.examples, "\n  "), caution));
 }
 
+[[noreturn]] void refuse_company(const std::string& name) {
+  refuse(name, fmt::format("{} stands alone, as in: slipbench {}{}", name, name, name == "--man" ? "" : " bash"));
+}
+
 // What stands in place of a verb: the text it asks for.
 std::optional<std::string> program_text(Given& given, const std::string& verb) {
   const std::vector<std::string>& shells = given.values["--completion"];
   const bool man = given.flags["--man"];
   if (shells.empty() && !man) return {};
   const std::string name = man ? "--man" : "--completion";
-  if (!verb.empty() || shells.size() + (man ? 1 : 0) > 1) {
-    refuse(name, fmt::format("{} stands alone, as in: slipbench {}{}", name, name, man ? "" : " bash"));
-  }
+  if (!verb.empty() || shells.size() + (man ? 1 : 0) > 1) refuse_company(name);
   if (man) return man_page();
   for (const OptionRow& row : program_rows()) {
     if (row.name == name) want_word(row, shells.front());
@@ -250,6 +253,9 @@ CommandLine parse_command_line(const std::vector<std::string>& arguments) {
   } catch (const CLI::CallForVersion& version) {
     return {{}, std::string(version.what()) + "\n"};
   } catch (const CLI::ExtrasError&) {
+    if (const std::string& first = arguments.front(); first == "--man" || first.starts_with("--completion")) {
+      refuse_company(first.substr(0, first.find('=')));
+    }
     refuse(arguments.front(),
            fmt::format("'{}' in front of the verb; the order is: slipbench VERB FILE [options]", arguments.front()));
   } catch (const CLI::ArgumentMismatch& error) {

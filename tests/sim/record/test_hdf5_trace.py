@@ -79,6 +79,9 @@ class Hdf5Trace(unittest.TestCase):
     def test_a_stopped_run_keeps_its_rows(self):
         command = [slipbench, "run", str(scenario), "--set", "run.duration_s=10000.0", "--quiet", "--trace", self.path]
         endless = subprocess.Popen(command, stderr=subprocess.PIPE, text=True)
+        begun = time.monotonic()
+        while not any(".partial" in name for name in os.listdir(self.folder.name)) and time.monotonic() < begun + 60:
+            time.sleep(0.02)  # a busy machine: before its file is there it would not have heard the signal either
         time.sleep(0.5)
         endless.send_signal(signal.SIGINT)
         self.assertEqual((endless.wait(timeout=30), endless.stderr.read()), (130, ""))

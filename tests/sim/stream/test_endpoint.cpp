@@ -61,6 +61,7 @@ TEST_CASE("endpoint: what is malformed is refused, with what is allowed and an e
                                   std::string("tcp://user@host:5600"),
                                   std::string("ipc://"),
                                   std::string("ipc://*"),
+                                  std::string("ipc://@nobody"),
                                   long_path,
                                   std::string("udp://127.0.0.1:5600"),
                                   std::string("inproc://x"),

@@ -115,7 +115,7 @@ class Figure:
         self.figure.canvas.flush_events()
 
     def save(self, path: str) -> None:
-        """Writes the picture. Raises OSError, ValueError for an ending that matplotlib does not know."""
+        """Writes the picture. Raises OSError."""
         self._update()
         self.figure.savefig(path, dpi=100)
 

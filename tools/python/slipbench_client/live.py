@@ -65,7 +65,7 @@ def parser() -> argparse.ArgumentParser:
     add("--columns", default="", metavar="A,B", help="columns above, of two units at most; default: the speeds")
     add("--window", type=float, default=5.0, metavar="S", help="seconds of the run that are shown (5)")
     add("--save", metavar="FILE", help="write the last picture: .png, .svg or .pdf")
-    add("--timeout", type=float, default=10.0, metavar="S", help="give up after so many seconds of silence (10)")
+    add("--timeout", type=float, default=10.0, metavar="S", help="give up after so many seconds of silence once a run has begun (10)")
     return words
 
 
@@ -80,7 +80,10 @@ def main(arguments: Sequence[str] | None = None) -> int:
         figure = Figure(plt, given.window)
         if not figure.shown and not given.save:
             return fail(ClientError("there is no display here: give --save FILE for the last picture"), 2)
+        check_ending(figure, given.save)
         with Stream(given.endpoint) as stream:
+            if not figure.shown:  # where there is, the window says so
+                print(f"waiting for a run on {stream.endpoint} (Ctrl-C to stop)", file=sys.stderr)
             try:
                 why = follow(stream, figure, [name for name in given.columns.split(",") if name], given.timeout)
             except KeyboardInterrupt:
@@ -100,12 +103,16 @@ def main(arguments: Sequence[str] | None = None) -> int:
         return fail(error, 2)
 
 
+def check_ending(figure: Any, path: str | None) -> None:
+    """Before the run, not after it. Raises ClientError for an ending that matplotlib does not write."""
+    known = sorted(figure.figure.canvas.get_supported_filetypes())
+    if path and path.rpartition(".")[2].lower() not in known:
+        raise ClientError(f"--save {path}: the file's ending tells the format; there are {', '.join(known)}")
+
+
 def save(figure: Any, path: str | None) -> None:
     if path:
-        try:
-            figure.save(path)
-        except ValueError as error:  # an ending that matplotlib does not know
-            raise ClientError(f"--save {path}: {error}") from None
+        figure.save(path)
 
 
 def fail(error: Exception, status: int) -> int:

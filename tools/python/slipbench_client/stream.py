@@ -44,6 +44,8 @@ class Stream:
         except ImportError as error:
             raise needs("msgpack" if error.name == "msgpack" else "pyzmq", "stream", "a stream") from None
         endpoint = str(endpoint)
+        if endpoint.isdigit() and not 0 < int(endpoint) < 65536:  # ZeroMQ would take it and wait for ever
+            raise StreamError(f"endpoint '{endpoint}': a port runs from 1 to 65535")
         self.endpoint = f"tcp://127.0.0.1:{endpoint}" if endpoint.isdigit() else endpoint
         self.timeout_s, self.start_timeout_s, self.follow = timeout_s, start_timeout_s, follow
         self.description: Description | None = None

@@ -21,8 +21,8 @@ def read_trace(path: str | os.PathLike[str]) -> Trace:
     """The trace in a file; its first bytes tell CSV from HDF5.
 
     Values are those of the run to the bit. CSV: units come from the names, `meaning` and `about` are empty. HDF5: units and
-    meanings are the file's, `about` has title, seed, scenario (text), slipbench (version), trace_period_s, format; the file
-    keeps no order of columns, so time comes first, then the plant, what was measured, and the estimators, each by name.
+    meanings are the file's, `about` has title, seed, scenario (text), slipbench (version), trace_period_s, format. Columns
+    come in the file's order, of either kind.
 
     Raises TraceError where the file is missing, is no trace, or breaks off; VersionError where its format is later than 1;
     ClientError where it is HDF5 and h5py is not installed.
@@ -83,9 +83,13 @@ def _text(value: Any) -> Any:
     return value.decode("utf-8") if isinstance(value, bytes) else value
 
 
-def _room(name: str) -> tuple[int, str]:
-    """Time, plant, measured, estimators."""
-    return (0 if name == "time_s" else 1 if "." not in name else 2 if name.startswith("measured.") else 3), name
+def _names(file: Any, h5: Any) -> list[str]:
+    """The columns in the order they were written; by name where a tool that keeps no order has copied the file."""
+    tracked = h5.h5g.open(file.id, b"/").get_create_plist().get_link_creation_order() & h5.h5p.CRT_ORDER_TRACKED
+    names: list[str] = []
+    file.id.links.iterate(lambda name: names.append(name.decode()),
+                          idx_type=h5.h5.INDEX_CRT_ORDER if tracked else h5.h5.INDEX_NAME)
+    return [name for name in names if isinstance(file[name], h5.Dataset)]
 
 
 def _read_hdf5(path: Path) -> Trace:
@@ -102,7 +106,7 @@ def _read_hdf5(path: Path) -> Trace:
                 raise VersionError(f"{path}: the trace's format is {about['format']}, known here is {KNOWN_FORMAT}: "
                                    "take a later slipbench_client")
             about.update({key: _text(data[()]) for key, data in file["about"].items()})
-            names = sorted((name for name in file if isinstance(file[name], h5py.Dataset)), key=_room)
+            names = _names(file, h5py)
             columns = [Column(name, *(_text(file[name].attrs.get(key, "")) for key in ("unit", "meaning"))) for name in names]
             return Trace(columns, [file[name][:] for name in names], about)
     except (OSError, RuntimeError) as error:
