@@ -2,7 +2,6 @@
 
 #include <sqlite3.h>
 
-#include <cerrno>
 #include <cstring>
 #include <sstream>
 
@@ -28,6 +27,17 @@ std::string first_difference(const std::string& was, const std::string& is) {
   }
 }
 
+// What a person calls an item of the origin.
+std::string shown(const std::string& item) {
+  return item == "machines"    ? "machine file"
+         : item == "overrides" ? "--set"
+         : item == "seed"      ? "--seed"
+         : item == "slipbench" ? "version of slipbench"
+         : item == "cases"     ? "number of cases"
+         : item == "runs"      ? "number of runs"
+                               : item;
+}
+
 }  // namespace
 
 Store::Store(const std::string& path, const Origin& origin, const StoreColumns& columns)
@@ -36,13 +46,15 @@ Store::Store(const std::string& path, const Origin& origin, const StoreColumns& 
   try {
     execute("PRAGMA journal_mode = WAL; PRAGMA synchronous = NORMAL; PRAGMA locking_mode = EXCLUSIVE;");
     // An empty file is a store that was killed before its tables stood.
-    const Statement tables(prepare("SELECT count(*) FROM sqlite_master WHERE name IN ('about', 'result')"));
+    const Statement tables(prepare("SELECT count(*) FROM sqlite_master"));
     if (sqlite3_step(tables.at) != SQLITE_ROW) fail(sqlite3_errcode(db_));
     if (sqlite3_column_int(tables.at, 0) == 0) {
       make();
     } else {
       read_origin();
       demand_same(origin);
+      if (columns_.keys != columns.keys || columns_.figures != columns.figures)
+        throw InputError(path_, "", "the store has other columns than this plan gives; name another --store", "store");
     }
     std::string marks = "?";
     for (std::size_t i = 1; i < fixed + columns.keys.size() + columns.figures.size(); ++i) marks += ",?";
@@ -103,6 +115,12 @@ void Store::make() {
 void Store::read_origin() {
   origin_.clear();
   columns_ = {};
+  const Statement tables(prepare("SELECT count(*) FROM sqlite_master WHERE name IN ('about', 'result')"));
+  if (sqlite3_step(tables.at) != SQLITE_ROW) fail(sqlite3_errcode(db_));
+  const Statement items(prepare("SELECT count(*) FROM pragma_table_info('about') WHERE name IN ('item', 'content')"));
+  if (sqlite3_column_int(tables.at, 0) != 2 || sqlite3_step(items.at) != SQLITE_ROW ||
+      sqlite3_column_int(items.at, 0) != 2)
+    throw InputError(path_, "", "this SQLite file is no store of a sweep; name another --store", "store");
   const Statement about(prepare("SELECT item, content FROM about"));
   while (sqlite3_step(about.at) == SQLITE_ROW) origin_.emplace_back(text_at(about.at, 0), text_at(about.at, 1));
   const Statement columns(prepare("SELECT name, type FROM pragma_table_info('result') ORDER BY cid"));
@@ -110,7 +128,6 @@ void Store::read_origin() {
     if (i < fixed) continue;
     (text_at(columns.at, 1) == "REAL" ? columns_.figures : columns_.keys).push_back(text_at(columns.at, 0));
   }
-  if (origin_.empty()) throw InputError(path_, "", "this SQLite file is no store of a sweep", "store");
 }
 
 void Store::demand_same(const Origin& wanted) const {
@@ -124,7 +141,7 @@ void Store::demand_same(const Origin& wanted) const {
     const std::string* was = content(origin_, item);
     if (was != nullptr && *was == is) continue;
     throw InputError(path_, item,
-                     "the store was made from another " + item + " (" +
+                     "the store was made from another " + shown(item) + " (" +
                          first_difference(was == nullptr ? "" : *was, is) +
                          "); go on with what it was made from, or name another --store",
                      "store");
@@ -143,15 +160,7 @@ void Store::write(const std::vector<ResultRow>& batch) {
       sqlite3_bind_null(insert_, at++);
     else
       bind_text(insert_, at++, row.message);
-    for (const std::string& value : row.values) {
-      char* end = nullptr;
-      errno = 0;
-      const double number = std::strtod(value.c_str(), &end);
-      if (!value.empty() && end == value.c_str() + value.size() && errno == 0)
-        sqlite3_bind_double(insert_, at++, number);
-      else
-        bind_text(insert_, at++, value);
-    }
+    for (const std::string& value : row.values) bind_value(insert_, at++, value);
     for (const Figure& figure : row.figures) {
       if (figure)
         sqlite3_bind_double(insert_, at++, *figure);
@@ -226,7 +235,7 @@ void Store::execute(const std::string& sql) const {
 
 void Store::fail(int code) const {
   if ((code & 0xff) == SQLITE_NOTADB)
-    throw InputError(path_, "", "this is no store of a sweep (no SQLite file)", "store");
+    throw InputError(path_, "", "this is no store of a sweep (no SQLite file); name another --store", "store");
   if ((code & 0xff) == SQLITE_BUSY)
     throw OutsideError("the store '" + path_ + "' is in use by another process; wait for it, or name another --store");
   const int system = sqlite3_system_errno(db_);
