@@ -93,6 +93,22 @@ class Table {
   std::vector<std::string_view> known_;
 };
 
+// A string as an override must give it so that it comes out the same: bare where that does, else quoted as TOML.
+std::string string_text(const std::string& text) {
+  const Node bare = parse_value(text, {});
+  if (bare.kind == Node::Kind::text && bare.text == text) return text;
+  std::string quoted = "\"";
+  for (const char c : text) {
+    constexpr char hex[] = "0123456789ABCDEF";
+    const auto byte = static_cast<unsigned char>(c);
+    if (byte < 0x20 || byte == 0x7f)
+      quoted += std::string("\\u00") + hex[byte >> 4] + hex[byte & 15];
+    else
+      quoted += (c == '"' || c == '\\' ? std::string("\\") : std::string()) + c;
+  }
+  return quoted + "\"";
+}
+
 // A value as the text of a TOML value, to be set by an override.
 std::string value_text(const Node& value, const Table& table) {
   switch (value.kind) {
@@ -104,7 +120,7 @@ std::string value_text(const Node& value, const Table& table) {
     case Node::Kind::truth:
       return value.truth ? "true" : "false";
     case Node::Kind::text:
-      return value.text;
+      return string_text(value.text);
     default:
       break;
   }

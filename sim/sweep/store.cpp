@@ -2,6 +2,7 @@
 
 #include <sqlite3.h>
 
+#include <cerrno>
 #include <cstring>
 #include <sstream>
 
@@ -169,16 +170,18 @@ void Store::write(const std::vector<ResultRow>& batch) {
     }
     const int code = sqlite3_step(insert_);
     sqlite3_reset(insert_);
-    if (code != SQLITE_DONE) {
-      const int why = sqlite3_extended_errcode(db_);
-      sqlite3_exec(db_, "ROLLBACK", nullptr, nullptr, nullptr);
-      fail(why);
-    }
+    if (code != SQLITE_DONE) undo_and_fail();
   }
-  if (sqlite3_exec(db_, "COMMIT", nullptr, nullptr, nullptr) != SQLITE_OK) {
-    const int why = sqlite3_extended_errcode(db_);
+  if (sqlite3_exec(db_, "COMMIT", nullptr, nullptr, nullptr) != SQLITE_OK) undo_and_fail();
+}
+
+// SQLite may have rolled back by itself; a second time is then an error that must not hide the first.
+void Store::undo_and_fail() const {
+  try {
+    fail(sqlite3_extended_errcode(db_));
+  } catch (...) {
     sqlite3_exec(db_, "ROLLBACK", nullptr, nullptr, nullptr);
-    fail(why);
+    throw;
   }
 }
 
@@ -238,12 +241,18 @@ void Store::fail(int code) const {
     throw InputError(path_, "", "this is no store of a sweep (no SQLite file); name another --store", "store");
   if ((code & 0xff) == SQLITE_BUSY)
     throw OutsideError("the store '" + path_ + "' is in use by another process; wait for it, or name another --store");
-  const int system = sqlite3_system_errno(db_);
-  const bool full = (code & 0xff) == SQLITE_FULL;
-  throw OutsideError("cannot write to the store '" + path_ + "': " +
-                     (full          ? "the disk is full; make room, and the same command goes on where it stopped"
-                      : system != 0 ? std::strerror(system)
-                                    : sqlite3_errmsg(db_)));
+  const int kind = code & 0xff;
+  const bool of_system = kind == SQLITE_IOERR || kind == SQLITE_FULL || kind == SQLITE_CANTOPEN;
+  const int system = of_system ? sqlite3_system_errno(db_) : 0;
+  const std::string why = system == EFBIG    ? "it may not grow further (the limit of a file's size, ulimit -f)"
+                          : system == EDQUOT ? "the disk quota is used up"
+                          : kind == SQLITE_FULL || system == ENOSPC ? "the disk is full"
+                                                                    : "";
+  if (!why.empty())
+    throw OutsideError("cannot write to the store '" + path_ + "': " + why +
+                       "; make room, and the same command goes on where it stopped");
+  throw OutsideError("cannot write to the store '" + path_ +
+                     "': " + (system != 0 ? std::strerror(system) : sqlite3_errmsg(db_)));
 }
 
 }  // namespace slipbench

@@ -75,6 +75,7 @@ class Store {
   void execute(const std::string& sql) const;
   [[nodiscard]] sqlite3_stmt* prepare(const std::string& sql) const;
   [[noreturn]] void fail(int code) const;
+  [[noreturn]] void undo_and_fail() const;
   [[nodiscard]] ResultRow row_of(sqlite3_stmt* statement) const;
   [[nodiscard]] std::uint64_t counted(const std::string& condition) const;
 

@@ -70,6 +70,8 @@ const Broken grids[] = {
     {"value out of range", "[0.7, 1.0, 1.5]", "[0.7, -1.0]", "-1.0", "belief.rotor_resistance", "-1", "range"},
     {"word for a number", "[0.7, 1.0, 1.5]", "[0.7, \"much\"]", "\"much\"", "belief.rotor_resistance",
      "\"much\" (a string)", "type"},
+    {"string of a number", "[0.7, 1.0, 1.5]", "[0.7, \"1.0\"]", "\"1.0\"", "belief.rotor_resistance",
+     "\"1.0\" (a string)", "type"},
     {"word that is none of them", "key = \"belief.rotor_resistance\"\nvalues = [0.7, 1.0, 1.5]",
      "key = \"run.method\"\nvalues = [\"rk4\", \"rk5\"]", "\"rk5\"", "run.method",
      "one of euler, midpoint, rk4, cash_karp5", "range"},

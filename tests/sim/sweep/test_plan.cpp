@@ -79,6 +79,18 @@ values = [50e-6, 25e-6]
   CHECK_FALSE(last.controller.dead_time_compensation);
 }
 
+TEST_CASE("plan: a string stays the string that it is", "[sweep][plan]") {
+  const Folder folder;
+  const SweepPlan plan = read_plan(write_plan(folder, R"(scenario = "scenario.toml"
+[[vary]]
+key = "title"
+values = ["plain", "1.0", "true", "\"quoted\"", "a\\b, c # d\tµ", "", "2026-01-01"]
+)"));
+  const std::vector<std::string> wanted = {"plain", "1.0", "true", "\"quoted\"", "a\\b, c # d\tµ", "", "2026-01-01"};
+  for (std::size_t k = 0; k < wanted.size(); ++k)
+    CHECK(scenario_of(plan).read(CaseMaker(plan).overrides(k)).title == wanted[k]);
+}
+
 TEST_CASE("plan: draws take their seed from plan, command line, scenario, in this order", "[sweep][plan]") {
   const Folder folder;
   const SweepPlan plan = read_plan(write_plan(folder, drawn_text()));
