@@ -237,13 +237,14 @@ void Store::execute(const std::string& sql) const {
 }
 
 void Store::fail(int code) const {
+  const int last = errno;  // of a failed COMMIT SQLite 3.40 keeps none
   if ((code & 0xff) == SQLITE_NOTADB)
     throw InputError(path_, "", "this is no store of a sweep (no SQLite file); name another --store", "store");
   if ((code & 0xff) == SQLITE_BUSY)
     throw OutsideError("the store '" + path_ + "' is in use by another process; wait for it, or name another --store");
   const int kind = code & 0xff;
   const bool of_system = kind == SQLITE_IOERR || kind == SQLITE_FULL || kind == SQLITE_CANTOPEN;
-  const int system = of_system ? sqlite3_system_errno(db_) : 0;
+  const int kept = sqlite3_system_errno(db_), system = !of_system ? 0 : kept != 0 ? kept : last;
   const std::string why = system == EFBIG    ? "it may not grow further (the limit of a file's size, ulimit -f)"
                           : system == EDQUOT ? "the disk quota is used up"
                           : kind == SQLITE_FULL || system == ENOSPC ? "the disk is full"

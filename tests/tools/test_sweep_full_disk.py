@@ -54,7 +54,7 @@ class FullDisk(unittest.TestCase):
             self.skipTest(f"cannot mount a tmpfs here: {mounted.stderr.strip()}")
         self.addCleanup(subprocess.run, ["umount", disk], check=True)
         filler = disk / "filler"
-        filler.write_bytes(b"x" * (3 * 1024 * 1024 - 700 * 1024))
+        filler.write_bytes(b"x" * (3 * 1024 * 1024 - 500 * 1024))
         said = self.check(bench, str(disk / "s.sqlite"), None, filler.unlink)
         self.assertIn("the disk is full; make room, and the same command goes on where it stopped", said)
 
@@ -69,7 +69,7 @@ class FullDisk(unittest.TestCase):
 
     def test_limit_of_file_size(self):
         bench = Bench(self, PLAN)
-        limit = 500 * 1024
+        limit = 250 * 1024
         said = self.check(bench, "s.sqlite", lambda: resource.setrlimit(resource.RLIMIT_FSIZE, (limit, limit)), lambda: None)
         self.assertIn("ulimit -f", said)
 

@@ -254,7 +254,9 @@ TEST_CASE("store: a batch that does not fit leaves nothing of itself, and the ne
   }
   ::setrlimit(RLIMIT_FSIZE, &whole);
   std::signal(SIGXFSZ, before);
-  says(text, "cannot write to the store '" + path + "'");
+  says(text,
+       "cannot write to the store '" + path + "': it may not grow further (the limit of a file's size, ulimit -f)");
+  says(text, "make room, and the same command goes on");
   CHECK(store.rows() == 1);
   store.write(rows);
   CHECK(store.rows() == 5000);
