@@ -28,6 +28,19 @@ std::string first_difference(const std::string& was, const std::string& is) {
   }
 }
 
+// Rows of run ?1 from case ?2 to below ?3. Runs of a case lie side by side: of a few all are read, of many each case is looked up.
+const char* count_text(const Origin& origin) {
+  constexpr std::size_t few = 1;  // digits
+  for (const auto& [item, content] : origin) {
+    if (item == "runs" && content.size() > few) {
+      return "WITH RECURSIVE k(c) AS (SELECT ?2 WHERE ?2 < ?3 UNION ALL SELECT c + 1 FROM k WHERE c + 1 < ?3) SELECT "
+             "count(*) "
+             "FROM k CROSS JOIN result ON result.\"case\" = c AND result.run = ?1";
+    }
+  }
+  return "SELECT count(*) FROM result WHERE run = ?1 AND \"case\" >= ?2 AND \"case\" < ?3";
+}
+
 // What a person calls an item of the origin.
 std::string shown(const std::string& item) {
   return item == "machines"    ? "machine file"
@@ -60,7 +73,7 @@ Store::Store(const std::string& path, const Origin& origin, const StoreColumns& 
     std::string marks = "?";
     for (std::size_t i = 1; i < fixed + columns.keys.size() + columns.figures.size(); ++i) marks += ",?";
     insert_ = prepare("INSERT OR REPLACE INTO result VALUES (" + marks + ")");
-    count_ = prepare("SELECT count(*) FROM result WHERE run = ? AND \"case\" >= ? AND \"case\" < ?");
+    count_ = prepare(count_text(origin_));
   } catch (...) {
     sqlite3_finalize(insert_);
     sqlite3_close(db_);
@@ -72,7 +85,7 @@ Store::Store(const std::string& path) : path_(path) {
   open(false);
   try {
     read_origin();
-    count_ = prepare("SELECT count(*) FROM result WHERE run = ? AND \"case\" >= ? AND \"case\" < ?");
+    count_ = prepare(count_text(origin_));
   } catch (...) {
     sqlite3_close(db_);
     throw;

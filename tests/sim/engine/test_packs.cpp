@@ -178,6 +178,18 @@ TEST_CASE("packs: an observer stops the pack, and what it throws comes out", "[e
   CHECK_THROWS_WITH(run_pack(best_lane_set(), cases, stopper), "disk full");
 }
 
+TEST_CASE("packs: with observers of single runs too a pack stops when asked", "[engine][packs]") {
+  const RunSetup one = ready_run(pack_tests::families().front().scenario(0), 0);
+  const RunSetup* cases[] = {&one};
+  const std::vector<std::vector<RunObserver*>> nobody(1);
+  int left = 3;
+  auto outcomes = run_pack(best_lane_set(), cases, nobody, [&] { return --left > 0; });
+  CHECK(outcomes[0].stopped);
+  CHECK(outcomes[0].simulated_s > 0.0);
+  outcomes = run_pack(best_lane_set(), cases, nobody, [] { return true; });
+  CHECK_FALSE(outcomes[0].stopped);
+}
+
 TEST_CASE("packs: what does not fit together, or in lanes, is refused", "[engine][packs]") {
   const Family family = pack_tests::families().front();
   Scenario s = family.scenario(0), other = s;

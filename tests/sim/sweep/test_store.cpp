@@ -97,14 +97,21 @@ TEST_CASE("store: a figure that is not a number is none", "[sweep][store]") {
 
 TEST_CASE("store: a row written again takes the place of the first", "[sweep][store]") {
   const Folder folder;
-  Store store(folder.file("s.sqlite"), origin, columns);
-  store.write({row(3, 0, 1.0, 1.0)});
-  store.write({row(3, 0, 2.0, 1.0), row(3, 1, 3.0, 1.0)});
-  CHECK(store.rows() == 2);
-  CHECK(rows_of(store)[0].figures[0] == 2.0);
-  CHECK(store.rows_between(0, 0, 3) == 0);
-  CHECK(store.rows_between(0, 3, 4) == 1);
-  CHECK(store.rows_between(1, 0, 100) == 1);
+  for (const char* runs : {"2", "1000"}) {  // looked for in two ways
+    Origin of_runs = origin;
+    of_runs.emplace_back("runs", runs);
+    Store store(folder.file(runs), of_runs, columns);
+    store.write({row(3, 0, 1.0, 1.0)});
+    store.write({row(3, 0, 2.0, 1.0), row(3, 1, 3.0, 1.0), row(5, 0, 3.0, 1.0)});
+    CHECK(store.rows() == 3);
+    CHECK(rows_of(store)[0].figures[0] == 2.0);
+    CHECK(store.rows_between(0, 0, 3) == 0);
+    CHECK(store.rows_between(0, 3, 3) == 0);
+    CHECK(store.rows_between(0, 3, 4) == 1);
+    CHECK(store.rows_between(0, 0, 6) == 2);
+    CHECK(store.rows_between(1, 0, 100) == 1);
+    CHECK(store.rows_between(2, 0, 100) == 0);
+  }
 }
 
 TEST_CASE("store: counts, ranks and the largest are those of a sorted list", "[sweep][store]") {
