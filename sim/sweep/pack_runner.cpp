@@ -2,6 +2,7 @@
 
 #include <algorithm>
 
+#include "sim/engine/lanes/ready_cases.hpp"
 #include "sim/engine/lanes/run_pack.hpp"
 #include "sim/scenario/input_error.hpp"
 #include "sim/scenario/nearest.hpp"
@@ -13,6 +14,7 @@ namespace {
 
 // A pack takes about as long as this share of its width would take alone: fewer cases than that are quicker in double.
 constexpr double pack_worth = 1.0 / 3.0;
+constexpr std::size_t packs_made_ready = 4;
 
 const LaneSet& set_named(const std::string& isa) {
   std::vector<std::string_view> names = {"double"};
@@ -67,7 +69,7 @@ void PackRunner::run_together(const std::vector<Ready*>& pack) {
     setups.push_back(&ready->setup);
     observers.push_back({&estimators.back(), &drives.back()});
   }
-  const std::vector<RunOutcome> outcomes = run_pack(*set_, setups, observers);
+  const std::vector<RunOutcome> outcomes = run_pack(*set_, setups, observers, keep_going_);
   for (std::size_t i = 0; i < pack.size(); ++i) {
     fill_row(*pack[i]->one->row, pack[i]->one->scenario, outcomes[i], estimators[i], drives[i]);
     simulated_s_ += outcomes[i].simulated_s;
@@ -76,19 +78,30 @@ void PackRunner::run_together(const std::vector<Ready*>& pack) {
 }
 
 void PackRunner::run(std::vector<PackCase>& cases, std::uint32_t noise_run) {
-  std::vector<Ready> ready;
-  ready.reserve(cases.size());
+  std::vector<PackCase*> for_lanes;
   for (PackCase& one : cases) {
     if (!keep_going_()) return;
     const std::string why = set_ == nullptr ? "asked for" : lanes_can_run(one.scenario);
-    if (!why.empty()) {
+    if (why.empty())
+      for_lanes.push_back(&one);
+    else
       run_alone(one, noise_run, why);
-      continue;
-    }
-    try {
-      ready.push_back({&one, ready_run(one.scenario, noise_run)});
-    } catch (const InputError& error) {
-      fill_refused(*one.row, error.message(), 0);
+  }
+  // A steady start runs in for seconds: a few packs at a time, so that a stop is heard between them.
+  const std::vector<std::uint32_t> runs(packs_made_ready * lanes_, noise_run);
+  std::vector<Ready> ready;
+  ready.reserve(for_lanes.size());
+  for (std::size_t first = 0; first < for_lanes.size() && keep_going_(); first += runs.size()) {
+    const std::size_t count = std::min(runs.size(), for_lanes.size() - first);
+    std::vector<const Scenario*> scenarios;
+    for (std::size_t i = 0; i < count; ++i) scenarios.push_back(&for_lanes[first + i]->scenario);
+    std::vector<ReadyCase> made = ready_cases(*set_, scenarios, std::span(runs).first(count));
+    for (std::size_t i = 0; i < count; ++i) {
+      PackCase* one = for_lanes[first + i];
+      if (made[i].refused.empty())
+        ready.push_back({one, std::move(made[i].setup)});
+      else
+        fill_refused(*one->row, made[i].refused, 0);
     }
   }
   // Cases of one shape fill packs in their order.

@@ -3,7 +3,6 @@
 #include <cmath>
 #include <filesystem>
 
-#include "sim/scenario/keys.hpp"
 #include "sim/scenario/nearest.hpp"
 #include "sim/scenario/overrides.hpp"
 #include "sim/scenario/tree.hpp"
@@ -71,27 +70,44 @@ class Table {
     return at.text;
   }
   // `key = "..."` or `keys = ["...", ...]`.
-  [[nodiscard]] std::vector<std::string> keys() const {
+  void keys(std::vector<std::string>& names, std::vector<std::string>& places) const {
     const Node *one = child("key"), *many = child("keys");
     if ((one == nullptr) == (many == nullptr)) {
       refuse(node_.place, dotted("key"), "'" + shown_ + "' needs either key = \"...\" or keys = [...]", "missing");
     }
-    if (one != nullptr) return {word("key", {})};
-    if (many->kind != Node::Kind::array || many->children.empty()) wrong(*many, "keys", "a list of strings");
-    std::vector<std::string> all;
+    if (one != nullptr) {
+      names = {word("key", {})}, places = {one->place.text()};
+      return;
+    }
+    if (many->kind != Node::Kind::array || many->children.empty())
+      wrong(*many, "keys", "a list of strings, at least one");
     for (const Node& key : many->children) {
       if (key.kind != Node::Kind::text) wrong(key, "keys", "a list of strings");
-      all.push_back(key.text);
+      names.push_back(key.text), places.push_back(key.place.text());
     }
-    return all;
   }
-  [[nodiscard]] const Node& node() const { return node_; }
 
  private:
   const Node& node_;
   std::string shown_;
   std::vector<std::string_view> known_;
 };
+
+// A string as an override must give it so that it comes out the same: bare where that does, else quoted as TOML.
+std::string string_text(const std::string& text) {
+  const Node bare = parse_value(text, {});
+  if (bare.kind == Node::Kind::text && bare.text == text) return text;
+  std::string quoted = "\"";
+  for (const char c : text) {
+    constexpr char hex[] = "0123456789ABCDEF";
+    const auto byte = static_cast<unsigned char>(c);
+    if (byte < 0x20 || byte == 0x7f)
+      quoted += std::string("\\u00") + hex[byte >> 4] + hex[byte & 15];
+    else
+      quoted += (c == '"' || c == '\\' ? std::string("\\") : std::string()) + c;
+  }
+  return quoted + "\"";
+}
 
 // A value as the text of a TOML value, to be set by an override.
 std::string value_text(const Node& value, const Table& table) {
@@ -104,7 +120,7 @@ std::string value_text(const Node& value, const Table& table) {
     case Node::Kind::truth:
       return value.truth ? "true" : "false";
     case Node::Kind::text:
-      return value.text;
+      return string_text(value.text);
     default:
       break;
   }
@@ -113,8 +129,7 @@ std::string value_text(const Node& value, const Table& table) {
 
 Vary vary_of(const Table& t) {
   Vary vary;
-  vary.keys = t.keys();
-  vary.place = t.node().place.text();
+  t.keys(vary.keys, vary.key_places);
   if (const Node* values = t.child("values")) {
     for (const char* other : {"from", "to", "count"}) {
       if (const Node* node = t.child(other))
@@ -122,11 +137,16 @@ Vary vary_of(const Table& t) {
     }
     if (values->kind != Node::Kind::array || values->children.empty())
       t.wrong(*values, "values", "a list that is not empty");
-    for (const Node& value : values->children) vary.values.push_back(value_text(value, t));
+    for (const Node& value : values->children) {
+      vary.values.push_back(value_text(value, t));
+      vary.tried.push_back({vary.values.back(), value.place.text()});
+    }
     return vary;
   }
+  if (t.child("from") == nullptr) (void)t.need("values", "a list, or from, to and count");
   const double from = t.number("from"), to = t.number("to");
-  const std::uint64_t count = t.whole("count", 1, 1'000'000);
+  if (from == to) t.wrong(*t.child("to"), "to", "another number than from; one value alone is values = [...]");
+  const std::uint64_t count = t.whole("count", 2, 1'000'000);
   for (std::uint64_t i = 0; i < count; ++i) {
     // The ends are met exactly.
     const double x = i == 0           ? from
@@ -134,13 +154,15 @@ Vary vary_of(const Table& t) {
                                       : from + (to - from) * static_cast<double>(i) / static_cast<double>(count - 1);
     vary.values.push_back(number_text(x));
   }
+  vary.tried = {{vary.values.front(), t.child("from")->place.text()},
+                {vary.values[count / 2], t.child("count")->place.text()},
+                {vary.values.back(), t.child("to")->place.text()}};
   return vary;
 }
 
 DrawnKey drawn_of(const Table& t) {
   DrawnKey key;
-  key.keys = t.keys();
-  key.place = t.node().place.text();
+  t.keys(key.keys, key.key_places);
   const auto none = [&](const char* name, const char* distribution) {
     if (const Node* node = t.child(name))
       refuse(node->name_place, t.dotted(name),
@@ -150,11 +172,14 @@ DrawnKey drawn_of(const Table& t) {
     none("mean", "uniform"), none("sigma", "uniform");
     key.low = t.number("low"), key.high = t.number("high");
     if (!(key.low < key.high)) t.wrong(*t.child("high"), "high", "a number above low, " + number_text(key.low));
+    key.tried = {{number_text(key.low), t.child("low")->place.text()},
+                 {number_text(key.high), t.child("high")->place.text()}};
   } else {
     none("low", "normal"), none("high", "normal");
     key.distribution = DrawnKey::Distribution::normal;
     key.mean = t.number("mean"), key.sigma = t.number("sigma");
     if (!(key.sigma > 0.0)) t.wrong(*t.child("sigma"), "sigma", "a number above 0");
+    key.tried = {{number_text(key.mean), t.child("mean")->place.text()}};
   }
   return key;
 }
@@ -181,43 +206,21 @@ Sampling sample_of(const Node& node, std::uint64_t scenario_seed) {
   return sample;
 }
 
-// Reads the scenario with one group of keys at one value; what is wrong with it is told at the plan's own line.
-void try_value(const ScenarioFile& file, const SweepPlan& plan, const std::vector<std::string>& keys,
-               const std::string& value, const std::string& place) {
-  std::vector<Override> overrides = plan.overrides;
-  for (const std::string& key : keys) overrides.push_back({key, value});
+// The scenario's path, once a scenario lies there.
+std::string scenario_path(const std::string& plan, const Table& t) {
+  const std::string name = t.word("scenario", {});
+  const std::string path = (std::filesystem::path(plan).parent_path() / name).lexically_normal().string();
+  const Node& at = *t.child("scenario");
+  std::string why = "the name is empty";
+  if (name.empty() || !read_text(path, why))
+    refuse(at.place, "scenario", "'scenario' names \"" + printable(path) + "\": " + why, "file");
   try {
-    (void)file.read(overrides, plan.seed);
+    (void)ScenarioFile(path);
   } catch (const InputError& e) {
-    if (!e.place().starts_with("--set:")) throw;
-    throw InputError(place, e.key(), e.message(), e.code());
+    if (e.code() != "file") throw;
+    refuse(at.place, "scenario", "'scenario' names \"" + printable(path) + "\": " + e.message(), "file");
   }
-}
-
-void check_values(const SweepPlan& plan) {
-  const ScenarioFile file(plan.scenario);
-  for (const Vary& vary : plan.varies) {
-    for (const std::string& value : vary.values) try_value(file, plan, vary.keys, value, vary.place);
-  }
-  if (!plan.sample) return;
-  Scenario scenario = file.read(plan.overrides, plan.seed);
-  for (const DrawnKey& drawn : plan.sample->keys) {
-    for (const std::string& key : drawn.keys) {
-      const Key* row = find_key(scenario, key);
-      if (row == nullptr) {
-        try_value(file, plan, {key}, "1", drawn.place);  // says what is wrong with it
-        row = find_key(scenario, key);
-      }
-      if (row != nullptr && !row->numeric()) {
-        throw InputError(drawn.place, key,
-                         "'" + key + "' is no key that can be drawn; wanted is one that holds a real number", "type");
-      }
-    }
-    const bool uniform = drawn.distribution == DrawnKey::Distribution::uniform;
-    const double low = uniform ? drawn.low : drawn.mean, high = uniform ? drawn.high : drawn.mean;
-    try_value(file, plan, drawn.keys, number_text(low), drawn.place);
-    if (uniform) try_value(file, plan, drawn.keys, number_text(high), drawn.place);
-  }
+  return path;
 }
 
 }  // namespace
@@ -232,23 +235,22 @@ SweepPlan read_plan(const std::string& path, const std::vector<Override>& overri
   if (!text) throw InputError(path, "", why, "file");
   plan.text = *text;
   Node root = parse_toml(*text, path);
-  std::vector<Override> of_plan;
   for (const Override& o : overrides) {
     if (o.key.starts_with("plan."))
-      of_plan.push_back({o.key.substr(5), o.value});
+      plan.of_plan.push_back({o.key.substr(5), o.value});
     else
       plan.overrides.push_back(o);
   }
-  apply_overrides(root, of_plan);
+  apply_overrides(root, plan.of_plan, "plan.");
 
   const Table t(root, "", {"format", "title", "scenario", "runs", "vary", "sample"});
   if (t.child("format") != nullptr) (void)t.whole("format", 1, 1);
   if (t.child("title") != nullptr) plan.title = t.word("title", {});
-  const std::string scenario = t.word("scenario", {});
-  plan.scenario = (std::filesystem::path(path).parent_path() / scenario).lexically_normal().string();
+  plan.scenario = scenario_path(path, t);
   if (t.child("runs") != nullptr) plan.runs = static_cast<std::uint32_t>(t.whole("runs", 1, 1'000'000));
   if (const Node* varies = t.child("vary")) {
-    if (varies->kind != Node::Kind::array) t.wrong(*varies, "vary", "a list of tables, [[vary]]");
+    if (varies->kind != Node::Kind::array || varies->children.empty())
+      t.wrong(*varies, "vary", "a list of tables, [[vary]]");
     for (std::size_t i = 0; i < varies->children.size(); ++i) {
       const Table one(varies->children[i], "vary." + std::to_string(i),
                       {"key", "keys", "values", "from", "to", "count"});
@@ -259,24 +261,16 @@ SweepPlan read_plan(const std::string& path, const std::vector<Override>& overri
     if (!plan.varies.empty())
       refuse(sample->name_place, "sample", "'sample' does not go with [[vary]]: a plan either crosses values or draws",
              "relation");
-    if (!std::filesystem::exists(plan.scenario))
-      t.wrong(*t.child("scenario"), "scenario", "a file that is there: no '" + plan.scenario + "'");
     plan.sample = sample_of(*sample, ScenarioFile(plan.scenario).read(plan.overrides, seed).seed);
-  }
-  if (!std::filesystem::exists(plan.scenario))
-    t.wrong(*t.child("scenario"), "scenario", "a file that is there: no '" + plan.scenario + "'");
-  std::vector<std::string> seen;
-  for (const std::string& key : plan.keys()) {
-    for (const std::string& other : seen) {
-      if (key == other) refuse({root.place.file, 1, 1}, key, "'" + key + "' is varied twice", "relation");
-    }
-    seen.push_back(key);
   }
   double count = 1.0;
   for (const Vary& vary : plan.varies) count *= static_cast<double>(vary.values.size());
   if (count > static_cast<double>(most_cases))
-    refuse({root.place.file, 1, 1}, "vary", "the plan has more than " + std::to_string(most_cases) + " cases", "range");
-  check_values(plan);
+    refuse(t.child("vary")->children.back().place, "vary",
+           "the plan has " + short_text(count) + " cases; allowed are at most " + std::to_string(most_cases) +
+               ": fewer values, or draws ([sample])",
+           "range");
+  check_plan(plan);
   return plan;
 }
 

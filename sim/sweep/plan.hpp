@@ -14,21 +14,26 @@
 
 namespace slipbench {
 
+// A value that the scenario is read with before any case is, and where the plan names it, "plan.toml:5:10".
+struct Tried {
+  std::string value, place;
+};
+
 // [[vary]]: keys that move together through values.
 struct Vary {
-  std::vector<std::string> keys;
+  std::vector<std::string> keys, key_places;
   std::vector<std::string> values;  // as TOML; numbers in the shortest text that reads back the same
-  std::string place;                // "plan.toml:5:1"
+  std::vector<Tried> tried;         // each listed value; first, middle and last of a range
 };
 
 // [[sample.key]]: keys that share one draw.
 struct DrawnKey {
   enum class Distribution { uniform, normal };
-  std::vector<std::string> keys;
+  std::vector<std::string> keys, key_places;
   Distribution distribution = Distribution::uniform;
-  double low = 0.0, high = 0.0;    // uniform
-  double mean = 0.0, sigma = 0.0;  // normal
-  std::string place;
+  double low = 0.0, high = 0.0;             // uniform
+  double mean = 0.0, sigma = 0.0;           // normal
+  std::vector<Tried> tried;                 // the ends; the mean
   [[nodiscard]] double at(double u) const;  // the quantile, 0 < u < 1
 };
 
@@ -42,7 +47,8 @@ struct SweepPlan {
   std::string path, text, title;
   std::string scenario;             // path, relative to the working folder
   std::uint32_t runs = 1;           // noise runs of each case
-  std::vector<Override> overrides;  // --set for the scenario; win over nothing that the plan varies
+  std::vector<Override> of_plan;    // --set plan.KEY, without "plan."
+  std::vector<Override> overrides;  // --set for the scenario; none of a key that varies
   std::optional<std::uint64_t> seed;
   std::vector<Vary> varies;
   std::optional<Sampling> sample;
@@ -55,11 +61,14 @@ struct SweepPlan {
 // Most cases of one plan: beyond it a count was mistyped.
 inline constexpr std::uint64_t most_cases = 1'000'000'000'000;
 
-// `overrides` that begin with "plan." change the plan, the others its scenario. Throws InputError with file:line:column. The
-// scenario is read with each value of each [[vary]] and with the ends of each draw, so that what can't be run is told before any
-// case is; a combination that fails is that case's failure.
+// `overrides` that begin with "plan." change the plan, the others its scenario. Throws InputError with file:line:column. What can't
+// be run is told before any case is; a combination that fails is that case's failure. A plan that varies nothing is one case.
 SweepPlan read_plan(const std::string& path, const std::vector<Override>& overrides = {},
                     std::optional<std::uint64_t> seed = {});
+// plan_check.cpp, called by it: reads the scenario alone, then with each value that is to be tried.
+void check_plan(const SweepPlan& plan);
+// The plan's scenario with every machine file that a case of it may name, parsed once.
+ScenarioFile scenario_of(const SweepPlan& plan);
 
 // The overrides of a case, one a key in the order of keys(). For a drawn plan rising case numbers cost least.
 class CaseMaker {

@@ -3,6 +3,9 @@
 
 #include <sqlite3.h>
 
+#include <charconv>
+#include <cmath>
+#include <cstdint>
 #include <string>
 
 #include "sim/scenario/tree.hpp"
@@ -31,15 +34,32 @@ inline std::string text_at(sqlite3_stmt* s, int column) {
   return text == nullptr ? std::string() : std::string(text, static_cast<std::size_t>(sqlite3_column_bytes(s, column)));
 }
 
-// A number in the shortest text that reads back the same: SQLite's own text of it has fifteen digits.
+// A real number in the shortest text that reads back the same: SQLite's own text of it has fifteen digits.
 inline std::string value_at(sqlite3_stmt* s, int column) {
-  const int type = sqlite3_column_type(s, column);
-  return type == SQLITE_FLOAT || type == SQLITE_INTEGER ? number_text(sqlite3_column_double(s, column))
+  return sqlite3_column_type(s, column) == SQLITE_FLOAT ? number_text(sqlite3_column_double(s, column))
                                                         : text_at(s, column);
 }
 
 inline void bind_text(sqlite3_stmt* s, int column, const std::string& text) {
   sqlite3_bind_text(s, column, text.data(), static_cast<int>(text.size()), SQLITE_TRANSIENT);
+}
+
+// As a number where that gives the same text back, so that SQLite's tools can reckon with it.
+inline void bind_value(sqlite3_stmt* s, int column, const std::string& text) {
+  const char *first = text.data(), *last = first + text.size();
+  std::int64_t whole = 0;
+  if (const auto [end, error] = std::from_chars(first, last, whole); error == std::errc() && end == last) {
+    if (std::to_string(whole) == text) {
+      sqlite3_bind_int64(s, column, whole);
+      return;
+    }
+  }
+  double real = 0.0;
+  const auto [end, error] = std::from_chars(first, last, real);
+  if (error == std::errc() && end == last && std::isfinite(real) && number_text(real) == text)
+    sqlite3_bind_double(s, column, real);
+  else
+    bind_text(s, column, text);
 }
 
 }  // namespace slipbench

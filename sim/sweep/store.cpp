@@ -28,6 +28,30 @@ std::string first_difference(const std::string& was, const std::string& is) {
   }
 }
 
+// Rows of run ?1 from case ?2 to below ?3. Runs of a case lie side by side: of a few all are read, of many each case is looked up.
+const char* count_text(const Origin& origin) {
+  constexpr std::size_t few = 1;  // digits
+  for (const auto& [item, content] : origin) {
+    if (item == "runs" && content.size() > few) {
+      return "WITH RECURSIVE k(c) AS (SELECT ?2 WHERE ?2 < ?3 UNION ALL SELECT c + 1 FROM k WHERE c + 1 < ?3) SELECT "
+             "count(*) "
+             "FROM k CROSS JOIN result ON result.\"case\" = c AND result.run = ?1";
+    }
+  }
+  return "SELECT count(*) FROM result WHERE run = ?1 AND \"case\" >= ?2 AND \"case\" < ?3";
+}
+
+// What a person calls an item of the origin.
+std::string shown(const std::string& item) {
+  return item == "machines"    ? "machine file"
+         : item == "overrides" ? "--set"
+         : item == "seed"      ? "--seed"
+         : item == "slipbench" ? "version of slipbench"
+         : item == "cases"     ? "number of cases"
+         : item == "runs"      ? "number of runs"
+                               : item;
+}
+
 }  // namespace
 
 Store::Store(const std::string& path, const Origin& origin, const StoreColumns& columns)
@@ -36,18 +60,20 @@ Store::Store(const std::string& path, const Origin& origin, const StoreColumns& 
   try {
     execute("PRAGMA journal_mode = WAL; PRAGMA synchronous = NORMAL; PRAGMA locking_mode = EXCLUSIVE;");
     // An empty file is a store that was killed before its tables stood.
-    const Statement tables(prepare("SELECT count(*) FROM sqlite_master WHERE name IN ('about', 'result')"));
+    const Statement tables(prepare("SELECT count(*) FROM sqlite_master"));
     if (sqlite3_step(tables.at) != SQLITE_ROW) fail(sqlite3_errcode(db_));
     if (sqlite3_column_int(tables.at, 0) == 0) {
       make();
     } else {
       read_origin();
       demand_same(origin);
+      if (columns_.keys != columns.keys || columns_.figures != columns.figures)
+        throw InputError(path_, "", "the store has other columns than this plan gives; name another --store", "store");
     }
     std::string marks = "?";
     for (std::size_t i = 1; i < fixed + columns.keys.size() + columns.figures.size(); ++i) marks += ",?";
     insert_ = prepare("INSERT OR REPLACE INTO result VALUES (" + marks + ")");
-    count_ = prepare("SELECT count(*) FROM result WHERE run = ? AND \"case\" >= ? AND \"case\" < ?");
+    count_ = prepare(count_text(origin_));
   } catch (...) {
     sqlite3_finalize(insert_);
     sqlite3_close(db_);
@@ -59,7 +85,7 @@ Store::Store(const std::string& path) : path_(path) {
   open(false);
   try {
     read_origin();
-    count_ = prepare("SELECT count(*) FROM result WHERE run = ? AND \"case\" >= ? AND \"case\" < ?");
+    count_ = prepare(count_text(origin_));
   } catch (...) {
     sqlite3_close(db_);
     throw;
@@ -103,6 +129,12 @@ void Store::make() {
 void Store::read_origin() {
   origin_.clear();
   columns_ = {};
+  const Statement tables(prepare("SELECT count(*) FROM sqlite_master WHERE name IN ('about', 'result')"));
+  if (sqlite3_step(tables.at) != SQLITE_ROW) fail(sqlite3_errcode(db_));
+  const Statement items(prepare("SELECT count(*) FROM pragma_table_info('about') WHERE name IN ('item', 'content')"));
+  if (sqlite3_column_int(tables.at, 0) != 2 || sqlite3_step(items.at) != SQLITE_ROW ||
+      sqlite3_column_int(items.at, 0) != 2)
+    throw InputError(path_, "", "this SQLite file is no store of a sweep; name another --store", "store");
   const Statement about(prepare("SELECT item, content FROM about"));
   while (sqlite3_step(about.at) == SQLITE_ROW) origin_.emplace_back(text_at(about.at, 0), text_at(about.at, 1));
   const Statement columns(prepare("SELECT name, type FROM pragma_table_info('result') ORDER BY cid"));
@@ -110,7 +142,6 @@ void Store::read_origin() {
     if (i < fixed) continue;
     (text_at(columns.at, 1) == "REAL" ? columns_.figures : columns_.keys).push_back(text_at(columns.at, 0));
   }
-  if (origin_.empty()) throw InputError(path_, "", "this SQLite file is no store of a sweep", "store");
 }
 
 void Store::demand_same(const Origin& wanted) const {
@@ -124,7 +155,7 @@ void Store::demand_same(const Origin& wanted) const {
     const std::string* was = content(origin_, item);
     if (was != nullptr && *was == is) continue;
     throw InputError(path_, item,
-                     "the store was made from another " + item + " (" +
+                     "the store was made from another " + shown(item) + " (" +
                          first_difference(was == nullptr ? "" : *was, is) +
                          "); go on with what it was made from, or name another --store",
                      "store");
@@ -143,15 +174,7 @@ void Store::write(const std::vector<ResultRow>& batch) {
       sqlite3_bind_null(insert_, at++);
     else
       bind_text(insert_, at++, row.message);
-    for (const std::string& value : row.values) {
-      char* end = nullptr;
-      errno = 0;
-      const double number = std::strtod(value.c_str(), &end);
-      if (!value.empty() && end == value.c_str() + value.size() && errno == 0)
-        sqlite3_bind_double(insert_, at++, number);
-      else
-        bind_text(insert_, at++, value);
-    }
+    for (const std::string& value : row.values) bind_value(insert_, at++, value);
     for (const Figure& figure : row.figures) {
       if (figure)
         sqlite3_bind_double(insert_, at++, *figure);
@@ -160,16 +183,18 @@ void Store::write(const std::vector<ResultRow>& batch) {
     }
     const int code = sqlite3_step(insert_);
     sqlite3_reset(insert_);
-    if (code != SQLITE_DONE) {
-      const int why = sqlite3_extended_errcode(db_);
-      sqlite3_exec(db_, "ROLLBACK", nullptr, nullptr, nullptr);
-      fail(why);
-    }
+    if (code != SQLITE_DONE) undo_and_fail();
   }
-  if (sqlite3_exec(db_, "COMMIT", nullptr, nullptr, nullptr) != SQLITE_OK) {
-    const int why = sqlite3_extended_errcode(db_);
+  if (sqlite3_exec(db_, "COMMIT", nullptr, nullptr, nullptr) != SQLITE_OK) undo_and_fail();
+}
+
+// SQLite may have rolled back by itself; a second time is then an error that must not hide the first.
+void Store::undo_and_fail() const {
+  try {
+    fail(sqlite3_extended_errcode(db_));
+  } catch (...) {
     sqlite3_exec(db_, "ROLLBACK", nullptr, nullptr, nullptr);
-    fail(why);
+    throw;
   }
 }
 
@@ -225,16 +250,23 @@ void Store::execute(const std::string& sql) const {
 }
 
 void Store::fail(int code) const {
+  const int last = errno;  // of a failed COMMIT SQLite 3.40 keeps none
   if ((code & 0xff) == SQLITE_NOTADB)
-    throw InputError(path_, "", "this is no store of a sweep (no SQLite file)", "store");
+    throw InputError(path_, "", "this is no store of a sweep (no SQLite file); name another --store", "store");
   if ((code & 0xff) == SQLITE_BUSY)
     throw OutsideError("the store '" + path_ + "' is in use by another process; wait for it, or name another --store");
-  const int system = sqlite3_system_errno(db_);
-  const bool full = (code & 0xff) == SQLITE_FULL;
-  throw OutsideError("cannot write to the store '" + path_ + "': " +
-                     (full          ? "the disk is full; make room, and the same command goes on where it stopped"
-                      : system != 0 ? std::strerror(system)
-                                    : sqlite3_errmsg(db_)));
+  const int kind = code & 0xff;
+  const bool of_system = kind == SQLITE_IOERR || kind == SQLITE_FULL || kind == SQLITE_CANTOPEN;
+  const int kept = sqlite3_system_errno(db_), system = !of_system ? 0 : kept != 0 ? kept : last;
+  const std::string why = system == EFBIG    ? "it may not grow further (the limit of a file's size, ulimit -f)"
+                          : system == EDQUOT ? "the disk quota is used up"
+                          : kind == SQLITE_FULL || system == ENOSPC ? "the disk is full"
+                                                                    : "";
+  if (!why.empty())
+    throw OutsideError("cannot write to the store '" + path_ + "': " + why +
+                       "; make room, and the same command goes on where it stopped");
+  throw OutsideError("cannot write to the store '" + path_ +
+                     "': " + (system != 0 ? std::strerror(system) : sqlite3_errmsg(db_)));
 }
 
 }  // namespace slipbench

@@ -1,7 +1,7 @@
 // The store of a sweep: one SQLite file, format 1, WAL; what it was made from, and one row a case and run. The only place that knows
 // SQLite.
 //
-//   about(item, content)   format, slipbench, plan, scenario, machines, overrides, seed, runs, cases, shard
+//   about(item, content)   format, slipbench, plan, scenario, machines, overrides, seed, runs, cases
 //   result("case", "run", status, message, KEY..., NAME.FIGURE...)   status: done | diverged | lost | refused; no timings
 //
 // A batch is one transaction: after kill -9 or on a full disk what was written stays, and no row is torn. SQLite's own tools read it.
@@ -75,6 +75,7 @@ class Store {
   void execute(const std::string& sql) const;
   [[nodiscard]] sqlite3_stmt* prepare(const std::string& sql) const;
   [[noreturn]] void fail(int code) const;
+  [[noreturn]] void undo_and_fail() const;
   [[nodiscard]] ResultRow row_of(sqlite3_stmt* statement) const;
   [[nodiscard]] std::uint64_t counted(const std::string& condition) const;
 

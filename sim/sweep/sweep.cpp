@@ -6,6 +6,7 @@
 #include <condition_variable>
 #include <deque>
 #include <exception>
+#include <filesystem>
 #include <mutex>
 #include <thread>
 
@@ -38,6 +39,15 @@ class Units {
         shard_(shard) {}
   [[nodiscard]] std::uint64_t count() const {
     return all_ > shard_.index ? (all_ - shard_.index - 1) / shard_.count + 1 : 0;
+  }
+  // Cases times runs of this shard: whole units, less what the last unit of each run lacks.
+  [[nodiscard]] std::uint64_t rows() const {
+    std::uint64_t rows = count() * cases_per_unit;
+    const std::uint64_t lacking = per_run_ * cases_per_unit - cases_;
+    for (std::uint64_t last = per_run_ - 1; last < all_; last += per_run_) {
+      if (last % shard_.count == shard_.index) rows -= lacking;
+    }
+    return rows;
   }
   [[nodiscard]] Unit at(std::uint64_t number) const {
     const std::uint64_t u = number * shard_.count + shard_.index, block = u % per_run_;
@@ -177,6 +187,7 @@ Origin origin_of(const SweepPlan& plan) {
     return read_text(path, why).value_or("");
   };
   std::string overrides;
+  for (const Override& o : plan.of_plan) overrides += "plan." + o.key + "=" + o.value + "\n";
   for (const Override& o : plan.overrides) overrides += o.key + "=" + o.value + "\n";
   Origin origin = {{"format", "1"},
                    {"plan", plan.text},
@@ -187,18 +198,21 @@ Origin origin_of(const SweepPlan& plan) {
                    {"runs", std::to_string(plan.runs)},
                    {"slipbench", SLIPBENCH_VERSION}};
   std::string machines;
-  for (const std::string& path : ScenarioFile(plan.scenario).machine_files()) machines += path + "\n" + text_of(path);
+  // Named from the scenario's folder, as the working folder may be another when the sweep goes on.
+  const auto folder = std::filesystem::path(plan.scenario).parent_path();
+  for (const std::string& path : scenario_of(plan).machine_files())
+    machines += std::filesystem::path(path).lexically_relative(folder).string() + "\n" + text_of(path);
   origin.emplace_back("machines", machines);
   return origin;
 }
 
 StoreColumns columns_of(const SweepPlan& plan) {
-  return {plan.keys(), figure_columns(ScenarioFile(plan.scenario).read(CaseMaker(plan).overrides(0), plan.seed))};
+  return {plan.keys(), figure_columns(scenario_of(plan).read(CaseMaker(plan).overrides(0), plan.seed))};
 }
 
 SweepOutcome run_sweep(const SweepPlan& plan, Store& store, const SweepOptions& options) {
   const auto begun = Clock::now();
-  const ScenarioFile file(plan.scenario);
+  const ScenarioFile file = scenario_of(plan);
   const Units units(plan, options.shard);
   const std::size_t keys = plan.keys().size(), figures = store.columns().figures.size();
   SweepOutcome outcome;
@@ -214,21 +228,23 @@ SweepOutcome run_sweep(const SweepPlan& plan, Store& store, const SweepOptions& 
   outcome.lanes = runners.front().lanes();
   finished.enter(outcome.threads);
   std::vector<std::thread> workers;
-  for (unsigned t = 0; t < outcome.threads; ++t) {
-    workers.emplace_back([&, t] {
-      std::exception_ptr error;
-      try {
-        CaseMaker maker(plan);
-        for (Unit unit; !stop.load() && queue.next(unit);) {
-          std::vector<ResultRow> rows = run_unit(plan, file, maker, runners[t], unit, keys, figures);
-          if (!stop.load()) finished.put(std::move(rows));  // a unit that was stopped half-way is not kept
+  const auto start = [&] {
+    for (unsigned t = 0; t < outcome.threads; ++t) {
+      workers.emplace_back([&, t] {
+        std::exception_ptr error;
+        try {
+          CaseMaker maker(plan);
+          for (Unit unit; !stop.load() && queue.next(unit);) {
+            std::vector<ResultRow> rows = run_unit(plan, file, maker, runners[t], unit, keys, figures);
+            if (!stop.load()) finished.put(std::move(rows));  // a unit that was stopped half-way is not kept
+          }
+        } catch (...) {
+          error = std::current_exception();
         }
-      } catch (...) {
-        error = std::current_exception();
-      }
-      finished.leave(error);
-    });
-  }
+        finished.leave(error);
+      });
+    }
+  };
   const auto halt = [&] {
     stop = true;
     queue.clear();
@@ -238,7 +254,8 @@ SweepOutcome run_sweep(const SweepPlan& plan, Store& store, const SweepOptions& 
   };
 
   try {
-    for (std::uint64_t u = 0; u < units.count(); ++u) outcome.rows += units.at(u).last - units.at(u).first;
+    start();
+    outcome.rows = units.rows();
     std::uint64_t asked = 0;
     bool wanted = true;
     while (wanted) {
@@ -268,6 +285,10 @@ SweepOutcome run_sweep(const SweepPlan& plan, Store& store, const SweepOptions& 
     throw;
   }
   halt();
+  // Units that came in while the rest was told to stop.
+  const std::vector<ResultRow> late = finished.take(std::chrono::milliseconds(0));
+  store.write(late);
+  count(outcome, late);
   for (const PackRunner& runner : runners) {
     outcome.in_lanes += runner.in_lanes();
     outcome.simulated_s += runner.simulated_s();

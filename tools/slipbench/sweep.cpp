@@ -27,6 +27,14 @@ std::string store_path(const Request& request) {
   return fmt::format("{}.{}-of-{}.sqlite", stem, request.shard.index, request.shard.count);
 }
 
+// As RFC 4180 quotes it.
+std::string csv_field(const std::string& text) {
+  if (text.find_first_of(",\"\r\n") == std::string::npos) return text;
+  std::string quoted = "\"";
+  for (const char c : text) quoted += c == '"' ? std::string("\"\"") : std::string(1, c);
+  return quoted + "\"";
+}
+
 void write_csv(OutFile& file, const Store& store) {
   std::string line = "case,run";
   for (const std::string& key : store.columns().keys) line += "," + key;
@@ -35,8 +43,7 @@ void write_csv(OutFile& file, const Store& store) {
   store.each_row([&](const ResultRow& row) {
     line = fmt::format("{},{}", row.case_number, row.run);
     for (const std::string& value : row.values) {
-      const bool plain_text = value.find_first_of(",\"\n") == std::string::npos;
-      line += plain_text ? "," + value : ",\"" + value + "\"";
+      line += "," + csv_field(value);
     }
     for (const Figure& figure : row.figures) {
       line += ',';

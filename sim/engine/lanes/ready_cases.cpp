@@ -1,5 +1,6 @@
 #include "sim/engine/lanes/ready_cases.hpp"
 
+#include <algorithm>
 #include <new>
 
 #include "sim/engine/lanes/run_pack.hpp"
@@ -16,7 +17,7 @@ void try_case(ReadyCase& one, Make make) {
   try {
     one.setup = make();
   } catch (const InputError& error) {
-    one.refused = error.what();
+    one.refused = error.message();
   }
 }
 
@@ -57,21 +58,25 @@ std::vector<ReadyCase> ready_cases(const LaneSet& set, std::span<const Scenario*
       try_case(all[i], [&] { return prepare_run(*scenarios[i], noise_runs[i], run_in.first_tick(*scenarios[i])); });
     std::erase_if(waiting, [&](std::size_t i) { return !all[i].refused.empty(); });
     std::vector<std::size_t> restless;
-    for (std::size_t first = 0; first < waiting.size();) {
-      std::vector<RunSetup*> pack;
-      std::size_t next = first;
-      while (next < waiting.size() && pack.size() < set.width() &&
-             all[waiting[next]].setup.shape == all[waiting[first]].setup.shape)
-        pack.push_back(&all[waiting[next++]].setup);
-      const std::vector<double> moving = settle(set, pack);
-      for (std::size_t i = first; i < next; ++i) {
-        if (!(moving[i - first] <= run_in.allowed)) restless.push_back(waiting[i]);
+    while (!waiting.empty()) {
+      std::vector<std::size_t> together, others;
+      for (const std::size_t i : waiting) {
+        const bool fits = together.size() < set.width() &&
+                          (together.empty() || all[i].setup.shape == all[together.front()].setup.shape);
+        (fits ? together : others).push_back(i);
       }
-      first = next;
+      std::vector<RunSetup*> pack;
+      for (const std::size_t i : together) pack.push_back(&all[i].setup);
+      const std::vector<double> moving = settle(set, pack);
+      for (std::size_t lane = 0; lane < together.size(); ++lane) {
+        if (!(moving[lane] <= run_in.allowed)) restless.push_back(together[lane]);
+      }
+      waiting.swap(others);
     }
+    std::sort(restless.begin(), restless.end());
     waiting = restless;
   }
-  for (const std::size_t i : waiting) all[i].refused = never_steady(*scenarios[i]).what();
+  for (const std::size_t i : waiting) all[i].refused = never_steady(*scenarios[i]).message();
   return all;
 }
 

@@ -12,7 +12,7 @@ namespace slipbench {
 
 struct ReadyCase {
   RunSetup setup;       // at t = 0
-  std::string refused;  // why the case cannot be run (what simulate() would throw); empty: it is ready
+  std::string refused;  // why the case cannot be run: the message of what simulate() would throw; empty: it is ready
 };
 
 // One answer a scenario, in order; `noise_runs` has as many. One bad case does not stop the others.

@@ -76,13 +76,18 @@ void demand_fit(const LaneSet& set, Cases cases) {
 // Tells each lane's observers what they would hear of a run alone.
 class PerLane : public PackObserver {
  public:
-  PerLane(Cases cases, std::span<const std::vector<RunObserver*>> observers)
+  PerLane(Cases cases, std::span<const std::vector<RunObserver*>> observers, const std::function<bool()>& keep_going)
       : observers_(observers),
+        keep_going_(keep_going),
         estimates_(cases[0]->estimators.size()),
         estimate_row_(estimates_.size() * estimator_column_count),
         measured_(cases[0]->info.measured.size()) {}
 
   [[nodiscard]] bool wants_rows() const override { return true; }
+  [[nodiscard]] bool keep_going(std::int64_t tick) override {
+    constexpr std::int64_t ticks_between = 64;
+    return !keep_going_ || tick % ticks_between != 0 || keep_going_();
+  }
   void control_tick(const PackView& view) override {
     each_lane(view, [&](std::size_t lane, auto& told) {
       const TickView tick{view.index, view.time_s, &plant_, estimates_, view.clipped[lane] != 0.0};
@@ -116,6 +121,7 @@ class PerLane : public PackObserver {
   }
 
   std::span<const std::vector<RunObserver*>> observers_;
+  const std::function<bool()>& keep_going_;
   PlantRow plant_{};
   std::vector<Estimate<double>> estimates_;
   std::vector<double> estimate_row_, measured_;
@@ -161,9 +167,9 @@ std::vector<RunOutcome> run_pack(const LaneSet& set, Cases cases, PackObserver& 
   return outcomes;
 }
 
-std::vector<RunOutcome> run_pack(const LaneSet& set, Cases cases,
-                                 std::span<const std::vector<RunObserver*>> observers) {
-  PerLane per_lane(cases, observers);
+std::vector<RunOutcome> run_pack(const LaneSet& set, Cases cases, std::span<const std::vector<RunObserver*>> observers,
+                                 const std::function<bool()>& keep_going) {
+  PerLane per_lane(cases, observers, keep_going);
   for (std::size_t lane = 0; lane < cases.size(); ++lane) {
     for (RunObserver* o : observers[lane]) o->begin(cases[lane]->info);
   }

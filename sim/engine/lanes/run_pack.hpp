@@ -47,7 +47,9 @@ class PackObserver {
 std::vector<RunOutcome> run_pack(const LaneSet& set, Cases cases, PackObserver& observer);
 
 // The same with observers of single runs, a list for each case: begin, ticks, rows as simulate() tells them, end.
-std::vector<RunOutcome> run_pack(const LaneSet& set, Cases cases, std::span<const std::vector<RunObserver*>> observers);
+// `keep_going` is asked now and then; false stops the pack.
+std::vector<RunOutcome> run_pack(const LaneSet& set, Cases cases, std::span<const std::vector<RunObserver*>> observers,
+                                 const std::function<bool()>& keep_going = {});
 
 // Why lanes cannot run this scenario (then simulate() must); empty: they can.
 std::string lanes_can_run(const Scenario& scenario);
