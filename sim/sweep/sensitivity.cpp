@@ -8,7 +8,7 @@ namespace slipbench {
 namespace {
 
 constexpr double nan = std::numeric_limits<double>::quiet_NaN();
-// The first of the sums of either kind: n, sum y, sum y^2 of the outputs less the shift, n of them.
+// The first of the sums of either kind: points, sum y, sum y^2 of the outputs less the shift.
 enum Sum : std::size_t { count, outputs, squares, of_keys };
 
 double variance_of(const double* s, double n) {
@@ -58,9 +58,13 @@ SaltelliIndices::SaltelliIndices(std::uint64_t base_points, std::size_t keys)
 void SaltelliIndices::add(std::uint64_t base_point, std::span<const double> y) {
   if (!std::all_of(y.begin(), y.end(), [](double x) { return std::isfinite(x); })) return;
   if (used_++ == 0) shift_ = y[0];
-  const double a = y[0] - shift_, b = y[1] - shift_;
   double* s = sums_.of(base_point);
-  s[count] += 1.0, s[outputs] += a + b, s[squares] += a * a + b * b;
+  s[count] += 1.0;
+  for (const double output : y) {
+    const double off = output - shift_;
+    s[outputs] += off, s[squares] += off * off;
+  }
+  const double b = y[1] - shift_;
   for (std::size_t j = 0; j < keys_; ++j) {
     const double change = y[2 + j] - y[0];
     double* key = s + of_keys + 3 * j;
@@ -71,13 +75,14 @@ void SaltelliIndices::add(std::uint64_t base_point, std::span<const double> y) {
 Sensitivity SaltelliIndices::result(std::uint64_t seed) const {
   Sensitivity result{used_, points_ - used_, {}, ""};
   const std::vector<double> all = sums_.total();
+  const auto members = static_cast<double>(keys_ + 2);
   if (used_ < least_points) {
     result.none = "too few points";
-  } else if (const double n = 2.0 * all[count]; !varies(variance_of(all.data(), n), shift_, all[outputs] / n)) {
+  } else if (const double n = members * all[count]; !varies(variance_of(all.data(), n), shift_, all[outputs] / n)) {
     result.none = "the figure does not vary";
   } else {
     result.keys = shares_of(sums_, keys_, 2, seed, [&](const double* s, double* out) {
-      const double variance = variance_of(s, 2.0 * s[count]), mean = s[outputs] / (2.0 * s[count]);
+      const double variance = variance_of(s, members * s[count]), mean = s[outputs] / (members * s[count]);
       for (std::size_t j = 0; j < keys_; ++j) {
         const double* key = s + of_keys + 3 * j;
         out[2 * j] = variance > 0.0 ? (key[0] - mean * key[1]) / (s[count] * variance) : nan;

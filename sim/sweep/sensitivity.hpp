@@ -4,7 +4,8 @@
 //   total        T_j = E(Var(y | all but x_j)) / Var(y): the share that stays if all but x_j are known; T_j >= S_j
 //
 // Saltelli plan, N base points with outputs a of A, b of B, c_j of A with key j from B:
-//   S_j = mean((b - m) (c_j - a)) / V    T_j = mean((a - c_j)^2) / (2 V)    m, V: mean and variance of A and B together
+//   S_j = mean((b - m) (c_j - a)) / V    T_j = mean((a - c_j)^2) / (2 V)
+//   m, V: mean and variance of all N (d + 2) outputs, not of A and B alone: a rare large one then weighs above and below the line
 // Plain draws, N points, each key cut into M = min(64, 2 N^(1/3)) stretches of equal probability, M' of which were met:
 //   S_j = 1 - (SS_within / (N - M')) / (SS_all / (N - 1)): Kelley's correlation ratio, which chance in stretches of few points
 //   does not lift; blind to what wriggles within a stretch. Totals cannot be had from plain draws.
