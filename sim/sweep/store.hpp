@@ -61,6 +61,9 @@ class Store {
   [[nodiscard]] std::vector<double> at_ranks(const std::string& figure, const std::vector<std::uint64_t>& ranks) const;
   [[nodiscard]] std::vector<ResultRow> largest(const std::string& figure, std::size_t rows) const;
   [[nodiscard]] std::uint64_t status_count(const std::string& status) const;
+  // The values of these figures alone, a row at a time: cases in order, runs in order within a case.
+  void each_figures(const std::vector<std::string>& figures,
+                    const std::function<void(std::uint64_t case_number, const std::vector<Figure>& values)>& visit) const;
 
   // InputError that says what differs, where it was made from something else.
   void demand_same(const Origin& wanted) const;

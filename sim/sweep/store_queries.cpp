@@ -39,4 +39,23 @@ std::vector<ResultRow> Store::largest(const std::string& figure, std::size_t row
   return found;
 }
 
+void Store::each_figures(
+    const std::vector<std::string>& figures,
+    const std::function<void(std::uint64_t case_number, const std::vector<Figure>& values)>& visit) const {
+  std::string columns = "\"case\"";
+  for (const std::string& figure : figures) columns += ", " + quoted(figure);
+  const Statement all(prepare("SELECT " + columns + " FROM result ORDER BY \"case\", run"));
+  std::vector<Figure> values(figures.size());
+  int code = SQLITE_ROW;
+  while ((code = sqlite3_step(all.at)) == SQLITE_ROW) {
+    for (std::size_t i = 0; i < values.size(); ++i) {
+      const int column = static_cast<int>(i) + 1;
+      values[i] =
+          sqlite3_column_type(all.at, column) == SQLITE_NULL ? Figure() : Figure(sqlite3_column_double(all.at, column));
+    }
+    visit(static_cast<std::uint64_t>(sqlite3_column_int64(all.at, 0)), values);
+  }
+  if (code != SQLITE_DONE) fail(code);
+}
+
 }  // namespace slipbench

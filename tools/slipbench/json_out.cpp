@@ -35,6 +35,31 @@ std::string text_of(const Json& document) {
   return document.dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
 }
 
+void add_share(Json& key, const std::string& name, const Share& share) {
+  key[name] = value_of(share.value);
+  key[name + "_ci95"] = Json::array({value_of(share.low), value_of(share.high)});
+}
+
+void add_sensitivities(Json& document, const SweepResult& r) {
+  const std::vector<std::string> names = drawn_names(*r.plan);
+  Json all = Json::object(), points = Json::object();
+  for (const FigureSensitivity& one : r.sensitivities) {
+    Json figure = Json::object();
+    for (std::size_t j = 0; j < one.shares.keys.size(); ++j) {
+      Json key = Json::object();
+      add_share(key, "first", one.shares.keys[j].first);
+      key["total"] = nullptr, key["total_ci95"] = nullptr;  // plain draws give none
+      if (one.shares.keys[j].total) add_share(key, "total", *one.shares.keys[j].total);
+      figure[names[j]] = std::move(key);
+    }
+    all[one.figure] = std::move(figure);
+    points[one.figure] = {{"used", one.shares.used}, {"lost", one.shares.lost}};
+    if (!one.shares.none.empty()) points[one.figure]["none"] = one.shares.none;
+  }
+  document["sensitivity"] = std::move(all);
+  document["sensitivity_points"] = std::move(points);
+}
+
 }  // namespace
 
 std::string json_document(const RunResult& r) {
@@ -94,8 +119,10 @@ std::string json_document(const SweepResult& r) {
   document["store"] = r.store;
   document["ran_alone"] = Json::object();
   for (const auto& [reason, rows] : o.not_in_lanes) document["ran_alone"][reason] = rows;
+  if (!r.sensitivities.empty()) add_sensitivities(document, r);
   if (o.stopped) document["interrupted"] = true;
-  if (r.merged) document["merged"] = {{"rows", r.merged->rows}, {"twice", r.merged->twice}, {"missing", r.merged->missing}};
+  if (r.merged)
+    document["merged"] = {{"rows", r.merged->rows}, {"twice", r.merged->twice}, {"missing", r.merged->missing}};
   return text_of(document);
 }
 

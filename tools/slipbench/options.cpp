@@ -130,10 +130,11 @@ Request request_of(const std::string& verb, Given& given) {
     return !given.values[name].empty();
   };
   const auto text = [&](const char* name) { return flag(name) ? given.values[name].front() : std::string(); };
-  r.trace = text("--trace"), r.figure = text("--figure");
+  r.trace = text("--trace"), r.figure = text("--figure"), r.figure_of = text("--figure-of");
   for (const char* name : {"--trace", "--figure"}) {
     if (flag(name) && text(name).empty()) refuse(name, fmt::format("{} needs the name of a file", name));
   }
+  if (flag("--figure-of") && r.figure_of.empty()) refuse("--figure-of", "--figure-of needs the name of a figure");
   if (flag("--seed")) r.seed = whole_number<std::uint64_t>("--seed", text("--seed"), 0, UINT64_MAX);
   if (flag("--run")) r.noise_run = whole_number<std::uint32_t>("--run", text("--run"), 0, UINT32_MAX);
   if (flag("--runs")) r.runs = whole_number<std::uint32_t>("--runs", text("--runs"), 1, 1000000);

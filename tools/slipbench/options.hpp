@@ -22,9 +22,9 @@ struct Request {
   bool in_loop = false;
   std::optional<std::string> publish;  // run: --publish ENDPOINT
   unsigned publish_wait = 0;
-  double pace = 0.0;     // run: times real time at most; 0: as fast as it goes
-  unsigned threads = 0;  // 0: all cores
-  std::string store, csv, isa;             // sweep
+  double pace = 0.0;                       // run: times real time at most; 0: as fast as it goes
+  unsigned threads = 0;                    // 0: all cores
+  std::string store, csv, isa, figure_of;  // sweep
   Shard shard;                             // sweep: --shard i/n
   std::vector<std::string> merge;          // sweep: --merge STORE, repeatable
   std::optional<std::uint64_t> plan_case;  // run PLAN --case K

@@ -11,6 +11,7 @@
 #include "tools/slipbench/interrupt.hpp"
 #include "tools/slipbench/json_out.hpp"
 #include "tools/slipbench/progress.hpp"
+#include "tools/slipbench/sweep_figure.hpp"
 #include "tools/slipbench/sweep_result.hpp"
 #include "tools/slipbench/table.hpp"
 #include "tools/slipbench/verbs.hpp"
@@ -77,7 +78,17 @@ int sweep_verb(const Request& request) {
   const SweepPlan plan = read_plan(request.file, request.overrides, request.seed);
   std::unique_ptr<OutFile> csv;
   if (!request.csv.empty()) csv = std::make_unique<OutFile>(request.csv);
-  Store store(store_path(request), origin_of(plan), columns_of(plan));
+  std::unique_ptr<OutFile> figure;
+  const StoreColumns columns = columns_of(plan);
+  const std::vector<std::string> chosen = chosen_figures(columns, request.figure_of);
+  if (!request.figure_of.empty() && request.figure.empty() && !plan.sample)
+    throw InputError(
+        "command line", "--figure-of",
+        "--figure-of says what --figure FILE.svg draws (and of a plan with [sample], what sensitivities are "
+        "told of): name a file, or leave it out",
+        "usage");
+  if (!request.figure.empty()) figure = std::make_unique<OutFile>(request.figure);
+  Store store(store_path(request), origin_of(plan), columns);
 
   SweepResult result;
   result.plan = &plan;
@@ -101,6 +112,14 @@ int sweep_verb(const Request& request) {
   result.lost = store.status_count("lost");
   result.rows = store.rows();
   if (!request.json && !request.quiet) add_distributions(result, store);
+  const bool part = request.shard.count > 1 || result.outcome.stopped;
+  if (plan.sample && !part && (figure || request.json || !request.quiet))
+    result.sensitivities = sensitivities_of(plan, store, judged_figures(store.columns(), chosen));
+  if (figure) {
+    figure->write(sweep_figure(picture_of(plan, store, chosen, result.sensitivities)));
+    figure->finish();
+    result.files.push_back(fmt::format("figure: {}", request.figure));
+  }
   if (csv) {
     write_csv(*csv, store);
     result.files.push_back(fmt::format("csv:   {}", request.csv));

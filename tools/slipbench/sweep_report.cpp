@@ -86,6 +86,7 @@ std::string sweep_summary(const SweepResult& r) {
   if (r.rows > 0 && !r.distributions.empty()) text += "\nOver all rows\n" + distribution_text(r);
   if (!r.worst.empty())
     text += "\n" + worst_text(r) + "\nRepeat one alone: slipbench run " + plan.path + " --case K --run R\n";
+  text += sensitivity_text(r);
   text += fmt::format("\nstore: {} ({} rows)\n", r.store, r.rows);
   for (const std::string& file : r.files) text += file + "\n";
   return text;

@@ -6,6 +6,7 @@
 #include <vector>
 
 #include "sim/sweep/merge.hpp"
+#include "sim/sweep/store_sensitivity.hpp"
 #include "sim/sweep/sweep.hpp"
 
 namespace slipbench {
@@ -30,10 +31,13 @@ struct SweepResult {
   std::uint64_t rows = 0, diverged = 0, refused = 0, lost = 0;  // in the store
   std::vector<Distribution> distributions;
   std::vector<WorstRows> worst;
+  std::vector<FigureSensitivity> sensitivities;  // of a drawn plan whose rows are all there, or joined
   std::vector<std::string> files;
 };
 
 // The summary that a person reads.
 std::string sweep_summary(const SweepResult& result);
+// The part of it on sensitivities, "" without (sensitivity_report.cpp).
+std::string sensitivity_text(const SweepResult& result);
 
 }  // namespace slipbench
