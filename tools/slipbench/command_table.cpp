@@ -22,29 +22,35 @@ std::span<const VerbRow> verb_rows() {
       {"sweep",
        "run every case of a plan, in packs and threads, into a store; the same command resumes",
        "sweep plan",
-       {"slipbench sweep configs/sweeps/resistance_grid.toml --store grid.sqlite --csv grid.csv"}},
+       {"slipbench sweep configs/sweeps/resistance_grid.toml --store grid.sqlite --csv grid.csv",
+        "slipbench sweep configs/sweeps/worst_resistances.toml --search ekf.speed_rmse_rpm --budget 44 --write "
+        "worst.toml"}},
   };
   return rows;
 }
 
 std::span<const OptionRow> option_rows() {
   static constexpr OptionRow rows[] = {
-      {"--set", "KEY=VALUE", "run check compare sweep", "set a key of the file, dotted; VALUE is TOML or text; repeatable",
-       Takes::key},
+      {"--set", "KEY=VALUE", "run check compare sweep",
+       "set a key of the file, dotted; VALUE is TOML or text; repeatable", Takes::key},
       {"--seed", "N", "run check compare sweep", "seed of every noise; wins over the file and --set", Takes::number},
       {"--run", "R", "run", "take noise run R, as `compare` numbers them from 0", Takes::number},
       {"--runs", "N", "compare", "noise runs (20)", Takes::number},
       {"--in-loop", "", "compare", "each estimator closes the speed loop in turn, instead of all riding along"},
       {"--threads", "N", "compare sweep", "threads (all cores); the results do not depend on it", Takes::number},
       {"--case", "K", "run", "of a sweep plan: run case K alone, as the sweep numbers them from 0", Takes::number},
-      {"--store", "FILE.sqlite", "sweep", "where the rows go (PLAN's name, in this folder); an older one is gone on with",
-       Takes::file},
+      {"--store", "FILE.sqlite", "sweep",
+       "where the rows go (PLAN's name, in this folder); an older one is gone on with", Takes::file},
       {"--csv", "FILE.csv", "sweep", "write the whole store as CSV, one row a case and run", Takes::file},
       {"--isa", "double|sse2|avx2|avx512", "sweep", "instruction set of the packs (the widest there is); double: none",
        Takes::word},
       {"--shard", "I/N", "sweep", "run part I of N (from 0) into a store of its own"},
       {"--merge", "FILE.sqlite", "sweep", "join this store of a shard into --store and run nothing; repeatable",
        Takes::file},
+      {"--search", "FIGURE", "sweep",
+       "look for the keys within the plan's ranges that make this figure largest; no store"},
+      {"--budget", "N", "sweep", "with --search: runs to spend (200)", Takes::number},
+      {"--write", "FILE.toml", "sweep", "with --search: the worst case as a scenario of its own", Takes::file},
       {"--trace", "FILE.csv|FILE.h5", "run", "write the trace, as CSV or HDF5", Takes::file},
       {"--figure", "FILE.svg", "run compare", "draw the result", Takes::file},
       {"--publish", "ENDPOINT", "run", "publish the run as it happens: tcp://HOST:PORT, ipc://PATH or PORT (loopback)"},

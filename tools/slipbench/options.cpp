@@ -138,6 +138,17 @@ Request request_of(const std::string& verb, Given& given) {
   if (flag("--runs")) r.runs = whole_number<std::uint32_t>("--runs", text("--runs"), 1, 1000000);
   r.store = text("--store"), r.csv = text("--csv"), r.isa = text("--isa");
   r.merge = given.values["--merge"];
+  r.search = text("--search"), r.write = text("--write");
+  if (flag("--budget")) r.budget = whole_number<std::uint32_t>("--budget", text("--budget"), 1, 1000000);
+  for (const char* name : {"--budget", "--write"}) {
+    if (flag(name) && !flag("--search")) refuse(name, fmt::format("{} needs --search FIGURE beside it", name));
+  }
+  for (const char* name : {"--store", "--csv", "--shard", "--merge"}) {
+    if (flag("--search") && !given.values[name].empty())
+      refuse(name, fmt::format("{} means nothing with --search: a search keeps no store", name));
+  }
+  if (flag("--write") && !r.write.ends_with(".toml") && !r.write.starts_with("/dev/"))
+    refuse("--write", fmt::format("--write '{}': expected a name that ends in .toml", r.write));
   if (flag("--case")) r.plan_case = whole_number<std::uint64_t>("--case", text("--case"), 0, most_cases);
   if (flag("--shard")) r.shard = shard_of(text("--shard"));
   if (flag("--threads")) r.threads = whole_number<unsigned>("--threads", text("--threads"), 1, 1024);

@@ -27,6 +27,8 @@ struct Request {
   std::string store, csv, isa;             // sweep
   Shard shard;                             // sweep: --shard i/n
   std::vector<std::string> merge;          // sweep: --merge STORE, repeatable
+  std::string search, write;               // sweep: --search FIGURE, --write FILE; "": none
+  std::uint32_t budget = 200;              // sweep: --budget N
   std::optional<std::uint64_t> plan_case;  // run PLAN --case K
   bool keys = false, markdown = false;
   std::string schema;  // check: of "scenario" or "machine" files; "": none

@@ -67,6 +67,7 @@ void add_distributions(SweepResult& result, const Store& store) {
 
 int sweep_verb(const Request& request) {
   want_plan(request);
+  if (!request.search.empty()) return search_verb(request);
   const SweepPlan plan = read_plan(request.file, request.overrides, request.seed);
   std::unique_ptr<OutFile> csv;
   if (!request.csv.empty()) csv = std::make_unique<OutFile>(request.csv);

@@ -13,6 +13,7 @@ int run_verb(const Request& request);
 int check_verb(const Request& request);
 int compare_verb(const Request& request);
 int sweep_verb(const Request& request);
+int search_verb(const Request& request);  // sweep --search
 // check --keys, check --schema.
 int print_reference(const Request& request);
 
