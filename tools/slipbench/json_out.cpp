@@ -96,6 +96,8 @@ std::string json_document(const SweepResult& r) {
   document["ran_alone"] = Json::object();
   for (const auto& [reason, rows] : o.not_in_lanes) document["ran_alone"][reason] = rows;
   if (o.stopped) document["interrupted"] = true;
+  if (r.cluster)
+    document["slurm"] = {{"shards", r.cluster->shards}, {"submitted", r.cluster->submitted}, {"lost", r.cluster->lost}};
   if (r.merged)
     document["merged"] = {{"rows", r.merged->rows}, {"twice", r.merged->twice}, {"missing", r.merged->missing}};
   return text_of(document);

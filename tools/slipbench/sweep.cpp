@@ -78,6 +78,11 @@ int sweep_verb(const Request& request) {
   result.store = store.path();
   if (!request.merge.empty()) {
     result.merged = merge_stores(plan, store, request.merge);
+  } else if (request.on_slurm) {
+    result.cluster = sweep_on_slurm(request, plan, store);
+    result.outcome.stopped = result.cluster->stopped;
+    result.outcome.wall_s = result.cluster->wall_s;
+    if (!result.cluster->stopped) result.merged = result.cluster->merged;
   } else {
     Progress progress("sweep", request.progress, request.quiet);
     SweepOptions options;
