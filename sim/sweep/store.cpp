@@ -58,7 +58,8 @@ Store::Store(const std::string& path, const Origin& origin, const StoreColumns& 
     : path_(path), origin_(origin), columns_(columns) {
   open(true);
   try {
-    execute("PRAGMA journal_mode = WAL; PRAGMA synchronous = NORMAL; PRAGMA locking_mode = EXCLUSIVE;");
+    // The lock first: then SQLite shares no memory beside the file, which would not work over a network's file system.
+    execute("PRAGMA locking_mode = EXCLUSIVE; PRAGMA journal_mode = WAL; PRAGMA synchronous = NORMAL;");
     // An empty file is a store that was killed before its tables stood.
     const Statement tables(prepare("SELECT count(*) FROM sqlite_master"));
     if (sqlite3_step(tables.at) != SQLITE_ROW) fail(sqlite3_errcode(db_));

@@ -210,6 +210,16 @@ StoreColumns columns_of(const SweepPlan& plan) {
   return {plan.keys(), figure_columns(scenario_of(plan).read(CaseMaker(plan).overrides(0), plan.seed))};
 }
 
+std::uint64_t missing_rows(const SweepPlan& plan, const Store& store, Shard shard) {
+  const Units units(plan, shard);
+  std::uint64_t missing = 0;
+  for (std::uint64_t u = 0; u < units.count(); ++u) {
+    const Unit unit = units.at(u);
+    if (store.rows_between(unit.run, unit.first, unit.last) < unit.last - unit.first) missing += unit.last - unit.first;
+  }
+  return missing;
+}
+
 SweepOutcome run_sweep(const SweepPlan& plan, Store& store, const SweepOptions& options) {
   const auto begun = Clock::now();
   const ScenarioFile file = scenario_of(plan);

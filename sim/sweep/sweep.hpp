@@ -48,6 +48,9 @@ struct SweepOutcome {
 Origin origin_of(const SweepPlan& plan);
 StoreColumns columns_of(const SweepPlan& plan);
 
+// Rows of a shard that are in units not yet complete.
+std::uint64_t missing_rows(const SweepPlan& plan, const Store& store, Shard shard);
+
 // Throws InputError where the plan's own scenario can't be read, OutsideError from the store.
 SweepOutcome run_sweep(const SweepPlan& plan, Store& store, const SweepOptions& options);
 

@@ -22,7 +22,9 @@ std::span<const VerbRow> verb_rows() {
       {"sweep",
        "run every case of a plan, in packs and threads, into a store; the same command resumes",
        "sweep plan",
-       {"slipbench sweep configs/sweeps/resistance_grid.toml --store grid.sqlite --csv grid.csv --figure grid.svg"}},
+       {"slipbench sweep configs/sweeps/resistance_grid.toml --store grid.sqlite --csv grid.csv --figure grid.svg",
+        "slipbench sweep configs/sweeps/worst_resistances.toml --search ekf.speed_rmse_rpm --budget 44 --write "
+        "worst.toml"}},
   };
   return rows;
 }
@@ -45,6 +47,16 @@ std::span<const OptionRow> option_rows() {
       {"--shard", "I/N", "sweep", "run part I of N (from 0) into a store of its own"},
       {"--merge", "FILE.sqlite", "sweep", "join this store of a shard into --store and run nothing; repeatable",
        Takes::file},
+      {"--search", "FIGURE", "sweep",
+       "look for the keys within the plan's ranges that make this figure largest; no store"},
+      {"--budget", "N", "sweep", "with --search: runs to spend (200)", Takes::number},
+      {"--write", "FILE.toml", "sweep", "with --search: the worst case as a scenario of its own", Takes::file},
+      {"--on", "local|slurm", "sweep", "where it runs: here, or as an array of shards on the Slurm that sbatch reaches",
+       Takes::word},
+      {"--shards", "N", "sweep", "with --on slurm: tasks of the array (16, or as many as there are units of 64 cases)",
+       Takes::number},
+      {"--slurm", "OPTION[=VALUE]", "sweep",
+       "with --on slurm: an option for sbatch, as in partition=main, account=x, time=2:00:00, nodelist=n1; repeatable"},
       {"--trace", "FILE.csv|FILE.h5", "run", "write the trace, as CSV or HDF5", Takes::file},
       {"--figure", "FILE.svg", "run compare sweep", "draw the result", Takes::file},
       {"--figure-of", "FIGURE", "sweep",

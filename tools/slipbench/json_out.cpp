@@ -4,6 +4,7 @@
 #include <nlohmann/json.hpp>
 
 #include "sim/scenario/scenario.hpp"
+#include "sim/sweep/worst_case.hpp"
 #include "tools/slipbench/comparison.hpp"
 #include "tools/slipbench/run_result.hpp"
 #include "tools/slipbench/sweep_result.hpp"
@@ -121,9 +122,29 @@ std::string json_document(const SweepResult& r) {
   for (const auto& [reason, rows] : o.not_in_lanes) document["ran_alone"][reason] = rows;
   if (!r.sensitivities.empty()) add_sensitivities(document, r);
   if (o.stopped) document["interrupted"] = true;
+  if (r.cluster)
+    document["slurm"] = {{"shards", r.cluster->shards}, {"submitted", r.cluster->submitted}, {"lost", r.cluster->lost}};
   if (r.merged)
     document["merged"] = {{"rows", r.merged->rows}, {"twice", r.merged->twice}, {"missing", r.merged->missing}};
   return text_of(document);
+}
+
+std::string json_document(const WorstCase& w, const std::string& figure, const std::string& file) {
+  Json search = {{"figure", figure}, {"runs", w.runs}, {"status", w.status.empty() ? Json(nullptr) : Json(w.status)}};
+  search["best"] = Json::object();
+  for (std::size_t j = 0; j < w.at.size(); ++j) {
+    for (const std::string& key : w.box[j].keys) search["best"][key] = w.at[j];
+  }
+  search["value"] = value_of(w.value);
+  search["fresh"] = {{"mean", value_of(w.fresh_mean.mean)},
+                     {"ci95", bounds(w.fresh_mean)},
+                     {"runs", w.fresh.size()},
+                     {"diverged", w.fresh_diverged}};
+  search["without"] = w.without;
+  search["flat"] = w.flat;
+  if (!file.empty()) search["file"] = file;
+  if (w.stopped) search["interrupted"] = true;
+  return text_of({{"slipbench", SLIPBENCH_VERSION}, {"search", search}});
 }
 
 std::string json_document(const Comparison& c) {

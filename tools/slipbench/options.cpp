@@ -10,6 +10,7 @@
 
 #include "sim/record/trace.hpp"
 #include "sim/scenario/nearest.hpp"
+#include "sim/sweep/cluster.hpp"
 #include "tools/slipbench/command_table.hpp"
 #include "tools/slipbench/completion.hpp"
 #include "tools/slipbench/man_page.hpp"
@@ -140,6 +141,32 @@ Request request_of(const std::string& verb, Given& given) {
   if (flag("--runs")) r.runs = whole_number<std::uint32_t>("--runs", text("--runs"), 1, 1000000);
   r.store = text("--store"), r.csv = text("--csv"), r.isa = text("--isa");
   r.merge = given.values["--merge"];
+  r.search = text("--search"), r.write = text("--write");
+  if (flag("--budget")) r.budget = whole_number<std::uint32_t>("--budget", text("--budget"), 1, 1000000);
+  for (const char* name : {"--budget", "--write"}) {
+    if (flag(name) && !flag("--search")) refuse(name, fmt::format("{} needs --search FIGURE beside it", name));
+  }
+  for (const char* name : {"--store", "--csv", "--shard", "--merge"}) {
+    if (flag("--search") && !given.values[name].empty())
+      refuse(name, fmt::format("{} means nothing with --search: a search keeps no store", name));
+  }
+  if (flag("--write") && !r.write.ends_with(".toml") && !r.write.starts_with("/dev/"))
+    refuse("--write", fmt::format("--write '{}': expected a name that ends in .toml", r.write));
+  if (flag("--on")) {
+    for (const OptionRow& row : option_rows()) {
+      if (row.name == "--on") want_word(row, text("--on"));
+    }
+    r.on_slurm = text("--on") == "slurm";
+  }
+  if (flag("--shards")) r.shards = whole_number<std::uint64_t>("--shards", text("--shards"), 1, 1000000);
+  for (const std::string& option : given.values["--slurm"]) r.slurm.push_back(pass_option(option));
+  for (const char* name : {"--shards", "--slurm"}) {
+    if (!r.on_slurm && !given.values[name].empty()) refuse(name, fmt::format("{} needs --on slurm beside it", name));
+  }
+  for (const char* name : {"--shard", "--merge", "--search"}) {
+    if (r.on_slurm && !given.values[name].empty())
+      refuse(name, fmt::format("{} does not go with --on slurm, which cuts and joins the shards itself", name));
+  }
   if (flag("--case")) r.plan_case = whole_number<std::uint64_t>("--case", text("--case"), 0, most_cases);
   if (flag("--shard")) r.shard = shard_of(text("--shard"));
   if (flag("--threads")) r.threads = whole_number<unsigned>("--threads", text("--threads"), 1, 1024);

@@ -27,6 +27,11 @@ struct Request {
   std::string store, csv, isa, figure_of;  // sweep
   Shard shard;                             // sweep: --shard i/n
   std::vector<std::string> merge;          // sweep: --merge STORE, repeatable
+  std::string search, write;               // sweep: --search FIGURE, --write FILE; "": none
+  bool on_slurm = false;                   // sweep: --on slurm
+  std::uint64_t shards = 0;                // sweep: --shards N; 0: the usual number
+  std::vector<std::string> slurm;          // sweep: --slurm OPTION, for sbatch, without the dashes
+  std::uint32_t budget = 200;              // sweep: --budget N
   std::optional<std::uint64_t> plan_case;  // run PLAN --case K
   bool keys = false, markdown = false;
   std::string schema;  // check: of "scenario" or "machine" files; "": none

@@ -75,6 +75,7 @@ void add_distributions(SweepResult& result, const Store& store) {
 
 int sweep_verb(const Request& request) {
   want_plan(request);
+  if (!request.search.empty()) return search_verb(request);
   const SweepPlan plan = read_plan(request.file, request.overrides, request.seed);
   std::unique_ptr<OutFile> csv;
   if (!request.csv.empty()) csv = std::make_unique<OutFile>(request.csv);
@@ -95,6 +96,11 @@ int sweep_verb(const Request& request) {
   result.store = store.path();
   if (!request.merge.empty()) {
     result.merged = merge_stores(plan, store, request.merge);
+  } else if (request.on_slurm) {
+    result.cluster = sweep_on_slurm(request, plan, store);
+    result.outcome.stopped = result.cluster->stopped;
+    result.outcome.wall_s = result.cluster->wall_s;
+    if (!result.cluster->stopped) result.merged = result.cluster->merged;
   } else {
     Progress progress("sweep", request.progress, request.quiet);
     SweepOptions options;

@@ -10,8 +10,18 @@ namespace {
 
 std::string work_text(const SweepResult& r) {
   const SweepOutcome& o = r.outcome;
+  std::string shards;
+  if (r.cluster) {
+    const ClusterOutcome& c = *r.cluster;
+    if (c.stopped)
+      return "INTERRUPTED: the array is cancelled; stores of shards are kept in " + r.store +
+             ".shards; the same command goes on\n";
+    shards = fmt::format("{} shards on Slurm in {} s", c.shards, significant(c.wall_s, 3));
+    if (c.lost > 0) shards += fmt::format(", {} of their tasks submitted again after they were lost", c.lost);
+    shards += "\n";
+  }
   if (r.merged) {
-    std::string text = fmt::format("{} rows joined", r.merged->rows);
+    std::string text = shards + fmt::format("{} rows joined", r.merged->rows);
     if (r.merged->twice > 0) text += fmt::format(", {} of them found more than once", r.merged->twice);
     return text + (r.merged->missing > 0 ? fmt::format("; {} are still MISSING: run their shards\n", r.merged->missing)
                                          : "\n");

@@ -5,6 +5,7 @@
 #include <string>
 #include <vector>
 
+#include "sim/sweep/cluster_run.hpp"
 #include "sim/sweep/merge.hpp"
 #include "sim/sweep/store_sensitivity.hpp"
 #include "sim/sweep/sweep.hpp"
@@ -28,6 +29,7 @@ struct SweepResult {
   std::string store;
   SweepOutcome outcome;
   std::optional<MergeOutcome> merged;
+  std::optional<ClusterOutcome> cluster;                        // --on slurm
   std::uint64_t rows = 0, diverged = 0, refused = 0, lost = 0;  // in the store
   std::vector<Distribution> distributions;
   std::vector<WorstRows> worst;

@@ -3,6 +3,7 @@
 
 #include <string>
 
+#include "sim/sweep/cluster_run.hpp"
 #include "tools/slipbench/options.hpp"
 
 namespace slipbench {
@@ -13,6 +14,9 @@ int run_verb(const Request& request);
 int check_verb(const Request& request);
 int compare_verb(const Request& request);
 int sweep_verb(const Request& request);
+int search_verb(const Request& request);  // sweep --search
+// sweep --on slurm.
+ClusterOutcome sweep_on_slurm(const Request& request, const SweepPlan& plan, Store& store);
 // check --keys, check --schema.
 int print_reference(const Request& request);
 
