@@ -115,8 +115,9 @@ std::string sweep_map(const SweepPicture& p) {
   }
   double row = bottom + 62;
   if (any_none) {
-    body += crossed(left, row - 11, 16, 12) +
-            svg::text(left + 24, row, "no figure: diverged, refused or not run", {11, "start", svg::soft_ink});
+    body += crossed(left, row - 11, 16, 12) + svg::text(left + 24, row,
+                                                        "no figure: not run, diverged, refused, or nothing to judge",
+                                                        {11, "start", svg::soft_ink});
     row += 18;
   }
   if (any_lost) {
