@@ -111,7 +111,7 @@ double number_of(const Vary& vary, const std::string& text) {
   char* end = nullptr;
   const double number = std::strtod(text.c_str(), &end);
   if (text.empty() || *end != '\0' || !std::isfinite(number)) {
-    throw InputError(vary.place, vary.keys.front(),
+    throw InputError(vary.key_places.front(), vary.keys.front(),
                      "'" + vary.keys.front() + "' takes '" + printable(text) +
                          "' here, which is no number: a search goes over numbers alone; take it out of the plan",
                      "type");
@@ -151,7 +151,7 @@ double Coordinate::at(double u) const { return u >= 1.0 ? high : low + u * (high
 std::vector<Coordinate> box_of(const SweepPlan& plan) {
   std::vector<Coordinate> box;
   for (const Vary& vary : plan.varies) {
-    Coordinate c{vary.keys, number_of(vary, vary.values.front()), 0.0, vary.place};
+    Coordinate c{vary.keys, number_of(vary, vary.values.front()), 0.0, vary.key_places.front()};
     c.high = c.low;
     for (const std::string& value : vary.values) {
       const double x = number_of(vary, value);
@@ -163,7 +163,7 @@ std::vector<Coordinate> box_of(const SweepPlan& plan) {
     for (const DrawnKey& key : plan.sample->keys) {
       const bool uniform = key.distribution == DrawnKey::Distribution::uniform;
       box.push_back({key.keys, uniform ? key.low : key.mean - sigmas * key.sigma,
-                     uniform ? key.high : key.mean + sigmas * key.sigma, key.place});
+                     uniform ? key.high : key.mean + sigmas * key.sigma, key.key_places.front()});
     }
   }
   if (std::none_of(box.begin(), box.end(), [](const Coordinate& c) { return c.low < c.high; }))
