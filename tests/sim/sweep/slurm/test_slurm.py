@@ -122,7 +122,9 @@ class Trial:
 
     def killed_task_and_lost_node(self):
         sweep = self.start("b.sqlite", shards=4)
-        pid, shard = wait_for("a task", self.tasks)[0]
+        # On the node that stays: one that ends on a node which goes down is put back by Slurm itself.
+        on_n1 = lambda: [t for t in self.tasks() if environment_of(t[0]).get("SLURMD_NODENAME") == "n1"]
+        pid, shard = wait_for("a task on n1", on_n1)[0]
         wait_for("its first rows", lambda: list((self.folder / "b.sqlite.shards").glob("*.partial")))
         os.kill(pid, signal.SIGKILL)
         print(f"  killed the program of shard {shard}")
@@ -137,10 +139,12 @@ class Trial:
 
     def interrupted(self):
         sweep = self.start("c.sqlite")
-        wait_for("two finished shards", lambda: len(list((self.folder / "c.sqlite.shards").glob("*-of-6.sqlite"))) > 1)
+        wait_for("a task", self.tasks)
         second = self.start("c.sqlite")
         out, err = second.communicate(timeout=60)
         assert second.returncode == 3 and "in use by another process" in err, (second.returncode, err)
+        # Four tasks run at a time: with one of six finished others are still to come.
+        wait_for("a finished shard", lambda: list((self.folder / "c.sqlite.shards").glob("*-of-6.sqlite")))
         sweep.send_signal(signal.SIGINT)
         document, _ = self.end(sweep, 130)
         assert document["interrupted"]
