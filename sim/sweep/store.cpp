@@ -3,8 +3,6 @@
 #include <sqlite3.h>
 
 #include <cerrno>
-#include <cstring>
-#include <sstream>
 
 #include "sim/scenario/input_error.hpp"
 #include "sim/sweep/sqlite.hpp"
@@ -12,21 +10,6 @@
 namespace slipbench {
 
 namespace {
-
-// The first line in which two texts differ, for the eye.
-std::string first_difference(const std::string& was, const std::string& is) {
-  std::istringstream a(was), b(is);
-  std::string x, y;
-  for (int line = 1;; ++line) {
-    const bool more_x = static_cast<bool>(std::getline(a, x)), more_y = static_cast<bool>(std::getline(b, y));
-    if (!more_x && !more_y) return "";
-    if (x == y && more_x == more_y) continue;
-    const auto shown = [](bool more, const std::string& text) {
-      return more ? "'" + text.substr(0, 80) + "'" : "nothing";
-    };
-    return "line " + std::to_string(line) + " was " + shown(more_x, x) + ", is " + shown(more_y, y);
-  }
-}
 
 // Rows of run ?1 from case ?2 to below ?3. Runs of a case lie side by side: of a few all are read, of many each case is looked up.
 const char* count_text(const Origin& origin) {
@@ -39,17 +22,6 @@ const char* count_text(const Origin& origin) {
     }
   }
   return "SELECT count(*) FROM result WHERE run = ?1 AND \"case\" >= ?2 AND \"case\" < ?3";
-}
-
-// What a person calls an item of the origin.
-std::string shown(const std::string& item) {
-  return item == "machines"    ? "machine file"
-         : item == "overrides" ? "--set"
-         : item == "seed"      ? "--seed"
-         : item == "slipbench" ? "version of slipbench"
-         : item == "cases"     ? "number of cases"
-         : item == "runs"      ? "number of runs"
-                               : item;
 }
 
 }  // namespace
@@ -101,13 +73,38 @@ Store::~Store() {
 
 void Store::open(bool writable) {
   const int flags = writable ? SQLITE_OPEN_READWRITE | SQLITE_OPEN_CREATE : SQLITE_OPEN_READONLY;
-  const int code = sqlite3_open_v2(path_.c_str(), &db_, flags, nullptr);
-  if (code == SQLITE_OK) return;
-  const std::string why = db_ != nullptr && sqlite3_system_errno(db_) != 0 ? std::strerror(sqlite3_system_errno(db_))
-                                                                           : sqlite3_errstr(code);
+  if (sqlite3_open_v2(path_.c_str(), &db_, flags, nullptr) != SQLITE_OK) {
+    const int system = db_ != nullptr ? sqlite3_system_errno(db_) : 0;
+    sqlite3_close(db_);
+    db_ = nullptr;
+    cannot_open(system);
+  }
+  if (writable && sqlite3_db_readonly(db_, "main") == 1) {
+    sqlite3_close(db_);
+    db_ = nullptr;
+    cannot_open(EACCES);
+  }
+  if (!writable && !beside_is_writable() && !unfinished()) open_as_it_stands();
+}
+
+// SQLite reads a WAL file by help of another one beside it. Where that cannot be made and nothing is left in the WAL, the file alone is
+// the whole store.
+void Store::open_as_it_stands() {
   sqlite3_close(db_);
   db_ = nullptr;
-  throw OutsideError("cannot open the store '" + path_ + "': " + why);
+  std::string uri = "file:";
+  for (const char c : path_) {
+    constexpr char hex[] = "0123456789ABCDEF";
+    const auto byte = static_cast<unsigned char>(c);
+    const bool plain = c != '%' && c != '?' && c != '#' && byte > 0x20;
+    uri += plain ? std::string(1, c) : std::string("%") + hex[byte >> 4] + hex[byte & 15];
+  }
+  if (sqlite3_open_v2((uri + "?immutable=1").c_str(), &db_, SQLITE_OPEN_READONLY | SQLITE_OPEN_URI, nullptr) ==
+      SQLITE_OK)
+    return;
+  sqlite3_close(db_);
+  db_ = nullptr;
+  cannot_open(0);
 }
 
 void Store::make() {
@@ -145,24 +142,6 @@ void Store::read_origin() {
   }
 }
 
-void Store::demand_same(const Origin& wanted) const {
-  const auto content = [](const Origin& origin, const std::string& item) -> const std::string* {
-    for (const auto& [name, text] : origin) {
-      if (name == item) return &text;
-    }
-    return nullptr;
-  };
-  for (const auto& [item, is] : wanted) {
-    const std::string* was = content(origin_, item);
-    if (was != nullptr && *was == is) continue;
-    throw InputError(path_, item,
-                     "the store was made from another " + shown(item) + " (" +
-                         first_difference(was == nullptr ? "" : *was, is) +
-                         "); go on with what it was made from, or name another --store",
-                     "store");
-  }
-}
-
 void Store::write(const std::vector<ResultRow>& batch) {
   if (batch.empty()) return;
   execute("BEGIN IMMEDIATE");
@@ -187,16 +166,6 @@ void Store::write(const std::vector<ResultRow>& batch) {
     if (code != SQLITE_DONE) undo_and_fail();
   }
   if (sqlite3_exec(db_, "COMMIT", nullptr, nullptr, nullptr) != SQLITE_OK) undo_and_fail();
-}
-
-// SQLite may have rolled back by itself; a second time is then an error that must not hide the first.
-void Store::undo_and_fail() const {
-  try {
-    fail(sqlite3_extended_errcode(db_));
-  } catch (...) {
-    sqlite3_exec(db_, "ROLLBACK", nullptr, nullptr, nullptr);
-    throw;
-  }
 }
 
 std::uint64_t Store::rows() const {
@@ -248,26 +217,6 @@ sqlite3_stmt* Store::prepare(const std::string& sql) const {
 void Store::execute(const std::string& sql) const {
   const int code = sqlite3_exec(db_, sql.c_str(), nullptr, nullptr, nullptr);
   if (code != SQLITE_OK) fail(code);
-}
-
-void Store::fail(int code) const {
-  const int last = errno;  // of a failed COMMIT SQLite 3.40 keeps none
-  if ((code & 0xff) == SQLITE_NOTADB)
-    throw InputError(path_, "", "this is no store of a sweep (no SQLite file); name another --store", "store");
-  if ((code & 0xff) == SQLITE_BUSY)
-    throw OutsideError("the store '" + path_ + "' is in use by another process; wait for it, or name another --store");
-  const int kind = code & 0xff;
-  const bool of_system = kind == SQLITE_IOERR || kind == SQLITE_FULL || kind == SQLITE_CANTOPEN;
-  const int kept = sqlite3_system_errno(db_), system = !of_system ? 0 : kept != 0 ? kept : last;
-  const std::string why = system == EFBIG    ? "it may not grow further (the limit of a file's size, ulimit -f)"
-                          : system == EDQUOT ? "the disk quota is used up"
-                          : kind == SQLITE_FULL || system == ENOSPC ? "the disk is full"
-                                                                    : "";
-  if (!why.empty())
-    throw OutsideError("cannot write to the store '" + path_ + "': " + why +
-                       "; make room, and the same command goes on where it stopped");
-  throw OutsideError("cannot write to the store '" + path_ +
-                     "': " + (system != 0 ? std::strerror(system) : sqlite3_errmsg(db_)));
 }
 
 }  // namespace slipbench

@@ -55,7 +55,7 @@ class Store {
   // Cases in order, runs in order within a case; false from `visit` stops.
   void each_row(const std::function<bool(const ResultRow&)>& visit) const;
 
-  // store_queries.cpp. Of one figure (its name): how many rows have it; the values at these ranks (0: the least) among them; the rows with
+  // store_queries.cpp (texts of errors: store_errors.cpp). Of one figure (its name): how many rows have it; the values at these ranks (0: the least) among them; the rows with
   // the largest, largest first. SQLite sorts, on disk where memory is short.
   [[nodiscard]] std::uint64_t figure_count(const std::string& figure) const;
   [[nodiscard]] std::vector<double> at_ranks(const std::string& figure, const std::vector<std::uint64_t>& ranks) const;
@@ -73,12 +73,16 @@ class Store {
 
  private:
   void open(bool writable);
+  void open_as_it_stands();
+  [[nodiscard]] bool beside_is_writable() const;
+  [[nodiscard]] bool unfinished() const;  // rows wait in a WAL file
   void make();
   void read_origin();
   void execute(const std::string& sql) const;
   [[nodiscard]] sqlite3_stmt* prepare(const std::string& sql) const;
   [[noreturn]] void fail(int code) const;
   [[noreturn]] void undo_and_fail() const;
+  [[noreturn]] void cannot_open(int system) const;
   [[nodiscard]] ResultRow row_of(sqlite3_stmt* statement) const;
   [[nodiscard]] std::uint64_t counted(const std::string& condition) const;
 

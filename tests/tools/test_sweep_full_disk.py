@@ -6,6 +6,7 @@ import resource
 import shutil
 import subprocess
 import tempfile
+import time
 import unittest
 
 from sweeps import Bench, database, drawn, rows
@@ -47,16 +48,44 @@ class FullDisk(unittest.TestCase):
         if os.geteuid() != 0:
             self.skipTest("needs root to mount a small tmpfs; the limit of a file's size is tested instead")
         bench = Bench(self, PLAN)
-        disk = pathlib.Path(tempfile.mkdtemp(prefix="slipdisk"))
-        self.addCleanup(shutil.rmtree, disk, ignore_errors=True)
-        mounted = subprocess.run(["mount", "-t", "tmpfs", "-o", "size=3m", "tmpfs", disk], capture_output=True, text=True)
-        if mounted.returncode != 0:
-            self.skipTest(f"cannot mount a tmpfs here: {mounted.stderr.strip()}")
-        self.addCleanup(subprocess.run, ["umount", disk], check=True)
+        disk = self.mounted("3m")
         filler = disk / "filler"
         filler.write_bytes(b"x" * (3 * 1024 * 1024 - 500 * 1024))
         said = self.check(bench, str(disk / "s.sqlite"), None, filler.unlink)
         self.assertIn("the disk is full; make room, and the same command goes on where it stopped", said)
+
+    def test_read_only_disk(self):
+        if os.geteuid() != 0:
+            self.skipTest("needs root to mount a small tmpfs")
+        bench = Bench(self, drawn(5))
+        disk = self.mounted("4m")
+        bench.sweep("--store", disk / "s.sqlite")
+        wanted = rows(disk / "s.sqlite")
+        # Left by a kill: rows wait in its WAL.
+        process = bench.start("--store", disk / "cut.sqlite", "--set", "run.duration_s=500.0")
+        while not (disk / "cut.sqlite-wal").exists() or (disk / "cut.sqlite-wal").stat().st_size == 0:
+            time.sleep(0.01)
+        process.kill()
+        process.communicate()
+        subprocess.run(["mount", "-o", "remount,ro", disk], check=True)
+        for store in ("s.sqlite", "new.sqlite"):
+            text = bench.sweep("--store", disk / store, status=3)
+            self.assertEqual(text, f"cannot open the store '{disk / store}': the folder '{disk}' cannot be written to "
+                             "(Read-only file system)\n")
+        said = json.loads(bench.sweep("--store", "whole", "--merge", disk / "s.sqlite", "--json"))
+        self.assertEqual(said["merged"], {"rows": 5, "twice": 0, "missing": 0})
+        self.assertEqual(bench.rows("whole"), wanted)
+        text = bench.sweep("--store", "cut", "--set", "run.duration_s=500.0", "--merge", disk / "cut.sqlite", status=3)
+        self.assertIn("cannot be written to", text)
+
+    def mounted(self, size):
+        disk = pathlib.Path(tempfile.mkdtemp(prefix="slipdisk"))
+        self.addCleanup(shutil.rmtree, disk, ignore_errors=True)
+        done = subprocess.run(["mount", "-t", "tmpfs", "-o", f"size={size}", "tmpfs", disk], capture_output=True, text=True)
+        if done.returncode != 0:
+            self.skipTest(f"cannot mount a tmpfs here: {done.stderr.strip()}")
+        self.addCleanup(subprocess.run, ["umount", disk], check=True)
+        return disk
 
     def test_disk_without_any_room(self):
         if not os.path.exists("/dev/full"):

@@ -40,6 +40,8 @@ class Kills(unittest.TestCase):
             cut_in_the_middle += len(kept) < len(now) < 12800
             kept = now
         self.assertGreater(cut_in_the_middle, 2, f"seed {seed}")
+        merged = json.loads(bench.sweep("--store", "whole", "--merge", "s", "--json", status=1))["merged"]
+        self.assertEqual(merged, {"rows": len(kept), "twice": 0, "missing": 12800 - len(kept)})
         said = json.loads(bench.sweep("--store", "s", "--json", "--threads", 2))
         self.assertEqual(bench.rows("s"), wanted, f"seed {seed}")
         self.assertGreater(said["resumed"], 0)
