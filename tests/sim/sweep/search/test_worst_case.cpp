@@ -83,14 +83,14 @@ count = 3
 TEST_CASE("worst case: what cannot be searched is refused at its line", "[sweep][search][contract]") {
   const Folder folder;
   CHECK_THAT(refusal(folder, "[[vary]]\nkey = \"run.method\"\nvalues = [\"rk4\", \"euler\"]\n"),
-             Contains("plan.toml:2") && Contains("'rk4'") && Contains("take it out of the plan"));
+             Contains("plan.toml:3") && Contains("'rk4'") && Contains("take it out of the plan"));
   CHECK_THAT(refusal(folder, "[[vary]]\nkey = \"sensors.current.bits\"\nvalues = [10, 12]\n"),
-             Contains("plan.toml:2") && Contains("holds no real number"));
+             Contains("plan.toml:3") && Contains("holds no real number"));
   CHECK_THAT(refusal(folder, "[[vary]]\nkey = \"belief.inertia\"\nvalues = [1.0]\n"), Contains("nothing to search"));
   CHECK_THAT(refusal(folder,
                      "[sample]\nkind = \"sobol\"\ncount = 8\n[[sample.key]]\nkey = \"belief.rotor_resistance\"\n"
                      "distribution = \"normal\"\nmean = 1.0\nsigma = 0.5\n"),
-             Contains("plan.toml:5") && Contains("at an end of what is searched"));
+             Contains("plan.toml:6") && Contains("at an end of what is searched"));
   WorstCaseOptions options;
   options.figure = "ekf.speed_rmse";
   const SweepPlan plan = read_plan(source + "/configs/sweeps/worst_resistances.toml");
