@@ -82,24 +82,30 @@ Real total_resistance(const Drive<Real>& d, const DriveInput<Real>& in, const Re
   return d.opposed ? free + (d.load.opposing + d.shaft.coulomb) * d.shaft.against(speed) : free;
 }
 
+// Written where it is wanted: a state of packs is too big to be handed about.
 template <class Real>
-DriveState<Real> drive_derivative(const Drive<Real>& d, const DriveInput<Real>& in, const Vec2<Real>& source,
-                                  const DriveState<Real>& x, double t) {
+void drive_derivative(const Drive<Real>& d, const DriveInput<Real>& in, const Vec2<Real>& source,
+                      const DriveState<Real>& x, double t, DriveState<Real>& dx) {
   const MachineFlux<Real> psi = flux_of(x);
   const Vec2<Real> i_s = stator_current(d.machine, psi);
   const Real speed = d.speed_imposed ? in.imposed_speed.at(t) : x[4];
   const Vec2<Real> u = stator_voltage(d, in, source, i_s);
   const MachineFlux<Real> dpsi = flux_derivative(d.machine, psi, i_s, u, d.machine.pole_pairs * speed);
-  const Real dspeed = d.speed_imposed
-                          ? in.imposed_speed.slope
+  dx[0] = dpsi.stator.x;
+  dx[1] = dpsi.stator.y;
+  dx[2] = dpsi.rotor.x;
+  dx[3] = dpsi.rotor.y;
+  dx[4] = d.speed_imposed ? in.imposed_speed.slope
                           : d.shaft.per_inertia * (torque(d.machine, psi, i_s) - total_resistance(d, in, speed, t));
-  return {dpsi.stator.x, dpsi.stator.y, dpsi.rotor.x, dpsi.rotor.y, dspeed, speed};
+  dx[5] = speed;
 }
 
 template <class Real>
 DriveState<Real> drive_derivative(const Drive<Real>& d, const DriveInput<Real>& in, const DriveState<Real>& x,
                                   double t) {
-  return drive_derivative(d, in, source_voltage(d, in, t), x, t);
+  DriveState<Real> dx;
+  drive_derivative(d, in, source_voltage(d, in, t), x, t, dx);
+  return dx;
 }
 
 }  // namespace slipbench

@@ -6,6 +6,7 @@
 
 #include <array>
 #include <cstddef>
+#include <limits>
 #include <vector>
 
 #include "plant/math/fields.hpp"
@@ -16,11 +17,16 @@ namespace slipbench {
 // value(t) = value + slope (t - start).
 template <class Real>
 struct Line {
-  Real value{}, slope{};
-  double start = 0.0;
-  SLIPBENCH_FIELDS(value, slope)
+  Real value{}, slope{}, start{};
+  SLIPBENCH_FIELDS(value, slope, start)
 
-  [[nodiscard]] Real at(double t) const { return value + slope * Real(t - start); }
+  [[nodiscard]] Real at(double t) const { return value + slope * (Real(t) - start); }
+};
+
+// A line and the times over which it holds, the first in, the last out.
+struct Stretch {
+  Line<double> line;
+  double from = -std::numeric_limits<double>::infinity(), until = std::numeric_limits<double>::infinity();
 };
 
 class Profile {
@@ -44,6 +50,13 @@ class Profile {
     while (now_ < starts_.size() && starts_[now_] <= t) ++now_;
     while (now_ > 0 && starts_[now_ - 1] > t) --now_;
     return lines_[now_];
+  }
+  Stretch stretch_at(double t) {
+    Stretch stretch;
+    stretch.line = line_at(t);
+    if (now_ > 0) stretch.from = starts_[now_ - 1];
+    if (now_ < starts_.size()) stretch.until = starts_[now_];
+    return stretch;
   }
 
  private:

@@ -59,6 +59,33 @@ SLIPBENCH_INLINE R root_of(const R& x) {
   for (std::size_t i = 0; i < Registers<Isa>::lanes; ++i) y[i] = __builtin_sqrt(x[i]);
   return y;
 }
+// a < b ? a : b and a > b ? a : b, to the bit the processor's own operation (NaN and signed zeros: the second operand).
+template <class Isa, class R = typename Registers<Isa>::Reals>
+SLIPBENCH_INLINE R less_of(const R& a, const R& b) {
+#if defined(__SSE2__)
+  if constexpr (Isa::register_bytes == 16) return _mm_min_pd(a, b);
+#endif
+#if defined(__AVX__)
+  if constexpr (Isa::register_bytes == 32) return _mm256_min_pd(a, b);
+#endif
+#if defined(__AVX512F__)
+  if constexpr (Isa::register_bytes == 64) return _mm512_maskz_min_pd(0xff, a, b);
+#endif
+  return a < b ? a : b;
+}
+template <class Isa, class R = typename Registers<Isa>::Reals>
+SLIPBENCH_INLINE R more_of(const R& a, const R& b) {
+#if defined(__SSE2__)
+  if constexpr (Isa::register_bytes == 16) return _mm_max_pd(a, b);
+#endif
+#if defined(__AVX__)
+  if constexpr (Isa::register_bytes == 32) return _mm256_max_pd(a, b);
+#endif
+#if defined(__AVX512F__)
+  if constexpr (Isa::register_bytes == 64) return _mm512_maskz_max_pd(0xff, a, b);
+#endif
+  return a > b ? a : b;
+}
 template <class Isa, class R = typename Registers<Isa>::Reals>
 SLIPBENCH_INLINE R floor_of(const R& x) {
 #if defined(__AVX__)
@@ -84,6 +111,11 @@ template <class Isa, std::size_t W>
 struct LanesMask;
 template <class Isa, std::size_t W>
 struct LanesCount;
+template <class Isa, std::size_t W>
+struct Lanes;
+
+template <class Isa, std::size_t W>
+inline constexpr std::size_t width_of<Lanes<Isa, W>> = W;
 
 template <class Isa, std::size_t W>
 struct Lanes {
@@ -95,7 +127,8 @@ struct Lanes {
   static constexpr std::size_t per_register = detail::Registers<Isa>::lanes, width = W, registers = W / per_register;
   static_assert(W % per_register == 0 && W > 0);
 
-  Register part[registers] = {};
+  Register
+      part[registers];  // not set by default, like a double: zeroing a stepper's memory would cost as much as a stage
 
   Lanes() = default;
   SLIPBENCH_INLINE explicit Lanes(double x) {
@@ -111,6 +144,9 @@ struct Lanes {
   }
   [[nodiscard]] double get(std::size_t lane) const { return part[lane / per_register][lane % per_register]; }
   void set(std::size_t lane, double x) { part[lane / per_register][lane % per_register] = x; }
+
+  friend double lane_of(const Lanes& x, std::size_t lane) { return x.get(lane); }
+  friend void set_lane(Lanes& x, std::size_t lane, double value) { x.set(lane, value); }
 
   // f(register of each operand) for each register; unrolled by pack expansion, whatever the optimiser's level.
   template <class F, class... Operand>
@@ -138,6 +174,9 @@ struct Lanes {
   friend SLIPBENCH_INLINE Lanes select(const Mask& mask, const Lanes& yes, const Lanes& no) {
     return each(choice, mask, yes, no);
   }
+  // min(a, b) = select(b < a, b, a), max(a, b) = select(a < b, b, a), as numbers.hpp has them.
+  friend SLIPBENCH_INLINE Lanes min(const Lanes& a, const Lanes& b) { return each(detail::less_of<Isa>, b, a); }
+  friend SLIPBENCH_INLINE Lanes max(const Lanes& a, const Lanes& b) { return each(detail::more_of<Isa>, b, a); }
   friend SLIPBENCH_INLINE Lanes sqrt(const Lanes& a) { return each(detail::root_of<Isa>, a); }
   friend SLIPBENCH_INLINE Lanes floor(const Lanes& a) { return each(detail::floor_of<Isa>, a); }
   friend SLIPBENCH_INLINE Lanes fabs(const Lanes& a) { return each(size, a); }
@@ -177,6 +216,14 @@ struct LanesMask {
   [[nodiscard]] bool get(std::size_t lane) const {
     constexpr std::size_t per_register = detail::Registers<Isa>::lanes;
     return part[lane / per_register][lane % per_register] != 0;
+  }
+  friend bool lane_of(const LanesMask& mask, std::size_t lane) { return mask.get(lane); }
+  friend SLIPBENCH_INLINE bool any(const LanesMask& mask) {
+    Register together = mask.part[0];
+    for (std::size_t r = 1; r < registers; ++r) together |= mask.part[r];
+    std::int64_t bits = 0;
+    for (std::size_t i = 0; i < detail::Registers<Isa>::lanes; ++i) bits |= together[i];
+    return bits != 0;
   }
   template <class F, class... Operand>
   SLIPBENCH_INLINE static LanesMask each(F f, const Operand&... x) {

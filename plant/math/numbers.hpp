@@ -7,6 +7,7 @@
 #pragma once
 
 #include <cmath>
+#include <cstddef>
 #include <cstdint>
 #include <limits>
 
@@ -38,6 +39,14 @@ template <class Real>
 using CountOf = typename number<Real>::Count;
 template <class Real>
 using ScalarOf = typename number<Real>::Scalar;
+
+// Lanes side by side in a number, and one of them: what packs (lanes.hpp) have many of.
+template <class Real>
+inline constexpr std::size_t width_of = 1;
+inline double lane_of(double x, std::size_t) { return x; }
+inline bool lane_of(bool mask, std::size_t) { return mask; }
+inline void set_lane(double& x, std::size_t, double value) { x = value; }
+inline bool any(bool mask) { return mask; }
 
 inline double select(bool mask, double yes, double no) { return mask ? yes : no; }
 inline float select(bool mask, float yes, float no) { return mask ? yes : no; }

@@ -1,52 +1,15 @@
-// The columns of a trace in contract order, with units and meanings; the true plant's as one row of numbers.
+// The columns of a trace in contract order, with units and meanings.
 #pragma once
 
-#include <array>
-#include <cstddef>
 #include <string>
-#include <string_view>
 #include <vector>
+
+#include "sim/engine/plant_row.hpp"
 
 namespace slipbench {
 
 struct Column {
   std::string name, unit, meaning;
-};
-
-// Index of each plant column in a row.
-enum class P : std::size_t {
-  time,
-  speed_rpm,
-  speed_reference_rpm,
-  torque,
-  load_torque,
-  stator_frequency,
-  u_alpha,
-  u_beta,
-  i_alpha,
-  i_beta,
-  i_d,
-  i_q,
-  i_a,
-  i_b,
-  i_c,
-  rotor_flux,
-  rotor_flux_angle,
-  rotor_flux_reference,
-  dc_link,
-  stator_resistance,
-  rotor_resistance,
-  count
-};
-inline constexpr std::size_t plant_column_count = static_cast<std::size_t>(P::count);
-
-struct PlantRow : std::array<double, plant_column_count> {
-  double& operator[](P column) {
-    return std::array<double, plant_column_count>::operator[](static_cast<std::size_t>(column));
-  }
-  double operator[](P column) const {
-    return std::array<double, plant_column_count>::operator[](static_cast<std::size_t>(column));
-  }
 };
 
 // time_s, speed_rpm, ... in the order of P.

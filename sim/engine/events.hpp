@@ -8,11 +8,10 @@
 #include <string>
 #include <vector>
 
+#include "sim/engine/fault.hpp"
 #include "sim/scenario/scenario.hpp"
 
 namespace slipbench {
-
-enum class Fault { none, no_signal, stuck };
 
 struct Event {
   enum class Kind { speed_sensor, current_sensor, speed_from };

@@ -100,7 +100,7 @@ inline NormalPair<Real> normals_from_uniforms(const Real& u1, const Real& u2) {
 
 class Noise {
  public:
-  constexpr Noise(std::uint64_t seed, std::uint32_t run)
+  constexpr explicit Noise(std::uint64_t seed = 0, std::uint32_t run = 0)
       : key_{static_cast<std::uint32_t>(seed), static_cast<std::uint32_t>(seed >> 32)}, run_(run) {}
 
   // The block of ticks 2 block and 2 block + 1.
@@ -124,11 +124,13 @@ class Noise {
   std::uint32_t run_;
 };
 
-// One channel read tick by tick: the samples of Noise::sample, each pair reckoned once.
+// One channel read tick by tick, each pair reckoned once: the samples of Noise::sample, or of a pack of them (noise_pack.hpp).
+template <class Real = double>
 class NoiseStream {
  public:
   explicit NoiseStream(NoiseChannel channel) : channel_(channel) {}
-  double at(const Noise& noise, std::int64_t tick) {
+  template <class Source>
+  Real at(const Source& noise, std::int64_t tick) {
     if (tick >> 1 != block_) {
       block_ = tick >> 1;
       pair_ = noise.pair(channel_, block_);
@@ -139,7 +141,7 @@ class NoiseStream {
  private:
   NoiseChannel channel_;
   std::int64_t block_ = std::numeric_limits<std::int64_t>::min();
-  NormalPair<double> pair_;
+  NormalPair<Real> pair_;
 };
 
 }  // namespace slipbench

@@ -7,6 +7,7 @@
 #include "controllers/methods.hpp"
 #include "estimators/methods.hpp"
 #include "sim/engine/method_ports.hpp"
+#include "sim/engine/side_by_side.hpp"
 
 namespace slipbench {
 
@@ -21,32 +22,70 @@ OwnMakers& own_makers() {
   return makers;
 }
 
-}  // namespace
-
-std::unique_ptr<EstimatorPort> make_estimator(const std::string& kind, const EstimatorSetup& setup,
-                                              const Settings& settings) {
-  std::unique_ptr<EstimatorPort> port;
-  each_estimator_method([&]<class Method>() {
-    if (kind == Method::kind) port = std::make_unique<MethodEstimator<Method>>(setup, settings);
-  });
-  for (const auto& [own, make] : own_makers().estimators) {
-    if (kind == own) port = make(setup, settings);
+// What a setting that is a choice is set to; one that was left to the method is told apart from any number.
+void note_choices(std::span<const Setting> table, const Settings& given, std::vector<double>& choices) {
+  for (const Setting& setting : table) {
+    if (!setting.structural) continue;
+    const double value = given.value(setting.name, setting.fallback);
+    const bool set = value == value;
+    choices.push_back(set ? 1.0 : 0.0);
+    choices.push_back(set ? value : 0.0);
   }
-  if (!port) throw std::logic_error("no estimator of kind " + kind);
-  return port;
 }
 
-std::unique_ptr<ControllerPort> make_controller(const std::string& kind, const ControllerSetup& setup,
-                                                const Settings& settings) {
-  std::unique_ptr<ControllerPort> port;
-  each_controller_method([&]<class Method>() {
-    if (kind == Method::kind) port = std::make_unique<MethodController<Method>>(setup, settings);
+template <class Method, class Setup>
+void prepare(int index, const Setup& setup, const Settings& settings, MethodShape& shape, MethodNumbers& numbers) {
+  const auto constants = Method::prepare(setup, settings);
+  const auto state = Method::begin(setup, constants);
+  shape.index = index;
+  note_choices(Method::settings, settings, shape.choices);
+  apart<double>(constants, 0, numbers.constants);
+  apart<double>(state, 0, numbers.state);
+}
+
+}  // namespace
+
+void prepare_estimator(RunSetup& run, const std::string& kind, const EstimatorSetup& setup, const Settings& settings) {
+  MethodShape shape;
+  MethodNumbers numbers;
+  std::shared_ptr<EstimatorPort> own;
+  int index = 0;
+  each_estimator_method([&]<class Method>() {
+    if (kind == Method::kind) prepare<Method>(index, setup, settings, shape, numbers);
+    ++index;
   });
-  for (const auto& [own, make] : own_makers().controllers) {
-    if (kind == own) port = make(setup, settings);
+  for (const auto& [name, make] : own_makers().estimators) {
+    if (kind == name) own = make(setup, settings);
   }
-  if (!port) throw std::logic_error("no controller of kind " + kind);
-  return port;
+  if (shape.index < 0 && !own) throw std::logic_error("no estimator of kind " + kind);
+  run.shape.control.estimators.push_back(std::move(shape));
+  run.estimators.push_back(std::move(numbers));
+  run.own_estimators.push_back(std::move(own));
+}
+
+void prepare_controller(RunSetup& run, const std::string& kind, const ControllerSetup& setup,
+                        const Settings& settings) {
+  int index = 0;
+  each_controller_method([&]<class Method>() {
+    if (kind == Method::kind) prepare<Method>(index, setup, settings, run.shape.control.controller, run.controller);
+    ++index;
+  });
+  for (const auto& [name, make] : own_makers().controllers) {
+    if (kind == name) run.own_controller = make(setup, settings);
+  }
+  if (run.shape.control.controller.index < 0 && !run.own_controller)
+    throw std::logic_error("no controller of kind " + kind);
+}
+
+bool is_built_in_estimator(std::string_view kind) {
+  bool found = false;
+  each_estimator_method([&]<class Method>() { found = found || kind == Method::kind; });
+  return found;
+}
+bool is_built_in_controller(std::string_view kind) {
+  bool found = false;
+  each_controller_method([&]<class Method>() { found = found || kind == Method::kind; });
+  return found;
 }
 
 void add_estimator_maker(std::string_view kind, EstimatorMaker make) {

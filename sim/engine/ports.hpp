@@ -1,4 +1,5 @@
-// Where the engine meets estimators and controllers: types erased once, at one virtual call a tick each.
+// Where the engine meets estimators and controllers: types erased once, at one virtual call a tick each; one port steps one
+// case (double) or a pack of them.
 #pragma once
 
 #include <memory>
@@ -8,26 +9,37 @@
 
 #include "controllers/control.hpp"
 #include "estimators/method.hpp"
+#include "sim/engine/setup.hpp"
 
 namespace slipbench {
 
-class EstimatorPort {
+template <class Real>
+class EstimatorPortOf {
  public:
-  virtual ~EstimatorPort() = default;
-  virtual Estimate<double> step(const Sample<double>& sample) = 0;
+  virtual ~EstimatorPortOf() = default;
+  virtual Estimate<Real> step(const Sample<Real>& sample) = 0;
+  // One lane's state, flat; built-in methods only.
+  virtual void save(std::vector<double>&, std::size_t) const {}
 };
 
-class ControllerPort {
+template <class Real>
+class ControllerPortOf {
  public:
-  virtual ~ControllerPort() = default;
-  virtual Command<double> step(const Measurement<double>& measurement) = 0;
+  virtual ~ControllerPortOf() = default;
+  virtual Command<Real> step(const Measurement<Real>& measurement) = 0;
+  virtual void save(std::vector<double>&, std::size_t) const {}
 };
 
-// `kind` is built in or was added (the reader has checked); prepares constants and the state at tick 0.
-std::unique_ptr<EstimatorPort> make_estimator(const std::string& kind, const EstimatorSetup& setup,
-                                              const Settings& settings);
-std::unique_ptr<ControllerPort> make_controller(const std::string& kind, const ControllerSetup& setup,
-                                                const Settings& settings);
+using EstimatorPort = EstimatorPortOf<double>;
+using ControllerPort = ControllerPortOf<double>;
+
+// Adds to `run` the numbers of a method, prepared, with its state at the first tick. `kind` is built in or was added (the
+// reader has checked).
+void prepare_estimator(RunSetup& run, const std::string& kind, const EstimatorSetup& setup, const Settings& settings);
+void prepare_controller(RunSetup& run, const std::string& kind, const ControllerSetup& setup, const Settings& settings);
+
+bool is_built_in_estimator(std::string_view kind);
+bool is_built_in_controller(std::string_view kind);
 
 // Makers of kinds that are not built in; own_methods.hpp is the door.
 using EstimatorMaker = std::unique_ptr<EstimatorPort> (*)(const EstimatorSetup&, const Settings&);

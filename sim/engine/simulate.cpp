@@ -1,22 +1,27 @@
 #include "sim/engine/simulate.hpp"
 
-#include <array>
 #include <chrono>
 #include <limits>
 
 #include "sim/engine/run.hpp"
+#include "sim/engine/start.hpp"
 #include "sim/scenario/input_error.hpp"
 
 namespace slipbench {
 
 namespace {
 
-// Run-in lengths tried for a steady start, and how still (share of the rated values) the drive must stand after each.
-// Only a limit cycle (dead time, encoder lines) keeps a drive from the first; its means must still stand.
-struct RunIn {
-  double seconds, allowed;
-};
-constexpr std::array<RunIn, 3> run_ins{{{1.0, 1e-7}, {4.0, 1e-6}, {16.0, 5e-4}}};
+std::unique_ptr<Run> started(const Scenario& scenario, const RunOptions& options) {
+  if (scenario.run.start != "steady") return std::make_unique<Run>(scenario, options, 0);
+  for (const RunIn& run_in : run_ins) {
+    auto run = std::make_unique<Run>(scenario, options, run_in.first_tick(scenario));
+    const double moving = run->run_in();
+    if (moving <= run_in.allowed) return run;
+  }
+  throw never_steady(scenario);
+}
+
+}  // namespace
 
 // Same bits on every machine hold only where small numbers are kept; a library can switch that off for a whole thread.
 void demand_denormals() {
@@ -28,29 +33,18 @@ void demand_denormals() {
   }
 }
 
-std::unique_ptr<Run> started(const Scenario& scenario, const RunOptions& options) {
-  if (scenario.run.start != "steady") return std::make_unique<Run>(scenario, options, 0);
-  for (const RunIn& run_in : run_ins) {
-    const auto ticks = static_cast<std::int64_t>(run_in.seconds / scenario.run.control_period_s);
-    auto run = std::make_unique<Run>(scenario, options, -ticks);
-    const double moving = run->run_in();
-    if (moving <= run_in.allowed) return run;
-  }
-  throw InputError(
-      scenario.path, "run.start",
-      "start = \"steady\": no steady state at the first reference and load (the drive still moves after 16 s "
-      "of simulated time); start from \"standstill\" or \"magnetised\", or change the operating point",
-      "steady");
+RunSetup ready_run(const Scenario& scenario, std::uint32_t noise_run) {
+  RunOptions options;
+  options.noise_run = noise_run;
+  return started(scenario, options)->onward();
 }
-
-}  // namespace
 
 void check_start(const Scenario& scenario) { Run(scenario, {}, 0); }
 
 RunOutcome simulate(const Scenario& scenario, std::span<RunObserver* const> observers, const RunOptions& options) {
   demand_denormals();
   const auto run = started(scenario, options);
-  const RunInfo info = run->info();
+  const RunInfo& info = run->info();
   for (RunObserver* o : observers) o->begin(info);
   const auto begun = std::chrono::steady_clock::now();
   run->go(observers);

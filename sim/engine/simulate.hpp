@@ -10,6 +10,7 @@
 
 #include "sim/engine/events.hpp"
 #include "sim/engine/observer.hpp"
+#include "sim/engine/setup.hpp"
 #include "sim/scenario/scenario.hpp"
 
 namespace slipbench {
@@ -34,6 +35,13 @@ struct RunOutcome {
 // processor flushes denormals; the loop itself never throws: divergence is found at the control tick where it shows and
 // ends the run.
 RunOutcome simulate(const Scenario& scenario, std::span<RunObserver* const> observers, const RunOptions& options = {});
+
+// A run at t = 0, set up (a steady start run in) but not begun: what packs of lanes are filled with. Built-in methods only.
+// Throws as simulate() does.
+RunSetup ready_run(const Scenario& scenario, std::uint32_t noise_run = 0);
+
+// Throws OutsideError where the processor flushes denormals.
+void demand_denormals();
 
 // Sets the run up and goes no further: throws what simulate() would throw before its first tick, a run-in apart.
 void check_start(const Scenario& scenario);

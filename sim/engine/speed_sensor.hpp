@@ -31,6 +31,7 @@ struct SpeedSensorTiming {
   SpeedSensorKind kind = SpeedSensorKind::none;
   std::int64_t steps_per_tick = 1;  // plant steps in a control period
   std::int64_t ticks_per_window = 1;
+  bool operator==(const SpeedSensorTiming&) const = default;
 };
 
 template <class Real>

@@ -13,7 +13,7 @@ constexpr double rad_s_per_rpm = 3.14159265358979323846 / 30.0;
 constexpr double two_pi = 6.28318530717958647693;
 
 // Speed at which the load takes the torque asked for under torque control; 0 is as good as any where nothing depends on it.
-double balancing_speed(const Plant& plant, double torque, double limit, const Scenario& s) {
+double balancing_speed(const Plant<double>& plant, double torque, double limit, const Scenario& s) {
   double low = -limit, high = limit;
   if (plant.load_at_start(low) > torque || plant.load_at_start(high) < torque) {
     throw InputError(
@@ -31,7 +31,7 @@ double balancing_speed(const Plant& plant, double torque, double limit, const Sc
 
 double first_of(const Knots& knots) { return Profile(knots, 1.0).line_at(0.0).at(0.0); }
 
-SteadyState on_mains(const Scenario& s, const Plant& plant) {
+SteadyState on_mains(const Scenario& s, const Plant<double>& plant) {
   const double w = two_pi * s.supply.frequency_Hz;
   const double peak = make_mains(s.supply.line_voltage_V, s.supply.frequency_Hz, 0.0).peak;
   const auto slip = stable_slip(plant.circuit(), peak, w, [&](double speed) { return plant.load_at_start(speed); });
@@ -44,7 +44,7 @@ SteadyState on_mains(const Scenario& s, const Plant& plant) {
   return steady_at_slip(plant.circuit(), peak, w, *slip);
 }
 
-SteadyState on_inverter(const Scenario& s, Plant& plant) {
+SteadyState on_inverter(const Scenario& s, Plant<double>& plant) {
   const bool steady = s.run.start == "steady", speed_control = !s.reference.speed_rpm.empty();
   const Nameplate plate = s.machine.nameplate();
   const double pole_pairs = plant.circuit().pole_pairs;
@@ -95,7 +95,7 @@ ControllerSetup controller_setup(const Scenario& s, Modulation modulation, bool 
   return c;
 }
 
-StartState start_state(const Scenario& s, Plant& plant, std::int64_t first_tick) {
+StartState start_state(const Scenario& s, Plant<double>& plant, std::int64_t first_tick) {
   if (s.run.start == "standstill") return {};
   const SteadyState now = s.on_mains() ? on_mains(s, plant) : on_inverter(s, plant);
   StartState start{true, now.flux, now.electrical_speed / plant.circuit().pole_pairs, now.voltage};
@@ -106,6 +106,14 @@ StartState start_state(const Scenario& s, Plant& plant, std::int64_t first_tick)
     start.flux = {turn_forward(angle, now.flux.stator), turn_forward(angle, now.flux.rotor)};
   }
   return start;
+}
+
+InputError never_steady(const Scenario& s) {
+  return InputError(
+      s.path, "run.start",
+      "start = \"steady\": no steady state at the first reference and load (the drive still moves after 16 s "
+      "of simulated time); start from \"standstill\" or \"magnetised\", or change the operating point",
+      "steady");
 }
 
 }  // namespace slipbench

@@ -6,9 +6,12 @@
 //                controller and estimators; on mains the stable slip
 #pragma once
 
+#include <array>
+
 #include "controllers/control.hpp"
 #include "estimators/method.hpp"
 #include "sim/engine/plant.hpp"
+#include "sim/scenario/input_error.hpp"
 #include "sim/scenario/scenario.hpp"
 
 namespace slipbench {
@@ -26,6 +29,19 @@ struct StartState {
 
 // The state at control tick `first_tick` (0, or earlier for a run-in; on mains the phase follows). May move `plant`'s speed to
 // find the load there. Throws InputError where there is no equilibrium.
-StartState start_state(const Scenario& scenario, Plant& plant, std::int64_t first_tick);
+StartState start_state(const Scenario& scenario, Plant<double>& plant, std::int64_t first_tick);
+
+// Run-in lengths tried for a steady start, and how still (share of the rated values) the drive must stand after each.
+// Only a limit cycle (dead time, encoder lines) keeps a drive from the first; its means must still stand.
+struct RunIn {
+  double seconds, allowed;
+  [[nodiscard]] std::int64_t first_tick(const Scenario& s) const {
+    return -static_cast<std::int64_t>(seconds / s.run.control_period_s);
+  }
+};
+inline constexpr std::array<RunIn, 3> run_ins{{{1.0, 1e-7}, {4.0, 1e-6}, {16.0, 5e-4}}};
+
+// What is thrown after the last of them.
+InputError never_steady(const Scenario& scenario);
 
 }  // namespace slipbench

@@ -50,9 +50,9 @@ Node& step_into(Node& node, std::string_view part, const std::string& so_far, co
 
 }  // namespace
 
-void apply_overrides(Node& root, const std::vector<Override>& overrides) {
+void apply_overrides(Node& root, const std::vector<Override>& overrides, const std::string& before) {
   for (const Override& o : overrides) {
-    const std::string shown = printable(o.key);
+    const std::string shown = before + printable(o.key);
     const Place place{std::make_shared<const std::string>("--set:" + shown), 0, 0};
     if (o.key.empty() || o.key.front() == '.' || o.key.back() == '.' || o.key.find("..") != std::string::npos) {
       refuse(place, o.key, "'" + shown + "' is no dotted key, such as run.duration_s or estimator.0.kind",

@@ -9,7 +9,8 @@
 namespace slipbench {
 
 // Dotted keys; elements of a list by number, the next free number appends one. Values are TOML, else strings. Tables on
-// the way are made as needed; whether the schema knows the key shows when the tree is read, placed as "--set:key".
-void apply_overrides(Node& root, const std::vector<Override>& overrides);
+// the way are made as needed; whether the schema knows the key shows when the tree is read, placed as "--set:key", or
+// as "--set:" and `before` and the key.
+void apply_overrides(Node& root, const std::vector<Override>& overrides, const std::string& before = {});
 
 }  // namespace slipbench

@@ -130,27 +130,30 @@ MachineSettings machine_of(const Node& root, const std::string& from) {
 }
 
 // Parses the machine files a scenario names ahead of its readings. Failures wait for the reading that needs the file.
-void preload(ParsedScenario& parsed) {
-  for (const char* dotted : {"machine.file", "belief.file"}) {
-    const Node* key = find(parsed.root, dotted);
-    if (key == nullptr || key->kind != Node::Kind::text) continue;
+void preload(ParsedScenario& parsed, const std::vector<std::string>& more = {}) {
+  const auto take = [&](const Node& key, const char* dotted) {
+    if (key.kind != Node::Kind::text) return;
     try {
-      Node file = load_machine(parsed, *key, dotted);
-      parsed.machines.emplace(beside(parsed.folder, key->text), std::move(file));
+      Node file = load_machine(parsed, key, dotted);
+      parsed.machines.emplace(beside(parsed.folder, key.text), std::move(file));
     } catch (const InputError&) {
     }
+  };
+  for (const char* dotted : {"machine.file", "belief.file"}) {
+    if (const Node* key = find(parsed.root, dotted)) take(*key, dotted);
   }
+  for (const std::string& text : more) take(parse_value(text, parsed.root.place), "machine.file");
 }
 
 }  // namespace
 
-ScenarioFile::ScenarioFile(const std::string& path) {
+ScenarioFile::ScenarioFile(const std::string& path, const std::vector<std::string>& machines) {
   auto parsed = std::make_shared<ParsedScenario>();
   parsed->path = path;
   parsed->folder = std::filesystem::path(path).parent_path().string();
   parsed->root = parse_file(path);
   want_kind(parsed->root, FileKind::scenario);
-  preload(*parsed);
+  preload(*parsed, machines);
   parsed_ = std::move(parsed);
 }
 
@@ -179,6 +182,12 @@ Scenario ScenarioFile::read(const std::vector<Override>& overrides, std::optiona
   derive_defaults(scenario, root);
   check_relations(scenario, root);
   return scenario;
+}
+
+std::vector<std::string> ScenarioFile::machine_files() const {
+  std::vector<std::string> paths;
+  for (const auto& [path, node] : parsed_->machines) paths.push_back(path);
+  return paths;
 }
 
 FileKind kind_of_file(const std::string& path) { return kind_of(parse_file(path)); }

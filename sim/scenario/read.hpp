@@ -34,10 +34,13 @@ MachineSettings read_machine(const std::string& path, const std::vector<Override
 struct ParsedScenario;
 class ScenarioFile {
  public:
-  explicit ScenarioFile(const std::string& path);
+  // `machines`: more machine files that overrides will name, as they will name them.
+  explicit ScenarioFile(const std::string& path, const std::vector<std::string>& machines = {});
   ScenarioFile(const std::string& text, const std::string& name, const std::string& folder);
   [[nodiscard]] Scenario read(const std::vector<Override>& overrides = {},
                               std::optional<std::uint64_t> seed = {}) const;
+  // Paths of the machine files that it names and that could be read.
+  [[nodiscard]] std::vector<std::string> machine_files() const;
 
  private:
   std::shared_ptr<const ParsedScenario> parsed_;

@@ -44,6 +44,7 @@ LIBRARIES = (
     (r"(zmq|zmq_addon|cppzmq)", ("sim/stream", "tests/sim/stream", "tools/bench"), "ZeroMQ"),
     (r"msgpack", ("sim/stream", "tests/sim/stream"), "MessagePack"),
     (r"sqlite3", ("sim/sweep",), "SQLite"),
+    (r"nlopt", ("sim/sweep",), "NLopt"),
     (r"CLI/", ("tools",), "CLI11"),
     (r"nlohmann/", ("tools", "tests"), "JSON"),
     (r"catch2/", ("tests",), "Catch2"),

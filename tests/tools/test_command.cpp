@@ -47,12 +47,20 @@ TEST_CASE("command: a verb given the wrong kind of file says which it wants", "[
       folder.write("m.toml", "title = \"Test machine\"\nsource = \"invented\"\n" + text.substr(from, to - from));
   const std::string plan = folder.write("p.toml", "scenario = \"s.toml\"\n");
   const std::string system = folder.write("sys.toml", "[system]\nA = [[0.0]]\nB = [[1.0]]\nC = [[1.0]]\n");
+  const std::string scenario = folder.write("s.toml", text);
+  const auto told = [&](const std::vector<std::string>& words) {
+    return refused(folder.run(words), 2)["message"].get<std::string>();
+  };
   for (const std::string verb : {"run", "compare"}) {
-    for (const std::string& file : {machine, plan, system}) {
-      const auto error = refused(folder.run({verb, file, "--json"}), 2);
-      CHECK_THAT(error["message"].get<std::string>(), Catch::Contains(verb + " wants a scenario"));
-    }
+    for (const std::string& file : {machine, system})
+      CHECK_THAT(told({verb, file, "--json"}), Catch::Contains(verb + " wants a scenario"));
   }
+  CHECK_THAT(told({"compare", plan, "--json"}), Catch::Contains("compare wants a scenario"));
+  CHECK_THAT(told({"run", plan, "--json"}), Catch::Contains("this is a sweep plan: name one of its cases"));
+  CHECK_THAT(told({"run", plan, "--case", "1", "--json"}), Catch::Contains("the plan has cases 0 to 0"));
+  CHECK_THAT(told({"run", scenario, "--case", "0", "--json"}), Catch::Contains("for a sweep plan only"));
+  for (const std::string& file : {machine, scenario, system})
+    CHECK_THAT(told({"sweep", file, "--json"}), Catch::Contains("sweep wants a sweep plan"));
   const Answer facts = folder.run({"check", machine, "--json"});
   REQUIRE(facts.status == 0);
   CHECK(facts.json()["kind"] == "machine file");

@@ -5,6 +5,7 @@
 
 #include "plant/steady_state.hpp"
 #include "sim/engine/simulate.hpp"
+#include "sim/sweep/plan.hpp"
 #include "tools/slipbench/json_out.hpp"
 #include "tools/slipbench/table.hpp"
 #include "tools/slipbench/verbs.hpp"
@@ -112,11 +113,19 @@ int check_verb(const Request& request) {
     document.title = machine.title;
     if (!machine.source.empty()) document.facts.push_back({"source", "source of its numbers", 0.0, machine.source, ""});
     add_machine_facts(document.facts, machine);
+  } else if (kind == FileKind::plan) {
+    document.kind = "sweep plan";
+    const SweepPlan plan = read_plan(request.file, request.overrides, request.seed);
+    document.title = plan.title;
+    document.facts.push_back({"scenario", "scenario", 0.0, plan.scenario, ""});
+    document.facts.push_back({"cases", "cases", static_cast<double>(plan.cases()), "", ""});
+    document.facts.push_back({"runs", "noise runs of each", static_cast<double>(plan.runs), "", ""});
+    document.facts.push_back({"keys", "keys that vary", 0.0, fmt::format("{}", fmt::join(plan.keys(), ", ")), ""});
   } else {
     throw InputError(request.file, "",
                      "this is " + kind_text(kind) +
                          ", which this version does not read yet; check takes a "
-                         "scenario or a machine file",
+                         "scenario, a machine file or a sweep plan",
                      "kind");
   }
   if (request.json) {

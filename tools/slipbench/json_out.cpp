@@ -4,8 +4,10 @@
 #include <nlohmann/json.hpp>
 
 #include "sim/scenario/scenario.hpp"
+#include "sim/sweep/worst_case.hpp"
 #include "tools/slipbench/comparison.hpp"
 #include "tools/slipbench/run_result.hpp"
+#include "tools/slipbench/sweep_result.hpp"
 
 namespace slipbench {
 
@@ -32,6 +34,31 @@ Json bounds(const Interval& interval) {
 
 std::string text_of(const Json& document) {
   return document.dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
+}
+
+void add_share(Json& key, const std::string& name, const Share& share) {
+  key[name] = value_of(share.value);
+  key[name + "_ci95"] = Json::array({value_of(share.low), value_of(share.high)});
+}
+
+void add_sensitivities(Json& document, const SweepResult& r) {
+  const std::vector<std::string> names = drawn_names(*r.plan);
+  Json all = Json::object(), points = Json::object();
+  for (const FigureSensitivity& one : r.sensitivities) {
+    Json figure = Json::object();
+    for (std::size_t j = 0; j < one.shares.keys.size(); ++j) {
+      Json key = Json::object();
+      add_share(key, "first", one.shares.keys[j].first);
+      key["total"] = nullptr, key["total_ci95"] = nullptr;  // plain draws give none
+      if (one.shares.keys[j].total) add_share(key, "total", *one.shares.keys[j].total);
+      figure[names[j]] = std::move(key);
+    }
+    all[one.figure] = std::move(figure);
+    points[one.figure] = {{"used", one.shares.used}, {"lost", one.shares.lost}};
+    if (!one.shares.none.empty()) points[one.figure]["none"] = one.shares.none;
+  }
+  document["sensitivity"] = std::move(all);
+  document["sensitivity_points"] = std::move(points);
 }
 
 }  // namespace
@@ -71,6 +98,53 @@ std::string json_document(const RunResult& r) {
                           {"dropped", r.stream->dropped}};
   }
   return text_of(document);
+}
+
+std::string json_document(const SweepResult& r) {
+  const SweepOutcome& o = r.outcome;
+  Json document;
+  document["slipbench"] = SLIPBENCH_VERSION;
+  document["cases"] = r.plan->cases();
+  document["runs"] = r.plan->runs;
+  document["done"] = r.rows;
+  document["failed"] = r.diverged + r.refused;
+  document["diverged"] = r.diverged;
+  document["refused"] = r.refused;
+  document["lost"] = r.lost;
+  document["resumed"] = o.resumed;
+  document["wall_s"] = o.wall_s;
+  document["simulated_s"] = o.simulated_s;
+  document["lanes"] = o.lanes;
+  document["threads"] = o.threads;
+  document["isa"] = o.isa;
+  document["store"] = r.store;
+  document["ran_alone"] = Json::object();
+  for (const auto& [reason, rows] : o.not_in_lanes) document["ran_alone"][reason] = rows;
+  if (!r.sensitivities.empty()) add_sensitivities(document, r);
+  if (o.stopped) document["interrupted"] = true;
+  if (r.cluster)
+    document["slurm"] = {{"shards", r.cluster->shards}, {"submitted", r.cluster->submitted}, {"lost", r.cluster->lost}};
+  if (r.merged)
+    document["merged"] = {{"rows", r.merged->rows}, {"twice", r.merged->twice}, {"missing", r.merged->missing}};
+  return text_of(document);
+}
+
+std::string json_document(const WorstCase& w, const std::string& figure, const std::string& file) {
+  Json search = {{"figure", figure}, {"runs", w.runs}, {"status", w.status.empty() ? Json(nullptr) : Json(w.status)}};
+  search["best"] = Json::object();
+  for (std::size_t j = 0; j < w.at.size(); ++j) {
+    for (const std::string& key : w.box[j].keys) search["best"][key] = w.at[j];
+  }
+  search["value"] = value_of(w.value);
+  search["fresh"] = {{"mean", value_of(w.fresh_mean.mean)},
+                     {"ci95", bounds(w.fresh_mean)},
+                     {"runs", w.fresh.size()},
+                     {"diverged", w.fresh_diverged}};
+  search["without"] = w.without;
+  search["flat"] = w.flat;
+  if (!file.empty()) search["file"] = file;
+  if (w.stopped) search["interrupted"] = true;
+  return text_of({{"slipbench", SLIPBENCH_VERSION}, {"search", search}});
 }
 
 std::string json_document(const Comparison& c) {

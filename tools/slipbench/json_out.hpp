@@ -10,6 +10,8 @@ namespace slipbench {
 
 struct RunResult;
 struct Comparison;
+struct SweepResult;
+struct WorstCase;
 
 struct ErrorDocument {
   std::string place, key, message, code;
@@ -28,6 +30,9 @@ struct CheckDocument {
 
 std::string json_document(const RunResult& result);
 std::string json_document(const Comparison& comparison);
+std::string json_document(const SweepResult& sweep);
+// `file`: what it was written to, "" for none.
+std::string json_document(const WorstCase& worst, const std::string& figure, const std::string& file);
 std::string json_document(const CheckDocument& check);
 std::string json_document(const ErrorDocument& error);
 

@@ -29,6 +29,7 @@ int work(const std::vector<std::string>& arguments) {
   }
   if (line.request->verb == "run") return run_verb(*line.request);
   if (line.request->verb == "check") return check_verb(*line.request);
+  if (line.request->verb == "sweep") return sweep_verb(*line.request);
   return compare_verb(*line.request);
 }
 
@@ -39,6 +40,7 @@ int main(int count, char** words) {
   const bool json = std::find(arguments.begin(), arguments.end(), "--json") != arguments.end();
   catch_interrupts();
   std::signal(SIGPIPE, SIG_IGN);  // a closed pipe is then an error like any other
+  std::signal(SIGXFSZ, SIG_IGN);  // likewise a file that grows beyond the user's limit
   try {
     return work(arguments);
   } catch (const InputError& e) {

@@ -10,6 +10,7 @@
 
 #include "sim/record/trace.hpp"
 #include "sim/scenario/nearest.hpp"
+#include "sim/sweep/cluster.hpp"
 #include "tools/slipbench/command_table.hpp"
 #include "tools/slipbench/completion.hpp"
 #include "tools/slipbench/man_page.hpp"
@@ -69,6 +70,17 @@ bool is_verb(std::string_view word) {
   refuse(name, fmt::format("unknown option '{}' of {}; the nearest is {}", name, verb, nearest(name, known)));
 }
 
+Shard shard_of(const std::string& text) {
+  const std::size_t slash = text.find('/');
+  if (slash == std::string::npos || text.find('/', slash + 1) != std::string::npos) {
+    refuse("--shard", fmt::format("--shard '{}': expected I/N, as in 0/3 for the first of three", text));
+  }
+  Shard shard;
+  shard.count = whole_number<std::uint64_t>("--shard", text.substr(slash + 1), 1, most_cases);
+  shard.index = whole_number<std::uint64_t>("--shard", text.substr(0, slash), 0, shard.count - 1);
+  return shard;
+}
+
 void want_word(const OptionRow& row, const std::string& word) {
   const std::vector<std::string_view> words = row.words();
   if (std::count(words.begin(), words.end(), word) > 0) return;
@@ -119,13 +131,44 @@ Request request_of(const std::string& verb, Given& given) {
     return !given.values[name].empty();
   };
   const auto text = [&](const char* name) { return flag(name) ? given.values[name].front() : std::string(); };
-  r.trace = text("--trace"), r.figure = text("--figure");
+  r.trace = text("--trace"), r.figure = text("--figure"), r.figure_of = text("--figure-of");
   for (const char* name : {"--trace", "--figure"}) {
     if (flag(name) && text(name).empty()) refuse(name, fmt::format("{} needs the name of a file", name));
   }
+  if (flag("--figure-of") && r.figure_of.empty()) refuse("--figure-of", "--figure-of needs the name of a figure");
   if (flag("--seed")) r.seed = whole_number<std::uint64_t>("--seed", text("--seed"), 0, UINT64_MAX);
   if (flag("--run")) r.noise_run = whole_number<std::uint32_t>("--run", text("--run"), 0, UINT32_MAX);
   if (flag("--runs")) r.runs = whole_number<std::uint32_t>("--runs", text("--runs"), 1, 1000000);
+  r.store = text("--store"), r.csv = text("--csv"), r.isa = text("--isa");
+  r.merge = given.values["--merge"];
+  r.search = text("--search"), r.write = text("--write");
+  if (flag("--budget")) r.budget = whole_number<std::uint32_t>("--budget", text("--budget"), 1, 1000000);
+  for (const char* name : {"--budget", "--write"}) {
+    if (flag(name) && !flag("--search")) refuse(name, fmt::format("{} needs --search FIGURE beside it", name));
+  }
+  for (const char* name : {"--store", "--csv", "--shard", "--merge"}) {
+    if (flag("--search") && !given.values[name].empty())
+      refuse(name, fmt::format("{} means nothing with --search: a search keeps no store", name));
+  }
+  if (flag("--write") && !r.write.ends_with(".toml") && !r.write.starts_with("/dev/"))
+    refuse("--write", fmt::format("--write '{}': expected a name that ends in .toml", r.write));
+  if (flag("--on")) {
+    for (const OptionRow& row : option_rows()) {
+      if (row.name == "--on") want_word(row, text("--on"));
+    }
+    r.on_slurm = text("--on") == "slurm";
+  }
+  if (flag("--shards")) r.shards = whole_number<std::uint64_t>("--shards", text("--shards"), 1, 1000000);
+  for (const std::string& option : given.values["--slurm"]) r.slurm.push_back(pass_option(option));
+  for (const char* name : {"--shards", "--slurm"}) {
+    if (!r.on_slurm && !given.values[name].empty()) refuse(name, fmt::format("{} needs --on slurm beside it", name));
+  }
+  for (const char* name : {"--shard", "--merge", "--search"}) {
+    if (r.on_slurm && !given.values[name].empty())
+      refuse(name, fmt::format("{} does not go with --on slurm, which cuts and joins the shards itself", name));
+  }
+  if (flag("--case")) r.plan_case = whole_number<std::uint64_t>("--case", text("--case"), 0, most_cases);
+  if (flag("--shard")) r.shard = shard_of(text("--shard"));
   if (flag("--threads")) r.threads = whole_number<unsigned>("--threads", text("--threads"), 1, 1024);
   if (flag("--publish")) r.publish = text("--publish");
   if (flag("--publish-wait"))

@@ -27,7 +27,7 @@ Progress::~Progress() {
   if (shown_ && terminal_) std::fputs("\r\033[K", stderr);
 }
 
-void Progress::update(double share_done) {
+void Progress::update(double share_done, const std::string& more) {
   if (!active_) return;
   const std::unique_lock lock(mutex_, std::try_to_lock);
   if (!lock.owns_lock()) return;
@@ -37,7 +37,7 @@ void Progress::update(double share_done) {
   if (elapsed < 0.5 || since < (terminal_ ? 0.2 : shown_ ? 2.0 : 0.0) || share_done <= 0.0) return;
   const double left = elapsed * (1.0 - share_done) / share_done;
   if (!shown_ && elapsed + left < 2.0) return;
-  const std::string line = fmt::format("{}: {:3.0f} %, {} left", what_, 100.0 * share_done, time_left(left));
+  const std::string line = fmt::format("{}: {:3.0f} %, {} left{}", what_, 100.0 * share_done, time_left(left), more);
   std::fputs(terminal_ ? ("\r\033[K" + line).c_str() : (line + "\n").c_str(), stderr);
   std::fflush(stderr);
   shown_ = true;

@@ -12,7 +12,8 @@ class Progress {
   // asked: show even if standard error is no terminal (then a line every few seconds).
   Progress(std::string what, bool asked, bool quiet);
   ~Progress();
-  void update(double share_done);  // 0..1; from any thread
+  // 0..1; from any thread. `more`: said behind it.
+  void update(double share_done, const std::string& more = "");
 
  private:
   using Clock = std::chrono::steady_clock;

@@ -31,25 +31,55 @@ std::string status_of(const RunResult& result) {
   return "done";
 }
 
-TraceOrigin origin_of(const Request& request, const Scenario& scenario) {
+// What is run: a scenario as it stands, or a case of a plan.
+struct Subject {
+  std::string file;  // the scenario's
+  std::vector<Override> overrides;
+};
+
+Subject subject_of(const Request& request) {
+  if (kind_of_file(request.file) != FileKind::plan) {
+    want_scenario(request);
+    if (request.plan_case) {
+      throw InputError("command line", "--case", "--case means something for a sweep plan only; this is a scenario",
+                       "usage");
+    }
+    return {request.file, request.overrides};
+  }
+  const SweepPlan plan = read_plan(request.file, request.overrides, request.seed);
+  const std::string cases = fmt::format("the plan has cases 0 to {} and runs 0 to {}", plan.cases() - 1, plan.runs - 1);
+  if (!request.plan_case) {
+    throw InputError(
+        "command line", "--case",
+        "this is a sweep plan: name one of its cases, as in --case 0, or run all with `slipbench sweep`; " + cases,
+        "usage");
+  }
+  if (*request.plan_case >= plan.cases())
+    throw InputError("command line", "--case", fmt::format("--case {}: {}", *request.plan_case, cases), "usage");
+  if (request.noise_run >= plan.runs)
+    throw InputError("command line", "--run", fmt::format("--run {}: {}", request.noise_run, cases), "usage");
+  return {plan.scenario, CaseMaker(plan).overrides(*request.plan_case)};
+}
+
+TraceOrigin origin_of(const Subject& subject, const Request& request, const Scenario& scenario) {
   std::string why;
-  TraceOrigin origin{SLIPBENCH_VERSION, read_text(request.file, why).value_or(""), "", scenario.seed,
+  TraceOrigin origin{SLIPBENCH_VERSION, read_text(subject.file, why).value_or(""), "", scenario.seed,
                      request.noise_run};
-  for (const Override& o : request.overrides) origin.overrides += o.key + "=" + o.value + "\n";
+  for (const Override& o : subject.overrides) origin.overrides += o.key + "=" + o.value + "\n";
   return origin;
 }
 
 }  // namespace
 
 int run_verb(const Request& request) {
-  want_scenario(request);
-  const Scenario scenario = read_scenario(request.file, request.overrides, request.seed);
+  const Subject subject = subject_of(request);
+  const Scenario scenario = read_scenario(subject.file, subject.overrides, request.seed);
   const ScoreBasis basis = score_basis(scenario);
 
   // Outputs are opened first: a path that cannot be written costs no simulation.
   std::unique_ptr<Trace> trace;
   std::unique_ptr<OutFile> figure_file;
-  if (!request.trace.empty()) trace = open_trace(request.trace, origin_of(request, scenario));
+  if (!request.trace.empty()) trace = open_trace(request.trace, origin_of(subject, request, scenario));
   if (!request.figure.empty()) figure_file = std::make_unique<OutFile>(request.figure);
 
   EstimatorScore estimator_score(basis);

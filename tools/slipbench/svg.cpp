@@ -71,6 +71,10 @@ std::string text(double x, double y, std::string_view words, const TextStyle& st
                      style.bold ? " font-weight=\"bold\"" : "", escaped(words));
 }
 
+std::string upright_text(double x, double y, std::string_view words, const TextStyle& style) {
+  return fmt::format("<g transform=\"translate({},{}) rotate(-90)\">{}</g>\n", px(x), px(y), text(0, 0, words, style));
+}
+
 std::string line(double x1, double y1, double x2, double y2, std::string_view stroke, double width,
                  std::string_view dashes) {
   return fmt::format("<line x1=\"{}\" y1=\"{}\" x2=\"{}\" y2=\"{}\" stroke=\"{}\" stroke-width=\"{}\"{}/>\n", px(x1),

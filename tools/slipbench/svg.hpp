@@ -30,6 +30,8 @@ struct TextStyle {
   bool bold = false;
 };
 std::string text(double x, double y, std::string_view words, const TextStyle& style = {});
+std::string upright_text(double x, double y, std::string_view words,
+                         const TextStyle& style = {});  // read from the right
 std::string line(double x1, double y1, double x2, double y2, std::string_view stroke, double width = 1.0,
                  std::string_view dashes = "");
 std::string rectangle(double x, double y, double width, double height, std::string_view fill, double opacity = 1.0);

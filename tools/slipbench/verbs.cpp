@@ -27,6 +27,14 @@ void want_scenario(const Request& request) {
                    "kind");
 }
 
+void want_plan(const Request& request) {
+  const FileKind kind = kind_of_file(request.file);
+  if (kind == FileKind::plan) return;
+  throw InputError(request.file, "",
+                   request.verb + " wants a sweep plan (a file with scenario = \"...\"); this is " + kind_text(kind),
+                   "kind");
+}
+
 void print(const std::string& text) {
   errno = 0;
   const bool written = std::fwrite(text.data(), 1, text.size(), stdout) == text.size() && std::fflush(stdout) == 0;

@@ -3,6 +3,7 @@
 
 #include <string>
 
+#include "sim/sweep/cluster_run.hpp"
 #include "tools/slipbench/options.hpp"
 
 namespace slipbench {
@@ -12,11 +13,16 @@ enum ExitStatus : int { done = 0, bad_result = 1, bad_input = 2, outside_failed 
 int run_verb(const Request& request);
 int check_verb(const Request& request);
 int compare_verb(const Request& request);
+int sweep_verb(const Request& request);
+int search_verb(const Request& request);  // sweep --search
+// sweep --on slurm.
+ClusterOutcome sweep_on_slurm(const Request& request, const SweepPlan& plan, Store& store);
 // check --keys, check --schema.
 int print_reference(const Request& request);
 
 // Throws InputError when the file is of another kind than the verb wants.
 void want_scenario(const Request& request);
+void want_plan(const Request& request);
 // "a scenario", "a machine file", ...
 std::string kind_text(FileKind kind);
 // To standard output; OutsideError when it does not arrive.

@@ -10,9 +10,11 @@
 #include <span>
 #include <string_view>
 
+#include "sim/engine/lanes/run_job.hpp"
+
 namespace slipbench {
 
-enum class LanesWork : std::int32_t { width, machine_steps, function };
+enum class LanesWork : std::int32_t { width, machine_steps, function, run, settle };
 enum class LanesFunction : std::int32_t {
   sincos_sin,
   sincos_cos,
@@ -42,6 +44,7 @@ struct LanesJob {
   double* states = nullptr;                 // machine_steps: five numbers, advanced in place
   const double *a = nullptr, *b = nullptr;  // function: operands (b of two)
   double* result = nullptr;
+  LanesRun* drive = nullptr;  // run, settle: whole drives; run_pack.hpp is the way in
 };
 
 struct LaneSet {

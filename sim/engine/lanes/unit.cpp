@@ -7,6 +7,7 @@
 #include "plant/math/lanes.hpp"
 #include "sim/engine/lanes/lanes.hpp"
 #include "sim/engine/lanes/machine_step.hpp"
+#include "sim/engine/lanes/run_unit.hpp"
 #include "sim/engine/steppers.hpp"
 
 namespace slipbench {
@@ -88,6 +89,10 @@ extern "C" void SLIPBENCH_ENTRY(slipbench::LanesJob* job) {
       return;
     case LanesWork::function:
       return functions(*job);
+    case LanesWork::run:
+      return run_in_lanes(*job->drive);
+    case LanesWork::settle:
+      return settle_in_lanes(*job->drive);
     case LanesWork::machine_steps:
       switch (static_cast<Stepper>(job->stepper)) {
         case Stepper::euler:

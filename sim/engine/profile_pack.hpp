@@ -1,0 +1,46 @@
+// A profile for each lane, read as one: the lines that hold at a time, side by side. Lanes may have knots of their own.
+#pragma once
+
+#include <array>
+
+#include "sim/engine/setup.hpp"
+
+namespace slipbench {
+
+template <class Real>
+class ProfilePack {
+ public:
+  // `get(setup)` gives one lane's profile.
+  template <class Get>
+  ProfilePack(Cases cases, Get get) {
+    for (std::size_t lane = 0; lane < profiles_.size(); ++lane) profiles_[lane] = get(*cases[lane]);
+    seek(0.0);
+  }
+
+  // The lines that hold just after time t. As long as no lane passes a knot: two comparisons.
+  const Line<Real>& line_at(double t) {
+    if (!(t >= from_ && t < until_)) seek(t);
+    return line_;
+  }
+
+ private:
+  void seek(double t) {
+    Stretch all;
+    for (std::size_t lane = 0; lane < profiles_.size(); ++lane) {
+      const Stretch one = profiles_[lane].stretch_at(t);
+      set_lane(line_.value, lane, one.line.value);
+      set_lane(line_.slope, lane, one.line.slope);
+      set_lane(line_.start, lane, one.line.start);
+      all.from = max(all.from, one.from);
+      all.until = min(all.until, one.until);
+    }
+    from_ = all.from;
+    until_ = all.until;
+  }
+
+  std::array<Profile, width_of<Real>> profiles_;
+  Line<Real> line_;
+  double from_ = 0.0, until_ = 0.0;
+};
+
+}  // namespace slipbench
