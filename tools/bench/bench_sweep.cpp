@@ -1,0 +1,86 @@
+// A whole sweep of 128 cases (conveyor, luenberger and extended_kalman, scored, into a store): double on one thread, packs on one, packs
+// on two, in turns.
+//
+//   lanes     time of double over that of packs, one thread each
+//   threads   packs on one thread over packs on two
+//   whole     double on one thread over packs on two
+#include <benchmark/benchmark.h>
+#include <unistd.h>
+
+#include <algorithm>
+#include <filesystem>
+#include <fstream>
+#include <sstream>
+#include <stdexcept>
+#include <string>
+#include <vector>
+
+#include "sim/engine/lanes/lanes.hpp"
+#include "sim/sweep/sweep.hpp"
+
+namespace {
+
+using namespace slipbench;
+namespace fs = std::filesystem;
+
+// A folder of its own with the plan; it goes at the end.
+struct Workplace {
+  fs::path folder = fs::temp_directory_path() / ("slipbench-bench-sweep-" + std::to_string(::getpid()));
+  Workplace() {
+    fs::create_directories(folder);
+    std::stringstream text;
+    text << std::ifstream(SLIPBENCH_SOURCE_DIR "/configs/scenarios/conveyor_hot_rotor.toml").rdbuf();
+    std::string scenario = text.str();
+    const auto replace = [&](const std::string& what, const std::string& by) {
+      const std::size_t at = scenario.find(what);
+      if (at == std::string::npos) throw std::runtime_error("the conveyor has no '" + what + "'");
+      scenario.replace(at, what.size(), by);
+    };
+    replace("[[estimator]]\nname = \"reduced\"\nkind = \"reduced_order\"\n", "");
+    replace("../machines", SLIPBENCH_SOURCE_DIR "/configs/machines");
+    std::ofstream(folder / "scenario.toml") << scenario;
+    std::ofstream(folder / "plan.toml") << "scenario = \"scenario.toml\"\n[[vary]]\nkey = \"belief.rotor_resistance\"\n"
+                                           "from = 0.7\nto = 1.3\ncount = 128\n";
+  }
+  ~Workplace() { fs::remove_all(folder); }
+  [[nodiscard]] std::string file(const char* name) const { return (folder / name).string(); }
+};
+
+double seconds(const Workplace& place, const SweepPlan& plan, const std::string& isa, unsigned threads) {
+  fs::remove(place.file("rows.sqlite"));
+  Store store(place.file("rows.sqlite"), origin_of(plan), columns_of(plan));
+  SweepOptions options;
+  options.isa = isa;
+  options.threads = threads;
+  return run_sweep(plan, store, options).wall_s;
+}
+
+double median(std::vector<double> x) {
+  std::nth_element(x.begin(), x.begin() + static_cast<std::ptrdiff_t>(x.size() / 2), x.end());
+  return x[x.size() / 2];
+}
+
+void whole_sweep(benchmark::State& state) {
+  const Workplace place;
+  const SweepPlan plan =
+      read_plan(place.file("plan.toml"), {{"run.duration_s", "0.5"},
+                                          {"run.start", "magnetised"},
+                                          {"reference.speed_rpm", "[[0.0, 0.0], [0.02, 0.0], [0.3, 300.0]]"},
+                                          {"score.from_s", "0.05"}});
+  std::vector<double> single, packs, both;
+  for (auto _ : state) {
+    single.push_back(seconds(place, plan, "double", 1));
+    packs.push_back(seconds(place, plan, "", 1));
+    both.push_back(seconds(place, plan, "", 2));
+  }
+  state.SetLabel(std::string(best_lane_set().name));
+  state.counters["lanes"] = median(single) / median(packs);
+  state.counters["threads"] = median(packs) / median(both);
+  state.counters["whole"] = median(single) / median(both);
+}
+
+BENCHMARK(whole_sweep)->Unit(benchmark::kMillisecond)->Iterations(7);
+
+}  // namespace
+
+BENCHMARK_MAIN();
