@@ -5,7 +5,7 @@
     behaviour.py SLIPBENCH SOURCE alarm                shows that it can ring: a belief 5 % off must be found
     behaviour.py SLIPBENCH SOURCE keep TOOLCHAIN       writes both anew: explain every change in the commit message
 
-A figure's band is what it takes over 12 other draws of the same noise, each side widened by half of that range and by a
+A figure's band is what it takes over this and 12 other draws of the same noise, each side widened by half of that range and by a
 tenth of a percent of the figure: another draw passes, another behaviour does not. A digest changes with the last bit.
 """
 import concurrent.futures

@@ -77,7 +77,10 @@ Shard shard_of(const std::string& text) {
   }
   Shard shard;
   shard.count = whole_number<std::uint64_t>("--shard", text.substr(slash + 1), 1, most_cases);
-  shard.index = whole_number<std::uint64_t>("--shard", text.substr(0, slash), 0, shard.count - 1);
+  shard.index = whole_number<std::uint64_t>("--shard", text.substr(0, slash), 0, most_cases);
+  if (shard.index >= shard.count)
+    refuse("--shard",
+           fmt::format("--shard '{}': shards count from 0, so the last is {}/{}", text, shard.count - 1, shard.count));
   return shard;
 }
 

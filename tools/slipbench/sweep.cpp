@@ -77,6 +77,11 @@ int sweep_verb(const Request& request) {
   want_plan(request);
   if (!request.search.empty()) return search_verb(request);
   const SweepPlan plan = read_plan(request.file, request.overrides, request.seed);
+  // Before the joined store is made: a slip of the pen leaves none behind.
+  for (const std::string& part : request.merge) {
+    if (!std::filesystem::exists(part))
+      throw InputError("command line", "--merge", fmt::format("--merge '{}': there is no such file", part), "file");
+  }
   std::unique_ptr<OutFile> csv;
   if (!request.csv.empty()) csv = std::make_unique<OutFile>(request.csv);
   std::unique_ptr<OutFile> figure;

@@ -36,6 +36,12 @@ fault = "no_signal"
 
 
 class SameRows(unittest.TestCase):
+    def test_a_part_that_is_not_there_leaves_no_store(self):
+        bench = Bench(self, drawn(3))
+        said = bench.sweep("--merge", "gone.sqlite", "--store", "all.sqlite", status=2)
+        self.assertIn("--merge 'gone.sqlite': there is no such file", said)
+        self.assertFalse((bench.path / "all.sqlite").exists())
+
     def test_sets_threads_shards(self):
         bench = Bench(self, drawn(75, runs=2))  # 64 and 11 cases a run: full packs, and one that is not
         bench.sweep("--store", "double", "--isa", "double", "--threads", 1, "--csv", "double.csv")
