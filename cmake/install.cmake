@@ -22,6 +22,7 @@ function(slipbench_export name)
 endfunction()
 
 slipbench_export(plant)
+slipbench_export(linear "Eigen3 3.4")
 slipbench_export(estimators)
 slipbench_export(controllers)
 slipbench_export(scenario)

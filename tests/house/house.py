@@ -20,11 +20,13 @@ RUN = DRIVE + ("sim/scenario", "sim/engine")
 ARROWS = {
     "plant": ("plant",),
     "plant/math": ("plant/math",),
+    "plant/linear": ("plant",),
     "estimators": ("plant", "estimators"),
     "controllers": ("plant", "controllers"),
     "sim/scenario": DRIVE + ("sim/scenario",),
     "sim/engine": RUN,
     "sim/score": RUN + ("sim/score",),
+    "sim/linear": RUN + ("sim/linear",),
     "sim/record": RUN + ("sim/record",),
     "sim/stream": RUN + ("sim/stream",),
     "sim/board": RUN + ("sim/board",),
