@@ -1,11 +1,18 @@
 #include "plant/linear/staircase.hpp"
 
 #include <algorithm>
+#include <limits>
 
 #include "plant/linear/balance.hpp"
 #include "plant/linear/dense.hpp"
 
 namespace slipbench::linear {
+namespace {
+
+// Rounding that has grown is believed up to here only: a coupling of more than 1e-8 of ||A|| is one.
+constexpr double weakest_step = 1e-8;
+
+}  // namespace
 
 Staircase controllable_part(const Matrix& A, const Matrix& B, double tolerance, double size_a, double size_b) {
   const auto n = A.rows();
@@ -13,16 +20,19 @@ Staircase controllable_part(const Matrix& A, const Matrix& B, double tolerance, 
   out.T = Matrix::Identity(n, n);
   out.tolerance = tolerance;
   Matrix a = A, step = B;
-  double size = size_b;
+  double size = size_b, grown = 64.0 * static_cast<double>(n) * std::numeric_limits<double>::epsilon();
   while (out.rank < n && step.size() > 0) {
     // The rows of `step` still to be reached; its range joins the subspace, its left null space is left over.
     const Svd of = svd(step);
+    // A weak step leaves its directions uncertain, and the steps after it inherit that.
+    out.tolerance = std::max(tolerance, std::min(grown, weakest_step));
     const auto rank = size > 0.0 ? (of.s.array() > out.tolerance * size).count() : 0;
     if (size > 0.0) {
       if (rank > 0) out.smallest_kept = std::min(out.smallest_kept, of.s(rank - 1) / size);
       if (rank < of.s.size()) out.largest_dropped = std::max(out.largest_dropped, of.s(rank) / size);
     }
     if (rank == 0) break;
+    grown *= size / of.s(rank - 1);
     const auto from = out.rank, left = n - from;
     out.T.rightCols(left) *= of.U;
     a.bottomRows(left) = of.U.transpose() * a.bottomRows(left);
