@@ -24,7 +24,7 @@ global failed largest
 failed = 0; largest = struct();
 function expect(name, at, err, allowed)
   global failed largest
-  ratio = err / allowed;
+  if err == 0 ratio = 0; else ratio = err / allowed; end
   if ! (ratio <= 1)
     failed++;
     printf("system %d: %s: error %.3g, allowed %.3g\n", at, name, err, allowed);
@@ -54,12 +54,14 @@ while ischar(text = fgetl(file))
   p = get("poles");
   expect("poles", at, apart(complex(p(:,1), p(:,2)), pole(sys)), 10 * n * eps * norm(A) * cond(V));
 
-  # A system whose transfer function has lower rank than it could: what is a zero of it depends on the tolerance.
+  # A transfer function of lower rank than it could have: what is a zero of it depends on the tolerance. So it does for the
+  # modes of a pencil that is not square, where SLICOT's default takes a hidden mode for none; those are counted by
+  # construction in against_scipy.py.
   z = get("invariant_zeros");
   s = 0.3 + 0.4i;
   theirs = zero(sys);
   G = C * ((s * eye(n) - A) \ B) + D;
-  if norm(G) > 1e-12 * norm(C) * norm(B)
+  if norm(G) > 1e-12 * norm(C) * norm(B) && (rows(D) == columns(D) || ! any(line.parts(2:4)))
     expect("zeros_count", at, abs(rows(z) - numel(theirs)), 0.5);
     if rows(z) == numel(theirs) && ! isempty(theirs)
       # Condition of the zero, from the null vectors of the pencil there; of a pencil that is not square only the residual.
