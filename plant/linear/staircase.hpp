@@ -7,7 +7,7 @@
 // (observable: the others span the unobservable one). blocks: the ranks of the steps, falling. A singular value is zero
 // below tolerance ||B||_F in the first step and tolerance ||A||_F in the next ones: the rank of B is not the unit's doing.
 // Rounding that has grown beyond it over weak steps (64 n eps over the product of their relative sizes, at most 1e-8) takes
-// the tolerance's place: past that a coupling can't be told from none.
+// the tolerance's place: past that a coupling can't be told from none. A Newton step on the subspace then mends it.
 // Source: P. Van Dooren, "The generalized eigenstructure problem in linear system theory", IEEE TAC 26, 1981.
 #pragma once
 

@@ -110,19 +110,19 @@ def ranks(line, given, values):
 def zeros(line, given):
     A, B, C, D = given
     n, p, m = len(A), *D.shape
-    if p != m:
-        # A random pencil that is not square loses rank at the modes its longer side can't help: those that the inputs
-        # can't move when there are more inputs, those that the outputs don't show when there are more outputs.
-        _, c, o, neither = line["parts"]
-        if line["parts"][0]:
-            expect("zeros: count, not square", line["at"], float(len(matrix(line["invariant_zeros"])) != (o if m > p else c) + neither), 0.0)
-        expect("transmission zeros, not square", line["at"], float(len(matrix(line["transmission_zeros"]))), 0.0)
-        return
     pencil = np.block([[A, B], [C, D]])
     mass = np.zeros_like(pencil)
     mass[:n, :n] = np.eye(n)
     # Singular at any s (a transfer function of lower rank): what QZ says of such a pencil means nothing.
     if la.svdvals(pencil - (0.3 + 0.4j) * mass)[-1] < 1e-12 * la.norm(pencil):
+        return
+    if p != m:
+        # A random pencil that is not square loses rank at the modes its longer side can't help: those that the inputs
+        # can't move when there are more inputs, those that the outputs don't show when there are more outputs.
+        _, c, o, neither = line["parts"]
+        hidden = (o if m > p else c) + neither
+        expect("zeros: count, not square", line["at"], float(len(matrix(line["invariant_zeros"])) != hidden), 0.0)
+        expect("transmission zeros, not square", line["at"], float(len(matrix(line["transmission_zeros"]))), 0.0)
         return
     ours = complex_list(line["invariant_zeros"])
     with np.errstate(all="ignore"):
