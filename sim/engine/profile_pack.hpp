@@ -10,10 +10,10 @@ namespace slipbench {
 template <class Real>
 class ProfilePack {
  public:
-  // `get(setup)` gives one lane's profile.
-  template <class Get>
-  ProfilePack(Cases cases, Get get) {
-    for (std::size_t lane = 0; lane < profiles_.size(); ++lane) profiles_[lane] = get(*cases[lane]);
+  // `get(*items[lane])` gives one lane's profile.
+  template <class Items, class Get>
+  ProfilePack(const Items& items, Get get) {
+    for (std::size_t lane = 0; lane < profiles_.size(); ++lane) profiles_[lane] = get(*items[lane]);
     seek(0.0);
   }
 

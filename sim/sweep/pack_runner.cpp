@@ -6,6 +6,7 @@
 #include "sim/engine/lanes/run_pack.hpp"
 #include "sim/scenario/input_error.hpp"
 #include "sim/scenario/nearest.hpp"
+#include "sim/score/pack_score.hpp"
 #include "sim/sweep/case_run.hpp"
 
 namespace slipbench {
@@ -57,21 +58,16 @@ void PackRunner::run_alone(PackCase& one, std::uint32_t noise_run, const std::st
 }
 
 void PackRunner::run_together(const std::vector<Ready*>& pack) {
-  std::vector<EstimatorScore> estimators;
-  std::vector<DriveScore> drives;
-  estimators.reserve(pack.size()), drives.reserve(pack.size());
+  std::vector<ScoreBasis> bases;
   std::vector<const RunSetup*> setups;
-  std::vector<std::vector<RunObserver*>> observers;
   for (const Ready* ready : pack) {
-    const ScoreBasis basis = score_basis(ready->one->scenario);
-    estimators.emplace_back(basis);
-    drives.emplace_back(basis);
+    bases.push_back(score_basis(ready->one->scenario));
     setups.push_back(&ready->setup);
-    observers.push_back({&estimators.back(), &drives.back()});
   }
-  const std::vector<RunOutcome> outcomes = run_pack(*set_, setups, observers, keep_going_);
+  PackScore score(bases, pack.front()->one->scenario.estimators.size(), keep_going_);
+  const std::vector<RunOutcome> outcomes = run_pack(*set_, setups, score);
   for (std::size_t i = 0; i < pack.size(); ++i) {
-    fill_row(*pack[i]->one->row, pack[i]->one->scenario, outcomes[i], estimators[i], drives[i]);
+    fill_row(*pack[i]->one->row, pack[i]->one->scenario, outcomes[i], score.estimators(i), score.drive(i));
     simulated_s_ += outcomes[i].simulated_s;
   }
   in_lanes_ += pack.size();
