@@ -2,6 +2,7 @@
 #pragma once
 
 #include <array>
+#include <limits>
 
 #include "sim/engine/setup.hpp"
 
@@ -21,6 +22,11 @@ class ProfilePack {
   const Line<Real>& line_at(double t) {
     if (!(t >= from_ && t < until_)) seek(t);
     return line_;
+  }
+  // From when until when, around the time last asked for, every lane stands still; no time at all where one moves.
+  [[nodiscard]] std::array<double, 2> level() const {
+    constexpr double never = std::numeric_limits<double>::infinity();
+    return any(line_.slope != Real(0.0)) ? std::array{never, -never} : std::array{from_, until_};
   }
 
  private:
