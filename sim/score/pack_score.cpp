@@ -48,8 +48,7 @@ struct PackScore::Four {
   }
 };
 
-PackScore::PackScore(const std::vector<ScoreBasis>& bases, std::size_t estimators, std::function<bool()> keep_going)
-    : keep_going_(std::move(keep_going)) {
+PackScore::PackScore(const std::vector<ScoreBasis>& bases, std::size_t estimators) {
   for (std::size_t first = 0; first < bases.size(); first += Pack::width)
     fours_.emplace_back(from(bases, first), std::min(Pack::width, bases.size() - first), estimators);
 }

@@ -5,7 +5,6 @@
 // of four. Lanes that were lost go on being reckoned; what they are then worth means nothing.
 #pragma once
 
-#include <functional>
 #include <vector>
 
 #include "sim/engine/lanes/run_pack.hpp"
@@ -16,14 +15,10 @@ namespace slipbench {
 
 class PackScore : public PackObserver {
  public:
-  // One basis a case of the pack, in order. `estimators`: how many each has. `keep_going` is asked now and then; false stops the pack.
-  PackScore(const std::vector<ScoreBasis>& bases, std::size_t estimators, std::function<bool()> keep_going = {});
+  // One basis a case of the pack, in order. `estimators`: how many each has.
+  PackScore(const std::vector<ScoreBasis>& bases, std::size_t estimators);
   ~PackScore() override;
   void control_tick(const PackView& view) override;
-  [[nodiscard]] bool keep_going(std::int64_t tick) override {
-    constexpr std::int64_t ticks_between = 64;
-    return !keep_going_ || tick % ticks_between != 0 || keep_going_();
-  }
 
   [[nodiscard]] std::vector<EstimatorFigures> estimators(std::size_t lane) const;
   [[nodiscard]] DriveFigures drive(std::size_t lane) const;
@@ -31,7 +26,6 @@ class PackScore : public PackObserver {
  private:
   struct Four;  // lanes
   std::vector<Four> fours_;
-  std::function<bool()> keep_going_;
 };
 
 }  // namespace slipbench
