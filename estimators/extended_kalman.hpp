@@ -142,6 +142,7 @@ struct ExtendedKalman {
     const Real wild = select(fabs(s.x.speed) > c.lost_speed, one, zero);
     const Real astray = select(s.surprise > Real(lost_surprise), one, zero);
     const MaskOf<Real> lost = wild + astray > zero;
+    if (surely_none(lost)) return;
     s.x = select(lost, KalmanVector<Real>{current, {zero, zero}, zero, zero}, s.x);
     s.surprise = select(lost, zero, s.surprise);
     for (std::size_t r = 0; r < 6; ++r) {
@@ -157,12 +158,17 @@ struct ExtendedKalman {
     const BelievedMachine<Real>& m = c.model.machine;
     const Real half(0.5), one(1.0);
     const MaskOf<Real> first = s.started < half;
-    KalmanVector<Real> x = s.x;
-    Symmetric6<Real> P = s.P;
-    predict(x, P, Vec2<Real>{sample.u_alpha, sample.u_beta}, c);
-    s.x = select(first, s.x, x);
-    for (std::size_t r = 0; r < 6; ++r) {
-      for (std::size_t n = r; n < 6; ++n) s.P.set(r, n, select(first, s.P(r, n), P(r, n)));
+    const Vec2<Real> u{sample.u_alpha, sample.u_beta};
+    if (surely_none(first)) {
+      predict(s.x, s.P, u, c);
+    } else {
+      KalmanVector<Real> x = s.x;
+      Symmetric6<Real> P = s.P;
+      predict(x, P, u, c);
+      s.x = select(first, s.x, x);
+      for (std::size_t r = 0; r < 6; ++r) {
+        for (std::size_t n = r; n < 6; ++n) s.P.set(r, n, select(first, s.P(r, n), P(r, n)));
+      }
     }
     const Vec2<Real> i{sample.i_alpha, sample.i_beta};
     const Innovation<Real> in = correct(s.x, s.P, i, c);

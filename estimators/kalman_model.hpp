@@ -142,7 +142,9 @@ Symmetric6<Real> sandwich(const KalmanJacobian<Real>& F, const Symmetric6<Real>&
 template <class Real>
 void bound_variance(Symmetric6<Real>& P, std::size_t n, const Real& most) {
   const Real tiny(1e-30), one(1.0);
-  const Real scale = select(P(n, n) > most, sqrt(most / max(P(n, n), tiny)), one);
+  const MaskOf<Real> beyond = P(n, n) > most;
+  if (surely_none(beyond)) return;
+  const Real scale = select(beyond, sqrt(most / max(P(n, n), tiny)), one);
   for (std::size_t k = 0; k < 6; ++k) P.set(n, k, scale * P(n, k));
   P.set(n, n, scale * P(n, n));
 }

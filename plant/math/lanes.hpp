@@ -105,6 +105,22 @@ SLIPBENCH_INLINE R floor_of(const R& x) {
   return size < whole_from ? down : x;
 }
 
+template <class Isa, class W = typename Registers<Isa>::Whole>
+SLIPBENCH_INLINE bool any_of(const W& mask) {
+#if defined(__SSE2__)
+  if constexpr (Isa::register_bytes == 16) return _mm_movemask_pd((__m128d)mask) != 0;
+#endif
+#if defined(__AVX__)
+  if constexpr (Isa::register_bytes == 32) return _mm256_movemask_pd((__m256d)mask) != 0;
+#endif
+#if defined(__AVX512F__)
+  if constexpr (Isa::register_bytes == 64) return _mm512_test_epi64_mask((__m512i)mask, (__m512i)mask) != 0;
+#endif
+  std::int64_t bits = 0;
+  for (std::size_t i = 0; i < Registers<Isa>::lanes; ++i) bits |= mask[i];
+  return bits != 0;
+}
+
 }  // namespace detail
 
 template <class Isa, std::size_t W>
@@ -221,10 +237,9 @@ struct LanesMask {
   friend SLIPBENCH_INLINE bool any(const LanesMask& mask) {
     Register together = mask.part[0];
     for (std::size_t r = 1; r < registers; ++r) together |= mask.part[r];
-    std::int64_t bits = 0;
-    for (std::size_t i = 0; i < detail::Registers<Isa>::lanes; ++i) bits |= together[i];
-    return bits != 0;
+    return detail::any_of<Isa>(together);
   }
+  friend SLIPBENCH_INLINE bool surely_none(const LanesMask& mask) { return !any(mask); }
   template <class F, class... Operand>
   SLIPBENCH_INLINE static LanesMask each(F f, const Operand&... x) {
     return [&]<std::size_t... I>(std::index_sequence<I...>) __attribute__((always_inline)) {

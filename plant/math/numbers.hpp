@@ -48,6 +48,14 @@ inline bool lane_of(bool mask, std::size_t) { return mask; }
 inline void set_lane(double& x, std::size_t, double value) { x = value; }
 inline bool any(bool mask) { return mask; }
 
+// True where it is known that a select by this mask takes `no` in every lane: then a step may leave the `yes` arm out, to the
+// same bits. A number type that cannot tell, such as a symbol, keeps the select.
+template <class Mask>
+constexpr bool surely_none(const Mask&) {
+  return false;
+}
+inline bool surely_none(bool mask) { return !mask; }
+
 inline double select(bool mask, double yes, double no) { return mask ? yes : no; }
 inline float select(bool mask, float yes, float no) { return mask ? yes : no; }
 inline double sqrt(double x) { return std::sqrt(x); }

@@ -8,32 +8,48 @@
 //   step(n)         from n to n + 1
 #pragma once
 
+#include <limits>
+
 #include "sim/engine/setup.hpp"
 
 namespace slipbench {
 
+class RunClock {
+ public:
+  // For at most so many control ticks more; true: the run has ended.
+  template <class Host>
+  bool go(const RunShape& shape, Host&& host, std::int64_t ticks) {
+    for (;; ++n_, --to_control_, --to_trace_) {
+      const bool control = to_control_ == 0, trace = to_trace_ == 0;
+      if (control) {
+        if (ticks-- == 0) return false;
+        to_control_ = shape.steps_per_control;
+        host.act(++k_);
+      }
+      if (trace) {
+        to_trace_ = shape.steps_per_trace;
+        ++rows_;
+      }
+      if (control || trace) host.look(n_);
+      if (control && !host.tell_tick(k_)) return true;
+      if (trace) host.tell_row(rows_);
+      if (n_ == shape.steps) return true;
+      host.step(n_);
+    }
+  }
+  [[nodiscard]] std::int64_t step() const { return n_; }  // where the run stands
+
+ private:
+  // Counted down, since dividing costs as much as a stage.
+  std::int64_t k_ = -1, rows_ = -1, to_control_ = 0, to_trace_ = 0, n_ = 0;
+};
+
 // Returns the plant step at which the run ended.
 template <class Host>
 std::int64_t run_clock(const RunShape& shape, Host&& host) {
-  // Counted down, since dividing costs as much as a stage.
-  std::int64_t k = -1, rows = -1, to_control = 0, to_trace = 0, n = 0;
-  for (;; ++n, --to_control, --to_trace) {
-    const bool control = to_control == 0, trace = to_trace == 0;
-    if (control) {
-      to_control = shape.steps_per_control;
-      host.act(++k);
-    }
-    if (trace) {
-      to_trace = shape.steps_per_trace;
-      ++rows;
-    }
-    if (control || trace) host.look(n);
-    if (control && !host.tell_tick(k)) break;
-    if (trace) host.tell_row(rows);
-    if (n == shape.steps) break;
-    host.step(n);
-  }
-  return n;
+  RunClock clock;
+  clock.go(shape, host, std::numeric_limits<std::int64_t>::max());
+  return clock.step();
 }
 
 }  // namespace slipbench

@@ -117,6 +117,7 @@ class Plant {
                                                   NoiseStream<Real>(NoiseChannel("process_current_beta"))},
       flux_noise_{NoiseStream<Real>(NoiseChannel("process_flux_alpha")),
                   NoiseStream<Real>(NoiseChannel("process_flux_beta"))};
+  double still_from_ = 0.0, still_until_ = 0.0;  // no factor moves between these times
   bool lines_, load_walks_, current_moves_, flux_moves_;
 };
 

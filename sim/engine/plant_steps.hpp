@@ -61,9 +61,13 @@ void Plant<Real>::disturb(std::int64_t tick) {
 
 template <class Real>
 void Plant<Real>::set_drift(double t, double on_line_at) {
+  if (on_line_at >= still_from_ && on_line_at < still_until_) return;
+  still_from_ = -std::numeric_limits<double>::infinity(), still_until_ = -still_from_;
   bool moved = false;
   for (auto& drift : drifts_) {
     const Real factor = drift.factor.line_at(on_line_at).at(t);
+    const auto [from, until] = drift.factor.level();
+    still_from_ = max(still_from_, from), still_until_ = min(still_until_, until);
     moved = moved || any(factor != drift.now);
     drift.now = factor;
   }

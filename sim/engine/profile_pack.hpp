@@ -2,6 +2,7 @@
 #pragma once
 
 #include <array>
+#include <limits>
 
 #include "sim/engine/setup.hpp"
 
@@ -10,10 +11,10 @@ namespace slipbench {
 template <class Real>
 class ProfilePack {
  public:
-  // `get(setup)` gives one lane's profile.
-  template <class Get>
-  ProfilePack(Cases cases, Get get) {
-    for (std::size_t lane = 0; lane < profiles_.size(); ++lane) profiles_[lane] = get(*cases[lane]);
+  // `get(*items[lane])` gives one lane's profile.
+  template <class Items, class Get>
+  ProfilePack(const Items& items, Get get) {
+    for (std::size_t lane = 0; lane < profiles_.size(); ++lane) profiles_[lane] = get(*items[lane]);
     seek(0.0);
   }
 
@@ -21,6 +22,11 @@ class ProfilePack {
   const Line<Real>& line_at(double t) {
     if (!(t >= from_ && t < until_)) seek(t);
     return line_;
+  }
+  // From when until when, around the time last asked for, every lane stands still; no time at all where one moves.
+  [[nodiscard]] std::array<double, 2> level() const {
+    constexpr double never = std::numeric_limits<double>::infinity();
+    return any(line_.slope != Real(0.0)) ? std::array{never, -never} : std::array{from_, until_};
   }
 
  private:

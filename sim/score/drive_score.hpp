@@ -14,31 +14,21 @@
 #pragma once
 
 #include "sim/engine/observer.hpp"
-#include "sim/score/basis.hpp"
-#include "sim/score/figures.hpp"
+#include "sim/score/drive_tally.hpp"
 
 namespace slipbench {
 
 class DriveScore : public RunObserver {
  public:
-  explicit DriveScore(ScoreBasis basis) : basis_(std::move(basis)) {}
+  explicit DriveScore(const ScoreBasis& basis) : DriveScore(&basis) {}
   void control_tick(const TickView& view) override;
-  [[nodiscard]] DriveFigures figures() const;
+  [[nodiscard]] DriveFigures figures() const { return tally_.figures(0); }
 
  private:
-  struct Watch {  // one load step
-    double start_s = 0, reference_rpm = 0, start_rpm = 0, dip_rpm = 0;
-    bool open = false;
-    Figure recovered_at_s;
-  };
-  void watch_load_steps(const PlantRow& plant, double time_s);
-  [[nodiscard]] double copper_loss(const PlantRow& plant, double time_s);
+  explicit DriveScore(const ScoreBasis* alone) : limits_({&alone, 1}), tally_({&alone, 1}) {}
 
-  ScoreBasis basis_;
-  std::vector<Watch> watches_;
-  std::size_t next_step_ = 0;
-  double count_ = 0, tracking_square_ = 0, clipped_ = 0, loss_sum_ = 0, peak_square_ = 0;
-  double torque_mean_ = 0, torque_square_ = 0;  // running mean and sum of squares about it (Welford)
+  ScoreLimits<double> limits_;
+  DriveTally<double> tally_;
 };
 
 }  // namespace slipbench

@@ -13,14 +13,13 @@
 #include <vector>
 
 #include "sim/engine/observer.hpp"
-#include "sim/score/basis.hpp"
-#include "sim/score/figures.hpp"
+#include "sim/score/estimator_tally.hpp"
 
 namespace slipbench {
 
 class EstimatorScore : public RunObserver {
  public:
-  explicit EstimatorScore(ScoreBasis basis) : basis_(std::move(basis)) {}
+  explicit EstimatorScore(const ScoreBasis& basis);
   void begin(const RunInfo& info) override { tallies_.assign(info.estimator_names.size(), {}); }
   void control_tick(const TickView& view) override;
 
@@ -28,15 +27,8 @@ class EstimatorScore : public RunObserver {
   [[nodiscard]] std::vector<EstimatorFigures> figures() const;
 
  private:
-  struct Tally {
-    double count = 0, speed_sum = 0, speed_square = 0, speed_max = 0, flux_square = 0, torque_square = 0;
-    double angle_count = 0, angle_square = 0;
-    Figure lost_at, off_since, settled_at;
-  };
-  void judge(Tally& tally, const PlantRow& plant, const Estimate<double>& estimate, double time_s) const;
-
-  ScoreBasis basis_;
-  std::vector<Tally> tallies_;
+  ScoreLimits<double> limits_;
+  std::vector<EstimatorTally<double>> tallies_;
 };
 
 }  // namespace slipbench

@@ -1,5 +1,8 @@
 #include "sim/sweep/case_run.hpp"
 
+#include "sim/score/drive_score.hpp"
+#include "sim/score/estimator_score.hpp"
+
 namespace slipbench {
 
 std::vector<std::string> figure_columns(const Scenario& scenario) {
@@ -11,21 +14,19 @@ std::vector<std::string> figure_columns(const Scenario& scenario) {
   return names;
 }
 
-void fill_row(ResultRow& row, const Scenario& scenario, const RunOutcome& outcome, const EstimatorScore& estimators,
-              const DriveScore& drive) {
+void fill_row(ResultRow& row, const Scenario& scenario, const RunOutcome& outcome,
+              const std::vector<EstimatorFigures>& estimators, const DriveFigures& drive) {
   row.status = "done";
   row.message.clear();
   row.figures.clear();
-  const std::vector<EstimatorFigures> all = estimators.figures();
-  for (std::size_t i = 0; i < all.size(); ++i) {
-    if (all[i].lost_at_s && row.message.empty()) {
+  for (std::size_t i = 0; i < estimators.size(); ++i) {
+    if (estimators[i].lost_at_s && row.message.empty()) {
       row.status = "lost";
       row.message = scenario.estimators[i].name;
     }
-    for (const auto& entry : estimator_figures) row.figures.push_back(all[i].*entry.value);
+    for (const auto& entry : estimator_figures) row.figures.push_back(estimators[i].*entry.value);
   }
-  const DriveFigures figures = drive.figures();
-  for (const auto& entry : drive_figures) row.figures.push_back(figures.*entry.value);
+  for (const auto& entry : drive_figures) row.figures.push_back(drive.*entry.value);
   if (!outcome.diverged) return;
   row.status = "diverged";
   row.message = outcome.diverged_what + " at " + std::to_string(outcome.diverged_at_s) + " s";
@@ -47,7 +48,7 @@ void run_case(ResultRow& row, const Scenario& scenario, std::uint32_t run, const
   options.noise_run = run;
   if (keep_going) options.keep_going = [&](double) { return keep_going(); };
   const RunOutcome outcome = simulate(scenario, observers, options);
-  fill_row(row, scenario, outcome, estimators, drive);
+  fill_row(row, scenario, outcome, estimators.figures(), drive.figures());
 }
 
 }  // namespace slipbench

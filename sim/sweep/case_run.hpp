@@ -6,8 +6,7 @@
 
 #include "sim/engine/simulate.hpp"
 #include "sim/scenario/scenario.hpp"
-#include "sim/score/drive_score.hpp"
-#include "sim/score/estimator_score.hpp"
+#include "sim/score/figures.hpp"
 #include "sim/sweep/store.hpp"
 
 namespace slipbench {
@@ -16,8 +15,8 @@ namespace slipbench {
 std::vector<std::string> figure_columns(const Scenario& scenario);
 
 // Fills status, message and figures. A diverged run has no figures: they would be those of another window.
-void fill_row(ResultRow& row, const Scenario& scenario, const RunOutcome& outcome, const EstimatorScore& estimators,
-              const DriveScore& drive);
+void fill_row(ResultRow& row, const Scenario& scenario, const RunOutcome& outcome,
+              const std::vector<EstimatorFigures>& estimators, const DriveFigures& drive);
 // The same for a case that could not be set up.
 void fill_refused(ResultRow& row, const std::string& why, std::size_t figures);
 

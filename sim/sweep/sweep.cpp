@@ -7,6 +7,7 @@
 #include <deque>
 #include <exception>
 #include <filesystem>
+#include <memory>
 #include <mutex>
 #include <thread>
 
@@ -63,8 +64,9 @@ class Units {
 // Finished rows on their way from the workers to the store.
 class Finished {
  public:
-  void put(std::vector<ResultRow> rows) {
+  void put(std::vector<ResultRow> rows, const RanHow& how) {
     std::unique_lock lock(mutex_);
+    how_.add(how);
     room_.wait(lock, [&] { return rows_.size() < most_waiting_rows || closed_; });
     for (ResultRow& row : rows) rows_.push_back(std::move(row));
   }
@@ -92,6 +94,10 @@ class Finished {
     const std::lock_guard lock(mutex_);
     return workers_ == 0 && rows_.empty();
   }
+  [[nodiscard]] RanHow how() {
+    const std::lock_guard lock(mutex_);
+    return how_;
+  }
   [[nodiscard]] std::exception_ptr error() {
     const std::lock_guard lock(mutex_);
     return error_;
@@ -101,73 +107,45 @@ class Finished {
   std::mutex mutex_;
   std::condition_variable room_, ended_;
   std::deque<ResultRow> rows_;
+  RanHow how_;
   std::exception_ptr error_;
   unsigned workers_ = 0;
   bool closed_ = false;
 };
 
-// Finds the next unit that is not in the store yet. The store is asked from the main thread only, so missing units are listed by it,
-// a stretch at a time.
-class Queue {
- public:
-  void put(const std::vector<Unit>& units) {
-    const std::lock_guard lock(mutex_);
-    units_.insert(units_.end(), units.begin(), units.end());
-    changed_.notify_all();
-  }
-  void finish() {
-    const std::lock_guard lock(mutex_);
-    finished_ = true;
-    changed_.notify_all();
-  }
-  // False when there is no more.
-  bool next(Unit& unit) {
-    std::unique_lock lock(mutex_);
-    changed_.wait(lock, [&] { return finished_ || !units_.empty(); });
-    if (units_.empty()) return false;
-    unit = units_.front();
-    units_.pop_front();
-    return true;
-  }
-  void clear() {
-    const std::lock_guard lock(mutex_);
-    units_.clear();
-    finished_ = true;
-    changed_.notify_all();
-  }
-  [[nodiscard]] std::size_t size() {
-    const std::lock_guard lock(mutex_);
-    return units_.size();
-  }
-
- private:
-  std::mutex mutex_;
-  std::condition_variable changed_;
-  std::deque<Unit> units_;
-  bool finished_ = false;
+// What all workers share of one sweep.
+struct Workshop {
+  const SweepPlan& plan;
+  const ScenarioFile& file;
+  const PackRunner& runner;
+  Work& work;
+  Finished& finished;
+  std::size_t keys, figures;
+  std::deque<CaseMaker> makers;  // one a worker
 };
 
-// Runs one unit: its cases are read, grouped into packs by the runner, and come back as rows.
-std::vector<ResultRow> run_unit(const SweepPlan& plan, const ScenarioFile& file, CaseMaker& maker, PackRunner& runner,
-                                const Unit& unit, std::size_t keys, std::size_t figures) {
-  std::vector<ResultRow> rows(unit.last - unit.first);
+// Reads the cases of one unit and adds them to the work; the last of them sends the unit's rows to the store.
+void begin_unit(Workshop& shop, const Unit& unit, CaseMaker& maker) {
+  const auto rows = std::make_shared<std::vector<ResultRow>>(unit.last - unit.first);
   std::vector<PackCase> cases;
-  cases.reserve(rows.size());
+  cases.reserve(rows->size());
   for (std::uint64_t k = unit.first; k < unit.last; ++k) {
-    ResultRow& row = rows[k - unit.first];
+    ResultRow& row = (*rows)[k - unit.first];
     row.case_number = k;
     row.run = unit.run;
     const std::vector<Override> overrides = maker.overrides(k);
-    for (std::size_t i = overrides.size() - keys; i < overrides.size(); ++i) row.values.push_back(overrides[i].value);
+    for (std::size_t i = overrides.size() - shop.keys; i < overrides.size(); ++i)
+      row.values.push_back(overrides[i].value);
     try {
-      cases.push_back({file.read(overrides, plan.seed), &row});
+      cases.push_back({shop.file.read(overrides, shop.plan.seed), &row});
     } catch (const InputError& error) {
-      fill_refused(row, error.message(), figures);
+      fill_refused(row, error.message(), shop.figures);
     }
   }
-  runner.run(cases, unit.run);
-  for (ResultRow& row : rows) row.figures.resize(figures);
-  return rows;
+  shop.runner.start(std::move(cases), unit.run, shop.work, [&shop, rows](const RanHow& how) {
+    for (ResultRow& row : *rows) row.figures.resize(shop.figures);
+    shop.finished.put(std::move(*rows), how);
+  });
 }
 
 void count(SweepOutcome& outcome, const std::vector<ResultRow>& rows) {
@@ -228,14 +206,14 @@ SweepOutcome run_sweep(const SweepPlan& plan, Store& store, const SweepOptions& 
   SweepOutcome outcome;
   outcome.threads = options.threads > 0 ? options.threads : std::max(1u, std::thread::hardware_concurrency());
 
-  Queue queue;
+  Work work;
   Finished finished;
   std::atomic<bool> stop{false};
-  std::vector<PackRunner> runners;
-  runners.reserve(outcome.threads);
-  for (unsigned t = 0; t < outcome.threads; ++t) runners.emplace_back(options.isa, [&] { return !stop.load(); });
-  outcome.isa = runners.front().isa();
-  outcome.lanes = runners.front().lanes();
+  const PackRunner runner(options.isa, [&] { return !stop.load(); });
+  outcome.isa = runner.isa();
+  outcome.lanes = runner.lanes();
+  Workshop shop{plan, file, runner, work, finished, keys, figures, {}};
+  for (unsigned t = 0; t < outcome.threads; ++t) shop.makers.emplace_back(plan);
   finished.enter(outcome.threads);
   std::vector<std::thread> workers;
   const auto start = [&] {
@@ -243,10 +221,7 @@ SweepOutcome run_sweep(const SweepPlan& plan, Store& store, const SweepOptions& 
       workers.emplace_back([&, t] {
         std::exception_ptr error;
         try {
-          CaseMaker maker(plan);
-          for (Unit unit; !stop.load() && queue.next(unit);) {
-            std::vector<ResultRow> rows = run_unit(plan, file, maker, runners[t], unit, keys, figures);
-            if (!stop.load()) finished.put(std::move(rows));  // a unit that was stopped half-way is not kept
+          while (!stop.load() && work.run_one(t)) {
           }
         } catch (...) {
           error = std::current_exception();
@@ -257,7 +232,7 @@ SweepOutcome run_sweep(const SweepPlan& plan, Store& store, const SweepOptions& 
   };
   const auto halt = [&] {
     stop = true;
-    queue.clear();
+    work.close();
     finished.close();
     for (std::thread& worker : workers) worker.join();
     workers.clear();
@@ -269,15 +244,18 @@ SweepOutcome run_sweep(const SweepPlan& plan, Store& store, const SweepOptions& 
     std::uint64_t asked = 0;
     bool wanted = true;
     while (wanted) {
-      while (asked < units.count() && queue.size() < units_ahead * outcome.threads) {
+      while (asked < units.count() && work.waiting_new() < units_ahead * outcome.threads) {
         const Unit unit = units.at(asked++);
         const std::uint64_t there = store.rows_between(unit.run, unit.first, unit.last);
         if (there == unit.last - unit.first)
           outcome.resumed += there;
         else
-          queue.put({unit});
+          work.add_new([&shop, unit](std::size_t worker) {
+            begin_unit(shop, unit, shop.makers[worker]);
+            return false;
+          });
       }
-      if (asked == units.count()) queue.finish();
+      if (asked == units.count()) work.finish();
       const std::vector<ResultRow> rows = finished.take(time_between_batches);
       store.write(rows);
       count(outcome, rows);
@@ -299,11 +277,10 @@ SweepOutcome run_sweep(const SweepPlan& plan, Store& store, const SweepOptions& 
   const std::vector<ResultRow> late = finished.take(std::chrono::milliseconds(0));
   store.write(late);
   count(outcome, late);
-  for (const PackRunner& runner : runners) {
-    outcome.in_lanes += runner.in_lanes();
-    outcome.simulated_s += runner.simulated_s();
-    for (const auto& [reason, rows] : runner.not_in_lanes()) outcome.not_in_lanes[reason] += rows;
-  }
+  const RanHow how = finished.how();
+  outcome.in_lanes = how.in_lanes;
+  outcome.simulated_s = how.simulated_s;
+  outcome.not_in_lanes = how.not_in_lanes;
   outcome.wall_s = std::chrono::duration<double>(Clock::now() - begun).count();
   return outcome;
 }

@@ -84,7 +84,7 @@ class Points {
         fill_refused(rows[i], refusal.message(), figures_);
       }
     }
-    runner.run(cases, noise);
+    runner.run(std::move(cases), noise);
     for (std::size_t i = first; i < last; ++i) rows[i].figures.resize(figures_);
   }
 

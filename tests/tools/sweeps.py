@@ -8,69 +8,10 @@ import tempfile
 
 from command import PATIENCE_S, SLIPBENCH
 
-MACHINE = """title = "invented machine"
-[machine]
-pole_pairs = 2
-stator_resistance_ohm = 1.6
-rotor_resistance_ohm = 1.25
-stator_leakage_H = 6.2e-3
-rotor_leakage_H = 6.2e-3
-magnetizing_inductance_H = 0.172
-rated_power_W = 4000
-rated_line_voltage_V = 400.0
-rated_current_A = 7.85
-rated_frequency_Hz = 50.0
-rated_speed_rpm = 1440.0
-rated_torque_Nm = 26.5
-"""
-
-SCENARIO = """title = "Short drive, data invented"
-seed = 5
-
-[run]
-duration_s = 0.02
-plant_step_s = 50e-6
-control_period_s = 100e-6
-trace_period_s = 1e-3
-start = "magnetised"
-
-[machine]
-file = "machine.toml"
-
-[shaft]
-inertia_kgm2 = 0.02
-
-[[load]]
-kind = "constant_torque"
-torque_Nm = 2.0
-
-[supply]
-kind = "inverter"
-dc_link_V = 560.0
-switching_frequency_Hz = 10e3
-
-[sensors.current]
-noise_A = 0.1
-
-[sensors.dc_link]
-
-[sensors.speed]
-kind = "ideal"
-
-[reference]
-speed_rpm = [[0.0, 0.0], [0.02, 100.0]]
-
-[controller]
-kind = "rotor_flux_oriented"
-
-[[estimator]]
-name = "obs"
-kind = "luenberger"
-
-[[estimator]]
-name = "ekf"
-kind = "extended_kalman"
-"""
+# The drive of tests/sim/sweep.
+OWN = pathlib.Path(__file__).resolve().parent.parent / "sim" / "sweep"
+MACHINE = (OWN / "machine.toml").read_text()
+SCENARIO = (OWN / "short_drive.toml").read_text()
 
 
 def drawn(count, runs=1):

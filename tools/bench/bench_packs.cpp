@@ -13,6 +13,7 @@
 #include "sim/scenario/read.hpp"
 #include "sim/score/drive_score.hpp"
 #include "sim/score/estimator_score.hpp"
+#include "sim/score/pack_score.hpp"
 
 namespace {
 
@@ -60,21 +61,16 @@ double alone(const Scenario& s) {
 double in_pack(const LaneSet& set, const Scenario* first, bool scored) {
   const double begun = now();
   std::vector<RunSetup> setups;
-  std::vector<Scored> scores;
+  std::vector<ScoreBasis> bases;
   std::vector<const RunSetup*> pack;
-  std::vector<std::vector<RunObserver*>> observers;
-  scores.reserve(set.width());
   for (std::size_t i = 0; i < set.width(); ++i) {
     setups.push_back(ready_run(first[i]));
-    scores.emplace_back(first[i]);
-    observers.push_back({&scores[i].estimators, &scores[i].drive});
+    bases.push_back(score_basis(first[i]));
   }
   for (const auto& setup : setups) pack.push_back(&setup);
+  PackScore score(bases, first->estimators.size());
   PackObserver nobody;
-  if (scored)
-    run_pack(set, pack, observers);
-  else
-    run_pack(set, pack, nobody);
+  run_pack(set, pack, scored ? static_cast<PackObserver&>(score) : nobody);
   return (now() - begun) / static_cast<double>(set.width());
 }
 

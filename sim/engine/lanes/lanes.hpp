@@ -14,7 +14,7 @@
 
 namespace slipbench {
 
-enum class LanesWork : std::int32_t { width, machine_steps, function, run, settle };
+enum class LanesWork : std::int32_t { width, machine_steps, function, run, drop, settle };
 enum class LanesFunction : std::int32_t {
   sincos_sin,
   sincos_cos,

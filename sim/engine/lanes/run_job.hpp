@@ -1,5 +1,5 @@
 // What crosses the C entry for a whole run: W setups go in, every control tick of the pack comes out through plain function
-// pointers. Nothing may throw through them.
+// pointers. Nothing may throw through them. A run may be gone through in several calls, on any thread.
 #pragma once
 
 #include <cstddef>
@@ -34,8 +34,11 @@ struct LanesRun {
   const RunSetup* const* cases = nullptr;  // as many as the set is wide, all of one shape
   std::size_t used = 0;                    // lanes that count; the pack ends when the last of them is lost
   const LanesSink* sink = nullptr;
-  std::int64_t ended_at_step = 0;      // answered
-  double* clipped_samples = nullptr;   // answered, one a lane
+  std::int64_t ticks = 0;              // control ticks to go on for, at most
+  void* drive = nullptr;               // the pack as it stands; none: it is set up first. LanesWork::drop frees it
+  bool over = false;                   // answered: the run has ended
+  std::int64_t ended_at_step = 0;      // answered then
+  double* clipped_samples = nullptr;   // answered then, one a lane
   double* moving = nullptr;            // run-in only, answered: how much each lane still moves
   RunSetup* const* settled = nullptr;  // run-in only: setups of the used lanes, to be written as they stand at t = 0
   bool failed = false;                 // answered: out of memory while it was set up

@@ -3,6 +3,7 @@
 #include <array>
 #include <chrono>
 #include <exception>
+#include <limits>
 #include <new>
 #include <stdexcept>
 
@@ -129,42 +130,81 @@ class PerLane : public PackObserver {
 
 }  // namespace
 
-std::vector<RunOutcome> run_pack(const LaneSet& set, Cases cases, PackObserver& observer) {
-  demand_denormals();
-  demand_fit(set, cases);
-  const std::size_t width = set.width();
-  // Lanes that have no case of their own run the last one again, told to nobody.
-  std::vector<const RunSetup*> filled(cases.begin(), cases.end());
-  filled.resize(width, cases.back());
-  std::vector<RunOutcome> outcomes(cases.size());
-  std::vector<double> clipped(width);
-  Relay relay{observer, cases, outcomes, {}, std::vector<std::uint8_t>(cases.size(), 1), {}};
-  relay.view.width = width;
-  relay.view.lanes = relay.lanes;
-  const LanesSink sink{&relay, observer.wants_rows(), Relay::tick, Relay::row, Relay::lost};
+struct PackRun::Whole {
+  const LaneSet& set;
+  std::vector<const RunSetup*> cases, filled;
+  std::vector<RunOutcome> outcomes;
+  std::vector<double> clipped;
+  Relay relay;
+  LanesSink sink;
   LanesRun run;
-  run.cases = filled.data();
-  run.used = cases.size();
-  run.sink = &sink;
-  run.clipped_samples = clipped.data();
   LanesJob job;
-  job.work = LanesWork::run;
-  job.drive = &run;
+  double wall_s = 0.0;
+
+  Whole(const LaneSet& lane_set, Cases all, PackObserver& observer)
+      : set(lane_set),
+        cases(all.begin(), all.end()),
+        filled(cases),
+        outcomes(cases.size()),
+        clipped(set.width()),
+        relay{observer, cases, outcomes, {}, std::vector<std::uint8_t>(cases.size(), 1), {}},
+        sink{&relay, observer.wants_rows(), Relay::tick, Relay::row, Relay::lost} {
+    // Lanes that have no case of their own run the last one again, told to nobody.
+    filled.resize(set.width(), cases.back());
+    relay.view.width = set.width();
+    relay.view.lanes = relay.lanes;
+    run.cases = filled.data();
+    run.used = cases.size();
+    run.sink = &sink;
+    run.clipped_samples = clipped.data();
+    job.drive = &run;
+  }
+  ~Whole() {
+    job.work = LanesWork::drop;
+    set.run(&job);
+  }
+};
+
+PackRun::PackRun(const LaneSet& set, Cases cases, PackObserver& observer) {
+  demand_fit(set, cases);
+  whole_ = std::make_unique<Whole>(set, cases, observer);
+}
+
+PackRun::~PackRun() = default;
+
+bool PackRun::go_on(std::int64_t ticks) {
+  demand_denormals();
+  Whole& w = *whole_;
+  if (w.run.over) return true;
   const auto begun = std::chrono::steady_clock::now();
-  set.run(&job);
-  const double wall = std::chrono::duration<double>(std::chrono::steady_clock::now() - begun).count();
-  if (relay.thrown) std::rethrow_exception(relay.thrown);
-  if (run.failed) throw std::bad_alloc();
-  const RunShape& shape = cases[0]->shape;
-  for (std::size_t lane = 0; lane < cases.size(); ++lane) {
+  w.job.work = LanesWork::run;
+  w.run.ticks = ticks;
+  w.set.run(&w.job);
+  w.wall_s += std::chrono::duration<double>(std::chrono::steady_clock::now() - begun).count();
+  if (w.relay.thrown) std::rethrow_exception(w.relay.thrown);
+  if (w.run.failed) throw std::bad_alloc();
+  return w.run.over;
+}
+
+std::vector<RunOutcome> PackRun::outcomes() const {
+  const Whole& w = *whole_;
+  const RunShape& shape = w.cases[0]->shape;
+  std::vector<RunOutcome> outcomes = w.outcomes;
+  for (std::size_t lane = 0; lane < outcomes.size(); ++lane) {
     RunOutcome& outcome = outcomes[lane];
-    outcome.wall_s = wall / static_cast<double>(cases.size());
-    outcome.clipped_samples = static_cast<std::int64_t>(clipped[lane]);
+    outcome.wall_s = w.wall_s / static_cast<double>(outcomes.size());
+    outcome.clipped_samples = static_cast<std::int64_t>(w.clipped[lane]);
     if (outcome.diverged) continue;
-    outcome.simulated_s = static_cast<double>(run.ended_at_step) * shape.plant.step_s;
-    outcome.stopped = run.ended_at_step < shape.steps;
+    outcome.simulated_s = static_cast<double>(w.run.ended_at_step) * shape.plant.step_s;
+    outcome.stopped = w.run.ended_at_step < shape.steps;
   }
   return outcomes;
+}
+
+std::vector<RunOutcome> run_pack(const LaneSet& set, Cases cases, PackObserver& observer) {
+  PackRun run(set, cases, observer);
+  run.go_on(std::numeric_limits<std::int64_t>::max());
+  return run.outcomes();
 }
 
 std::vector<RunOutcome> run_pack(const LaneSet& set, Cases cases, std::span<const std::vector<RunObserver*>> observers,

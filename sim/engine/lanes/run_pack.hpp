@@ -9,6 +9,7 @@
 // order of time; several threads may run packs of their own. The loop itself allocates nothing.
 #pragma once
 
+#include <memory>
 #include <span>
 #include <string>
 #include <vector>
@@ -42,8 +43,26 @@ class PackObserver {
   [[nodiscard]] virtual bool keep_going(std::int64_t /*tick*/) { return true; }  // asked at every tick
 };
 
-// How each case ended. step_ns and events stay empty, wall_s is an equal share of the pack's.
-// Throws OutsideError as simulate() does, std::bad_alloc, and what the observer throws.
+// A pack that is gone through in turns. Any thread may do a turn, one at a time; cases and observer stay where they are.
+class PackRun {
+ public:
+  PackRun(const LaneSet& set, Cases cases, PackObserver& observer);
+  ~PackRun();
+  PackRun(const PackRun&) = delete;
+  PackRun& operator=(const PackRun&) = delete;
+
+  // At most so many control ticks more; true: the run has ended. Throws OutsideError as simulate() does,
+  // std::bad_alloc, and what the observer throws.
+  bool go_on(std::int64_t ticks);
+  // How each case ended. step_ns and events stay empty, wall_s is an equal share of the pack's turns.
+  [[nodiscard]] std::vector<RunOutcome> outcomes() const;
+
+ private:
+  struct Whole;
+  std::unique_ptr<Whole> whole_;
+};
+
+// The same in one turn.
 std::vector<RunOutcome> run_pack(const LaneSet& set, Cases cases, PackObserver& observer);
 
 // The same with observers of single runs, a list for each case: begin, ticks, rows as simulate() tells them, end.

@@ -64,19 +64,33 @@ struct Host {
   void step(std::int64_t n) { loop.plant_step(n); }
 };
 
+struct WholeDrive {
+  DriveLoop<Pack> loop;
+  Host host;
+  RunClock clock;
+  explicit WholeDrive(LanesRun& job) : loop(Cases(job.cases, width)), host(job, loop) {}
+};
+
 }  // namespace
 
 void run_in_lanes(LanesRun& job) noexcept {
   try {
-    DriveLoop<Pack> loop(Cases(job.cases, width));
-    Host host(job, loop);
-    job.ended_at_step = run_clock(loop.shape(), host);
+    if (job.drive == nullptr) job.drive = new WholeDrive(job);
+    WholeDrive& drive = *static_cast<WholeDrive*>(job.drive);
+    job.over = drive.clock.go(drive.loop.shape(), drive.host, job.ticks);
+    if (!job.over) return;
+    job.ended_at_step = drive.clock.step();
     for (std::size_t lane = 0; lane < width; ++lane) {
-      if (host.counts.get(lane) != 0.0) job.clipped_samples[lane] = loop.sensors().clipped().get(lane);
+      if (drive.host.counts.get(lane) != 0.0) job.clipped_samples[lane] = drive.loop.sensors().clipped().get(lane);
     }
   } catch (...) {
     job.failed = true;
   }
+}
+
+void drop_lanes(LanesRun& job) noexcept {
+  delete static_cast<WholeDrive*>(job.drive);
+  job.drive = nullptr;
 }
 
 void settle_in_lanes(LanesRun& job) noexcept {

@@ -6,6 +6,7 @@
 namespace slipbench {
 
 void run_in_lanes(LanesRun& job) noexcept;
+void drop_lanes(LanesRun& job) noexcept;
 void settle_in_lanes(LanesRun& job) noexcept;
 
 }  // namespace slipbench

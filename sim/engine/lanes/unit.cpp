@@ -91,6 +91,8 @@ extern "C" void SLIPBENCH_ENTRY(slipbench::LanesJob* job) {
       return functions(*job);
     case LanesWork::run:
       return run_in_lanes(*job->drive);
+    case LanesWork::drop:
+      return drop_lanes(*job->drive);
     case LanesWork::settle:
       return settle_in_lanes(*job->drive);
     case LanesWork::machine_steps:

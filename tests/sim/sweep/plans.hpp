@@ -5,6 +5,7 @@
 
 #include <filesystem>
 #include <fstream>
+#include <iterator>
 #include <stdexcept>
 #include <string>
 
@@ -41,74 +42,16 @@ inline std::string replaced(std::string text, const std::string& what, const std
   return text.replace(at, what.size(), by);
 }
 
-inline std::string machine_text() {
-  return R"(title = "invented machine"
-[machine]
-pole_pairs = 2
-stator_resistance_ohm = 1.6
-rotor_resistance_ohm = 1.25
-stator_leakage_H = 6.2e-3
-rotor_leakage_H = 6.2e-3
-magnetizing_inductance_H = 0.172
-rated_power_W = 4000
-rated_line_voltage_V = 400.0
-rated_current_A = 7.85
-rated_frequency_Hz = 50.0
-rated_speed_rpm = 1440.0
-rated_torque_Nm = 26.5
-)";
+// The drive and its machine are files beside this one: tests/tools/sweeps.py reads them, too.
+inline std::string own_file(const std::string& name) {
+  std::ifstream file(SLIPBENCH_SOURCE_DIR "/tests/sim/sweep/" + name, std::ios::binary);
+  if (!file) throw std::runtime_error("no file '" + name + "' beside the tests of sweeps");
+  return {std::istreambuf_iterator<char>(file), {}};
 }
+inline std::string machine_text() { return own_file("machine.toml"); }
 
 // A short closed-loop drive with two estimators; its machine lies in machine.toml beside it.
-inline std::string scenario_text() {
-  return R"(title = "Short drive, data invented"
-seed = 5
-
-[run]
-duration_s = 0.02
-plant_step_s = 50e-6
-control_period_s = 100e-6
-trace_period_s = 1e-3
-start = "magnetised"
-
-[machine]
-file = "machine.toml"
-
-[shaft]
-inertia_kgm2 = 0.02
-
-[[load]]
-kind = "constant_torque"
-torque_Nm = 2.0
-
-[supply]
-kind = "inverter"
-dc_link_V = 560.0
-switching_frequency_Hz = 10e3
-
-[sensors.current]
-noise_A = 0.1
-
-[sensors.dc_link]
-
-[sensors.speed]
-kind = "ideal"
-
-[reference]
-speed_rpm = [[0.0, 0.0], [0.02, 100.0]]
-
-[controller]
-kind = "rotor_flux_oriented"
-
-[[estimator]]
-name = "obs"
-kind = "luenberger"
-
-[[estimator]]
-name = "ekf"
-kind = "extended_kalman"
-)";
-}
+inline std::string scenario_text() { return own_file("short_drive.toml"); }
 
 inline std::string grid_text() {
   return R"(title = "grid"
