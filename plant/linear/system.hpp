@@ -21,7 +21,7 @@ using ComplexMatrix = Eigen::MatrixXcd;
 
 struct System {
   Matrix A, B, C, D;
-  double sample_period_s = 0.0;                                      // 0: continuous time
+  double sample_period_s = 0.0;                                     // 0: continuous time
   std::vector<std::string> state_names, input_names, output_names;  // empty: x1, x2, ...; u1, ...; y1, ...
 
   [[nodiscard]] Eigen::Index order() const { return A.rows(); }
