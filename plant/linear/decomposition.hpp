@@ -4,7 +4,7 @@
 //
 // Modal: A_z block diagonal, a real pole p as [p], a pair a +- j b as [a b; -b a], larger real part first. In balanced units
 // the columns of T have unit length, and there its condition is taken. A defective matrix has no modal form: LinearError
-// names the pole; nearly so (condition of T beyond 1e8: half the digits) is warned of.
+// names the pole; nearly so (condition of T beyond 1e6) is warned of.
 //
 // Kalman: states in the order controllable and observable (co), controllable only (c), observable only (o), neither (n):
 //   A_z = [co 0 * 0; * c * *; 0 0 o 0; 0 0 * n],  B_z = [*; *; 0; 0],  C_z = [* 0 * 0]

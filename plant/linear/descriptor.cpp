@@ -147,7 +147,12 @@ Reduced reduce(const Matrix& E, const System& unchecked) {
   const Matrix jump = q_fast * follows;
   std::vector<Matrix> derivatives;
   for (int i = 1; i < parts.index; ++i) {
-    follows = -at_once.solve(nil * follows);
+    const Matrix next = -at_once.solve(nil * follows);
+    // What the chain does not reach is rounding of the step before: none of it may pass for a derivative.
+    for (Eigen::Index j = 0; j < m; ++j) {
+      const bool reached = next.col(j).norm() * pace > tolerance * nil.norm() * follows.col(j).norm();
+      follows.col(j) = reached ? Vector(next.col(j)) : Vector::Zero(f);
+    }
     derivatives.push_back(q_fast * follows);
     refuse_improper(given, derivatives.back(), jump, i);
   }

@@ -59,7 +59,7 @@ Modal modal_form(const System& given) {
     at += 2;
   }
   out.condition = condition_number(t);
-  if (out.condition > 1e8) {
+  if (out.condition > 1e6) {
     char text[160];
     std::snprintf(
         text, sizeof text, "the modes are nearly parallel (condition %.1e): B and C in modal form keep about %d digits",

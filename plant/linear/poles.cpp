@@ -75,6 +75,9 @@ std::vector<PoleGroup> pole_groups(const Matrix& given) {
   const Vector scale = balancing_scale(given);
   const Matrix a = scale.cwiseInverse().asDiagonal() * given * scale.asDiagonal();
   const double norm = a.norm(), rounding = static_cast<double>(n) * eps;
+  // First-order bound of what rounding does to each: a defective pole's is out of bounds.
+  std::vector<double> moved;
+  for (const Complex& p : poles) moved.push_back(rounding * norm / std::max(null_at(a, p, 0.0).angle, eps));
   std::vector<bool> taken(poles.size(), false);
   for (std::size_t i = 0; i < poles.size(); ++i) {
     if (taken[i]) continue;
@@ -84,21 +87,23 @@ std::vector<PoleGroup> pole_groups(const Matrix& given) {
     std::stable_sort(nearest.begin(), nearest.end(), [&](std::size_t x, std::size_t y) {
       return magnitude(poles[x] - poles[i]) < magnitude(poles[y] - poles[i]);
     });
-    const double angle = null_at(a, poles[i], 0.0).angle;
     // A pole worse known than the root of rounding is a repeated one.
-    PoleGroup group{poles[i], 1, 1, 0.0, std::min(rounding / std::max(angle, eps), root(rounding, 2)) * norm};
+    PoleGroup group{poles[i], 1, 1, 0.0, std::min(moved[i], root(rounding, 2) * norm)};
     for (std::size_t count = nearest.size(); count > 1; --count) {
       const Cluster cluster = cluster_of(poles, nearest, count);
       const auto k = static_cast<Eigen::Index>(count);
-      if (cluster.radius > 4.0 * norm * root(rounding, k)) continue;
+      double reach = 4.0 * norm * root(rounding, k);
+      for (std::size_t j = 0; j < count; ++j) reach = std::min(reach, 8.0 * moved[nearest[j]]);
+      const double coincide = 256.0 * rounding * norm;
+      if (cluster.radius > std::max(reach, coincide)) continue;
       const double threshold = std::max(64.0 * rounding * norm, 2.0 * cluster.radius);
       const auto directions = std::min(null_at(a, cluster.mean, threshold).directions, k);
       // As many directions as poles: each is known by itself, and only those that coincide are one.
-      if (directions == k && cluster.radius > 4.0 * rounding * norm) continue;
+      if (directions == k && cluster.radius > coincide) continue;
       Complex mean = cluster.mean;
       if (std::fabs(mean.imag()) <= rounding * norm) mean.imag(0.0);
-      group = {mean, k, std::max<Eigen::Index>(directions, 1), cluster.radius, rounding * norm};
-      if (directions < k) group.uncertainty = std::max(group.uncertainty, trusted_digits / 64.0 * norm);
+      group = {mean, k, std::max<Eigen::Index>(directions, 1), cluster.radius, std::max(cluster.radius / 64.0, rounding * norm)};
+      if (directions < k) group.uncertainty = std::max(rounding, trusted_digits / 64.0) * norm;
       break;
     }
     for (Eigen::Index k = 0; k < group.count; ++k) taken[nearest[static_cast<std::size_t>(k)]] = true;

@@ -1,47 +1,45 @@
-// Small helpers of the linear tests: matrices from rows, relative distances.
+// Matrices written as rows, for tests of linear systems.
 #pragma once
-
-#include <initializer_list>
 
 #include "plant/linear/system.hpp"
 
 namespace slipbench::linear {
 
-inline Matrix rows(std::initializer_list<std::initializer_list<double>> given) {
-  Matrix m(static_cast<Eigen::Index>(given.size()), static_cast<Eigen::Index>(given.begin()->size()));
+inline Matrix rows(std::initializer_list<std::initializer_list<double>> values) {
+  Matrix m(static_cast<Eigen::Index>(values.size()),
+           values.size() ? static_cast<Eigen::Index>(values.begin()->size()) : 0);
   Eigen::Index i = 0;
-  for (const auto& row : given) {
+  for (const auto& row : values) {
     Eigen::Index j = 0;
-    for (const double value : row) m(i, j++) = value;
+    for (const double x : row) m(i, j++) = x;
     ++i;
   }
   return m;
 }
 
-inline Matrix diagonal(std::initializer_list<double> given) {
-  Matrix m = Matrix::Zero(static_cast<Eigen::Index>(given.size()), static_cast<Eigen::Index>(given.size()));
-  Eigen::Index i = 0;
-  for (const double value : given) m(i, i) = value, ++i;
-  return m;
+inline System system_of(const Matrix& A, const Matrix& B, const Matrix& C, double period_s = 0.0) {
+  System s;
+  s.A = A;
+  s.B = B;
+  s.C = C;
+  s.sample_period_s = period_s;
+  return checked(s);
 }
 
-inline double relative(const Matrix& found, const Matrix& wanted) {
-  return (found - wanted).norm() / (wanted.norm() > 0.0 ? wanted.norm() : 1.0);
+// No inputs, no outputs.
+inline System free_system(const Matrix& A, double period_s = 0.0) {
+  return system_of(A, Matrix(A.rows(), 0), Matrix(0, A.rows()), period_s);
 }
 
-// A system whose outputs are its states.
-inline System seen_whole(const Matrix& A, const Matrix& B, double sample_period_s = 0.0) {
-  return {A, B, Matrix::Identity(A.rows(), A.rows()), Matrix::Zero(A.rows(), B.cols()), sample_period_s, {}, {}, {}};
-}
-
+// The sentence of the LinearError that `f` throws; empty when it throws none.
 template <class F>
-std::string refusal_of(F&& f) {
+std::string refusal(F&& f) {
   try {
     f();
-  } catch (const LinearError& e) {
-    return e.what();
+  } catch (const LinearError& error) {
+    return error.what();
   }
-  return "not refused";
+  return "";
 }
 
 }  // namespace slipbench::linear

@@ -1,5 +1,6 @@
 // Loops, reference gain, responses, figures and PI rules against closed forms.
 #include <catch2/catch.hpp>
+#include <random>
 
 #include "plant/linear/combined.hpp"
 #include "plant/linear/dense.hpp"
@@ -11,7 +12,7 @@
 #include "plant/linear/reference_gain.hpp"
 #include "plant/linear/response.hpp"
 #include "plant/linear/step_figures.hpp"
-#include "tests/plant/linear/matrices.hpp"
+#include "tests/plant/linear/design_matrices.hpp"
 
 using namespace slipbench::linear;
 using Catch::Matchers::Contains;
@@ -65,12 +66,11 @@ TEST_CASE("reference gain: refused with a sentence", "[plant][linear]") {
   System tall = s;
   tall.C = Matrix::Identity(3, 3);
   tall.D = Matrix::Zero(3, 2);
-  CHECK_THAT(refusal_of([&] { reference_gain(tall, K); }),
-             Contains("as many inputs as outputs, but there are 2 and 3"));
+  CHECK_THAT(refusal([&] { reference_gain(tall, K); }), Contains("as many inputs as outputs, but there are 2 and 3"));
   System rate{rows({{0, 1}, {-1, -1}}), rows({{0}, {1}}), rows({{0, 1}}), rows({{0}}), 0.0, {}, {}, {}};
-  CHECK_THAT(refusal_of([&] { reference_gain(rate, Matrix::Zero(1, 2)); }), Contains("zero at s = 0"));
+  CHECK_THAT(refusal([&] { reference_gain(rate, Matrix::Zero(1, 2)); }), Contains("zero at s = 0"));
   System integrator{rows({{0}}), rows({{1}}), rows({{1}}), rows({{0}}), 0.0, {}, {}, {}};
-  CHECK_THAT(refusal_of([&] { reference_gain(integrator, Matrix::Zero(1, 1)); }),
+  CHECK_THAT(refusal([&] { reference_gain(integrator, Matrix::Zero(1, 1)); }),
              Contains("closed loop has a pole at s = 0"));
 }
 
@@ -126,8 +126,24 @@ TEST_CASE("responses: lag of first order in closed form", "[plant][linear]") {
   for (Eigen::Index k = 0; k < 11; ++k) u(k, 0) = k < 5 ? 1 : -2;
   const auto free = response_to(s, u, .1);
   CHECK(free.y(10, 0) == Approx(2 * (1 - std::exp(-1 / T)) - 6 * (1 - std::exp(-.5 / T))).margin(1e-14));
-  CHECK_THAT(refusal_of([&] { step_response(s, 1, .1, 3); }), Contains("no input 2"));
-  CHECK_THAT(refusal_of([&] { step_response(s, 0, 0, 3); }), Contains("above 0 s"));
+  CHECK_THAT(refusal([&] { step_response(s, 1, .1, 3); }), Contains("no input 2"));
+  CHECK_THAT(refusal([&] { step_response(s, 0, 0, 3); }), Contains("above 0 s"));
+}
+
+TEST_CASE("noise response: variance is the Lyapunov equation's", "[plant][linear]") {
+  // White noise of intensity S through 1 / (1 + s T) has variance S / (2 T) (closed form); held samples of variance S / h add (h / T)^2 / 12.
+  const double T = .1, h = .002, S = 3;
+  const Eigen::Index steps = 200000;
+  std::mt19937_64 draw(5);
+  Matrix u(steps + 1, 1);
+  for (Eigen::Index k = 0; k <= steps; ++k) {
+    double sum = -6;  // twelve uniform draws: variance 1
+    for (int i = 0; i < 12; ++i) sum += static_cast<double>(draw() >> 11) * 0x1p-53;
+    u(k, 0) = sum * std::sqrt(S / h);
+  }
+  const Matrix y = response_to(lag(1, T), u, h).y.bottomRows(steps - 1000);
+  // steps h / (2 T) = 2000 independent values: 1 / sqrt(1000) relative, three times that.
+  CHECK(y.squaredNorm() / static_cast<double>(y.size()) == Approx(S / (2 * T)).epsilon(.1));
 }
 
 TEST_CASE("step figures: oscillator of second order in closed form", "[plant][linear]") {
@@ -171,7 +187,7 @@ TEST_CASE("frequency response: closed forms, poles refused, phase followed", "[p
     CHECK(p.phase_rad(0, 0) == Approx(-3 * std::atan(p.frequency_rad_s)).margin(1e-10));
   }
   CHECK_THAT(
-      refusal_of([] {
+      refusal([] {
         frequency_response({rows({{0, 2}, {-2, 0}}), rows({{0}, {1}}), rows({{1, 0}}), {}, 0.0, {}, {}, {}}, 2.0);
       }),
       Contains("a pole at 0 + 2j"));
@@ -231,6 +247,6 @@ TEST_CASE("symmetric optimum: 43.4 % overshoot, 8.1 % with filtered reference, m
     const auto filtered = pi_loop(plant, t.gain, t.integral_time_s, t.prefilter_s);
     CHECK(step_figures(step_response(filtered, 0, e / 200, 20000), 0, 1.0, 1.0).overshoot == Approx(.081).margin(5e-4));
   }
-  CHECK_THAT(refusal_of([] { symmetric_optimum(1, 1, 1, 1.0); }), Contains("above 1"));
-  CHECK_THAT(refusal_of([] { magnitude_optimum(0, 1, 1); }), Contains("other than 0"));
+  CHECK_THAT(refusal([] { symmetric_optimum(1, 1, 1, 1.0); }), Contains("above 1"));
+  CHECK_THAT(refusal([] { magnitude_optimum(0, 1, 1); }), Contains("other than 0"));
 }
