@@ -58,15 +58,28 @@ def judge(what, case, ours, solve, data):
         failures.append(f"case {case}: {what} differs by {found:.2e}, allowed {allowed:.2e}")
 
 
+def fine_solve(M, right):
+    """One step of refinement in long double."""
+    first = la.solve(M.astype(float), right.astype(float)).astype(np.longdouble)
+    return first + la.solve(M.astype(float), (right - M @ first).astype(float))
+
+
 def regulator(discrete):
-    def solve(A, B, Q, R, N):
-        if discrete:
-            X = la.solve_discrete_are(A, B, Q, R, s=N)
-            K = la.solve(R + B.T @ X @ B, B.T @ X @ A + N.T)
-        else:
-            X = la.solve_continuous_are(A, B, Q, R, s=N)
-            K = la.solve(R, B.T @ X + N.T)
-        return X, K
+    """SciPy's solution, then two Newton steps whose residual is computed in long double: its own loses up to four digits here."""
+    def solve(*data):
+        A, B, Q, R, N = data
+        X = (la.solve_discrete_are if discrete else la.solve_continuous_are)(A, B, Q, R, s=N).astype(np.longdouble)
+        A, B, Q, R, N = (m.astype(np.longdouble) for m in data)
+        gain = lambda X: fine_solve(R + B.T @ X @ B, B.T @ X @ A + N.T) if discrete else fine_solve(R, B.T @ X + N.T)
+        for _ in range(2):
+            K = gain(X)
+            closed = A - B @ K
+            left = Q + K.T @ R @ K - N @ K - K.T @ N.T
+            left += closed.T @ X @ closed - X if discrete else closed.T @ X + X @ closed
+            left, closed = left.astype(float), closed.astype(float)
+            X = X + (la.solve_discrete_lyapunov(closed.T, left) if discrete else la.solve_continuous_lyapunov(closed.T, -left))
+            X = (X + X.T) / 2
+        return X.astype(float), gain(X).astype(float)
     return solve
 
 
