@@ -18,7 +18,7 @@ constexpr double left = 84, top = 96, plot_width = 640, plot_height = 440, bar_g
 constexpr double bottom = top + plot_height, right = left + plot_width, width = right + bar_gap + bar_width + bar_room;
 constexpr std::string_view line_colour = "#D55E00", path_colour = "#111111", blind_colour = "#E69F00",
                            unstable_fill = "#f3b9a0", marginal_fill = "#f6e3a1", unsettled_fill = "#c4c4c4",
-                           beyond_fill = "#ffffff";
+                           beyond_fill = "#ece7df";
 constexpr std::string_view beyond_words = "beyond the drive's voltage or current";
 constexpr int shades = 32;
 constexpr double darkest_share = 0.005;  // of the points: a few deep values must not take the whole scale
