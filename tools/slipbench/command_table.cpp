@@ -11,8 +11,8 @@ std::span<const VerbRow> verb_rows() {
        "scenario file",
        {"slipbench run configs/scenarios/conveyor_hot_rotor.toml --set belief.rotor_resistance=1.5 --figure run.svg"}},
       {"check",
-       "read and validate a scenario or machine file, run nothing; or tell what such files may hold",
-       "scenario or machine file",
+       "read and validate a scenario, machine or state-space file or a plan, run nothing; or tell what they may hold",
+       "any file",
        {"slipbench check configs/scenarios/hoist_lowering.toml --set run.plant_step_s=5e-6",
         "slipbench check --keys | grep rotor_resistance"}},
       {"compare",
@@ -25,13 +25,23 @@ std::span<const VerbRow> verb_rows() {
        {"slipbench sweep configs/sweeps/resistance_grid.toml --store grid.sqlite --csv grid.csv --figure grid.svg",
         "slipbench sweep configs/sweeps/worst_resistances.toml --search ekf.speed_rmse_rpm --budget 44 --write "
         "worst.toml"}},
+      {"analyse",
+       "say what a linear system is: poles, what can be moved and seen, minimal form, zeros",
+       "state-space file",
+       {"slipbench analyse configs/systems/two_mass_shaft.toml --figure shaft.svg",
+        "slipbench analyse configs/systems/current_loop_pi.toml --period 1e-4 --at 50"}},
+      {"design",
+       "compute gains (LQR, poles placed, observers, PI) and compare the loops they make",
+       "state-space file",
+       {"slipbench design configs/systems/two_mass_shaft.toml --figure loops.svg",
+        "slipbench design configs/systems/hidden_mode.toml --set design.R=[[0.1]] --json"}},
   };
   return rows;
 }
 
 std::span<const OptionRow> option_rows() {
   static constexpr OptionRow rows[] = {
-      {"--set", "KEY=VALUE", "run check compare sweep",
+      {"--set", "KEY=VALUE", "run check compare sweep analyse design",
        "set a key of the file, dotted; VALUE is TOML or text; repeatable", Takes::key},
       {"--seed", "N", "run check compare sweep", "seed of every noise; wins over the file and --set", Takes::number},
       {"--run", "R", "run", "take noise run R, as `compare` numbers them from 0", Takes::number},
@@ -58,18 +68,21 @@ std::span<const OptionRow> option_rows() {
       {"--slurm", "OPTION[=VALUE]", "sweep",
        "with --on slurm: an option for sbatch, as in partition=main, account=x, time=2:00:00, nodelist=n1; repeatable"},
       {"--trace", "FILE.csv|FILE.h5", "run", "write the trace, as CSV or HDF5", Takes::file},
-      {"--figure", "FILE.svg", "run compare sweep", "draw the result", Takes::file},
+      {"--figure", "FILE.svg", "run compare sweep analyse design", "draw the result", Takes::file},
       {"--figure-of", "FIGURE", "sweep",
        "what --figure draws, as in ekf.angle_rmse_deg, or angle_rmse_deg for all estimators (speed_rmse_rpm)"},
       {"--publish", "ENDPOINT", "run", "publish the run as it happens: tcp://HOST:PORT, ipc://PATH or PORT (loopback)"},
       {"--publish-wait", "N", "run", "start when N subscribers are there", Takes::number},
       {"--pace", "FACTOR", "run", "run no faster than FACTOR times real time", Takes::number},
+      {"--period", "S", "analyse",
+       "of a continuous system: discretise at this period in s, and say what each method costs", Takes::number},
+      {"--at", "HZ", "analyse design", "gain and phase at this frequency (design: the slowest mode's)", Takes::number},
       {"--keys", "", "check", "in place of FILE: every key of a scenario, with range, default and meaning", {}, true},
       {"--markdown", "", "check", "with --keys: as Markdown tables"},
-      {"--schema", "[scenario|machine]", "check", "in place of FILE: JSON Schema of such files, for TOML editors",
-       Takes::word, true},
-      {"--json", "", "run check compare sweep", "one JSON document on standard output, nothing else"},
-      {"--quiet", "", "run check compare sweep", "print nothing but errors"},
+      {"--schema", "[scenario|machine|system]", "check",
+       "in place of FILE: JSON Schema of such files, for TOML editors", Takes::word, true},
+      {"--json", "", "run check compare sweep analyse design", "one JSON document on standard output, nothing else"},
+      {"--quiet", "", "run check compare sweep analyse design", "print nothing but errors"},
       {"--progress", "", "run compare sweep", "show progress on standard error even if it is no terminal"},
   };
   return rows;

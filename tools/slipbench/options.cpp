@@ -178,6 +178,8 @@ Request request_of(const std::string& verb, Given& given) {
     r.publish_wait = whole_number<unsigned>("--publish-wait", text("--publish-wait"), 1, 1024);
   if (r.publish_wait > 0 && !r.publish) refuse("--publish-wait", "--publish-wait needs --publish ENDPOINT beside it");
   if (flag("--pace")) r.pace = positive_number("--pace", text("--pace"));
+  if (flag("--period")) r.period_s = positive_number("--period", text("--period"));
+  if (flag("--at")) r.at_Hz = positive_number("--at", text("--at"));
   for (const std::string& setting : given.values["--set"]) {
     const std::size_t equals = setting.find('=');
     if (equals == std::string::npos || equals == 0) {

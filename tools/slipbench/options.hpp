@@ -32,9 +32,10 @@ struct Request {
   std::uint64_t shards = 0;                // sweep: --shards N; 0: the usual number
   std::vector<std::string> slurm;          // sweep: --slurm OPTION, for sbatch, without the dashes
   std::uint32_t budget = 200;              // sweep: --budget N
+  double period_s = 0.0, at_Hz = 0.0;      // analyse, design; 0: not asked
   std::optional<std::uint64_t> plan_case;  // run PLAN --case K
   bool keys = false, markdown = false;
-  std::string schema;  // check: of "scenario" or "machine" files; "": none
+  std::string schema;  // check: of "scenario", "machine" or "system" files; "": none
   [[nodiscard]] bool wants_reference() const { return keys || !schema.empty(); }  // then there is no file
 };
 
