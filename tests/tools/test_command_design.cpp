@@ -215,7 +215,7 @@ TEST_CASE("design: report and picture", "[tools][command]") {
     CHECK_THAT(answer.out, Catch::Contains(part));
   const std::string svg = content(folder.file("f.svg"));
   for (const char* part :
-       {"effort, motor_torque_Nm", "after one unit of disturbance", "integral action", "time, s", "</svg>"})
+       {"effort, motor_torque_Nm", "after a unit disturbance", "integral action", "time, s", "</svg>"})
     CHECK_THAT(svg, Catch::Contains(part));
   CHECK(svg.find("nan") == std::string::npos);
   CHECK(folder.run({"design", systems + "current_loop_pi.toml", "--figure", folder.file("p.svg"), "--quiet"})

@@ -39,7 +39,7 @@ std::string points_of(const ChartLine& line, const svg::Axis& x, const svg::Axis
 // Marks by decades: all of 1, 2, 5 where they are few, else tens.
 std::vector<double> decade_ticks(double low, double high, double room_px) {
   std::vector<double> ticks;
-  const bool fine = high - low < 1.6;
+  const bool fine = high - low < 2.2;
   const int step = std::max(1, static_cast<int>(std::ceil((high - low) * 52.0 / room_px)));
   for (double p = std::floor(low); p <= high; p += step) {
     for (const double lead : {1.0, 2.0, 5.0}) {
@@ -92,6 +92,7 @@ std::string chart(const Chart& c, const std::string& id) {
     for (double v = std::ceil(ys.low / c.y_step) * c.y_step; v <= ys.high + 1e-9; v += c.y_step)
       rows.values.push_back(v);
   }
+  if (rows.values.size() < 2) rows = svg::ticks(ys.low, ys.high, 3);
   for (const double v : rows.values) {
     const bool zero = std::fabs(v) < 1e-9 * rows.step;
     out += svg::line(c.left, y.at(v), right, y.at(v), zero ? svg::frame : svg::grid);

@@ -85,7 +85,7 @@ ChartLine gain_line(const DesignResult& r, const Loop& loop, Eigen::Index input,
 Panels panels_of(const DesignResult& r) {
   Panels p;
   const double duration = duration_of(r);
-  std::vector<bool> stable, pushed_stable;
+  std::vector<bool> stable;
   for (std::size_t i = 0; i < r.loops.size(); ++i) {
     const Loop& loop = r.loops[i];
     const LoopPort port = port_of(r, loop, 0);
@@ -97,13 +97,12 @@ Panels panels_of(const DesignResult& r) {
     const Eigen::Index effort = loop.system.outputs() - r.plant.inputs();
     p.effort.lines.push_back(line_of(answer, effort, i, stairs));
     p.gain.lines.push_back(gain_line(r, loop, port.input, port.output, i));
-    stable.push_back(loop.stable);
+    stable.push_back(loop.stable && (r.pi || loop.name != "open loop"));
     if (r.pi) continue;
     const auto pushed = linear::step_response(loop.system, loop.references, step_s, grid.steps);
     p.pushed.lines.push_back(line_of(pushed, port.output, i, stairs));
-    pushed_stable.push_back(loop.stable && loop.name != "open loop");
   }
-  scale(p.output, stable), scale(p.effort, stable), scale(p.pushed, pushed_stable);
+  scale(p.output, stable), scale(p.effort, stable), scale(p.pushed, stable);
   return p;
 }
 
@@ -144,7 +143,7 @@ std::string design_figure(const DesignResult& r) {
     place(p.gain, 0, 1, "gain from reference to output, dB", "frequency, Hz");
     body += chart(p.output, "a") + chart(p.effort, "b") + chart(p.gain, "d");
   } else {
-    place(p.pushed, 0, 1, output + " after one unit of disturbance at " + input, "time, s");
+    place(p.pushed, 0, 1, output + " after a unit disturbance", "time, s");
     place(p.gain, 1, 1, "gain from reference to output, dB", "frequency, Hz");
     body += chart(p.output, "a") + chart(p.effort, "b") + chart(p.pushed, "c") + chart(p.gain, "d");
   }

@@ -88,6 +88,7 @@ LoopRow row_of(const DesignResult& r, std::size_t number, Eigen::Index pair) {
     const auto pushed = linear::step_response(loop.system, d, step_s, grid.steps);
     row.dip = pushed.y.col(port.output).cwiseAbs().maxCoeff();
     row.left = dc(port.output, d);
+    if (std::fabs(*row.left) < 1e-12 * *row.dip) row.left = 0.0;  // rounding beside what it settles from
     row.noise = effort_noise(loop.system, loop.references + r.plant.inputs(), outputs);
   }
   return row;

@@ -116,6 +116,17 @@ void add_factors(DesignResult& r, const DesignRequest& d) {
   }
 }
 
+// Where poles can't be moved, a filter of unit noises still has its say about the others.
+void add_filter(DesignResult& r, const std::string& why) {
+  try {
+    r.observer = linear::stationary_kalman(r.plant, identity(r.plant.order()), identity(r.plant.outputs()));
+    r.observer_from = "stationary Kalman of unit noises, for its poles can't be placed";
+    r.notes.push_back("no observer by poles: " + why);
+  } catch (const LinearError& error) {
+    r.notes.push_back(std::string("no observer beside the controller: ") + error.what());
+  }
+}
+
 // What was asked for may fail the request; what stands beside it for comparison is left out with a note.
 void design_gains(DesignResult& r, const DesignRequest& d) {
   if (!r.is_observer()) {
@@ -141,7 +152,7 @@ void design_gains(DesignResult& r, const DesignRequest& d) {
       warn(r, "observer", r.observer->warning);
     } catch (const LinearError& error) {
       if (asked) throw;
-      r.notes.push_back(std::string("no observer beside the controller: ") + error.what());
+      add_filter(r, error.what());
     }
   }
   if (!r.controller) return;

@@ -34,7 +34,7 @@ std::string named_table(const linear::Matrix& m, const std::vector<std::string>&
   for (const std::string& column : columns) t.column(column, "");
   for (Eigen::Index i = 0; i < m.rows(); ++i) {
     std::vector<std::string> cells = {rows[static_cast<std::size_t>(i)]};
-    for (Eigen::Index j = 0; j < m.cols(); ++j) cells.push_back(significant(m(i, j), 5));
+    for (Eigen::Index j = 0; j < m.cols(); ++j) cells.push_back(plain(m(i, j), 5));
     t.row(std::move(cells));
   }
   return t.text();

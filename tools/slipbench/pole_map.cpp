@@ -71,7 +71,7 @@ std::string s_grid(const PoleMap& map, const Plane& plane) {
     for (const double sign : {1.0, -1.0})
       out += svg::line(plane.origin_x, plane.origin_y, plane.origin_x + far * x, plane.origin_y + sign * far * y,
                        svg::grid);
-    const double reach = 0.98 * plane.reach_px;
+    const double reach = 0.86 * plane.reach_px;
     out += small(plane.origin_x + reach * x, plane.origin_y - reach * y, fmt::format("{:g}", d), "end");
   }
   out += svg::line(map.left, plane.origin_y, map.left + map.side, plane.origin_y, svg::frame);
@@ -116,7 +116,10 @@ Plane plane_of(const PoleMap& map) {
   Plane plane;
   const bool discrete = map.sample_period_s > 0.0;
   plane.reach = discrete ? std::max(1.25, 1.1 * largest) : largest > 0.0 ? 1.25 * largest : 1.0;
-  if (!discrete && largest > much * least) plane.least = std::pow(10.0, std::floor(std::log10(least) - 0.05));
+  if (!discrete && largest > much * least) {
+    plane.least = std::pow(10.0, std::floor(std::log10(least) - 0.05));
+    plane.reach = 2.5 * largest;
+  }
   // The left half fills the square unless something stands right of the axis.
   const double share = discrete || right > 0.3 ? 0.5 : 0.2;
   plane.origin_x = map.left + map.side * (1.0 - share), plane.origin_y = map.top + map.side / 2;

@@ -30,7 +30,6 @@ controlled_inputs = ["torque"]
 tracked_outputs = ["angle"]
 Q = [[1.0, 0.5], [0.5, 1.0]]
 R = [[0.1]]
-N = [[0.0], [0.1]]
 Q_integral = [[3.0]]
 faster_than_controller = 4
 )";
@@ -113,9 +112,11 @@ const Broken table[] = {
     {"Q lopsided", "[0.5, 1.0]]", "[0.4, 1.0]]", "0.4", "design.Q.1.0", "must be symmetric", "relation"},
     {"R of other size", "R = [[0.1]]", "R = [[1.0, 0.0], [0.0, 1.0]]", "[[1.0, 0.0], [0.0, 1.0]]", "design.R",
      "as there are controlled inputs", "shape"},
-    {"N turned", "N = [[0.0], [0.1]]", "N = [[0.0, 0.1]]", "[[0.0, 0.1]]", "design.N", "wanted are 2", "shape"},
+    {"N turned", "Q_integral = [[3.0]]", "N = [[0.0, 0.1]]", "[[0.0, 0.1]]", "design.N", "wanted are 2", "shape"},
     {"integral weight of other size", "[[3.0]]", "[[3.0, 0.0], [0.0, 3.0]]", "[[3.0, 0", "design.Q_integral",
      "as there are tracked outputs", "shape"},
+    {"integral action with a cross term", "Q_integral = [[3.0]]", "N = [[0.0], [0.1]]\nQ_integral = [[3.0]]", "N = [[0",
+     "design.N", "give one of them", "relation"},
     {"unknown output", "[\"angle\"]", "[\"angel\"]", "\"angel\"", "design.tracked_outputs.0", "nearest is angle",
      "range"},
     {"unknown input", "[\"torque\"]", "[\"torqe\"]", "\"torqe\"", "design.controlled_inputs.0", "nearest is torque",
@@ -172,7 +173,6 @@ TEST_CASE("state-space file: matrices, names and design as they stand", "[scenar
   REQUIRE(file.design);
   CHECK(file.design->kind == DesignKind::lqr);
   CHECK(file.design->Q(0, 1) == 0.5);
-  CHECK(file.design->N(1, 0) == 0.1);
   CHECK(file.design->Q_integral(0, 0) == 3.0);
   CHECK(file.design->tracked == std::vector<Eigen::Index>{0});
   CHECK(file.design->controlled == std::vector<Eigen::Index>{0});
@@ -210,6 +210,7 @@ TEST_CASE("state-space file: --set changes it", "[scenario][system]") {
   CHECK(read(text, {{"system.A.1.0", "-9"}}).system.A(1, 0) == -9.0);
   CHECK(read(text, {{"system.sample_period_s", "0.5"}}).system.sample_period_s == 0.5);
   CHECK(read(text, {{"design.Q", "[[2, 0], [0, 2]]"}}).design->Q(0, 0) == 2.0);
+  CHECK(read(with(text, "Q_integral = [[3.0]]", "N = [[0.0], [0.1]]")).design->N(1, 0) == 0.1);
   // A kind that is set leaves the file's keys for its own kind aside; keys that are set must go with it.
   const SystemFile other = read(text, {{"design.kind", "place"}, {"design.poles", "[-1, -2]"}});
   CHECK(other.design->kind == DesignKind::place);
