@@ -25,12 +25,6 @@ std::int64_t closing_estimator(const Scenario& s, const std::string& name) {
   return -1;
 }
 
-Modulation modulation_of(const Scenario& s) {
-  return s.supply.modulation == "sine"            ? Modulation::sine
-         : s.supply.modulation == "discontinuous" ? Modulation::discontinuous
-                                                  : Modulation::space_vector;
-}
-
 void prepare_control(RunSetup& run, const Scenario& s) {
   ControlShape& shape = run.shape.control;
   shape.present = !s.on_mains();

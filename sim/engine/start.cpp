@@ -76,6 +76,12 @@ EstimatorSetup estimator_setup(const Scenario& s, double current_noise_A) {
   return e;
 }
 
+Modulation modulation_of(const Scenario& s) {
+  return s.supply.modulation == "sine"            ? Modulation::sine
+         : s.supply.modulation == "discontinuous" ? Modulation::discontinuous
+                                                  : Modulation::space_vector;
+}
+
 ControllerSetup controller_setup(const Scenario& s, Modulation modulation, bool compensate_dead_time, bool sensorless) {
   ControllerSetup c;
   c.circuit = s.believed_circuit();

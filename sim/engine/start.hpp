@@ -17,6 +17,7 @@
 namespace slipbench {
 
 EstimatorSetup estimator_setup(const Scenario& scenario, double current_noise_A);
+Modulation modulation_of(const Scenario& scenario);
 ControllerSetup controller_setup(const Scenario& scenario, Modulation modulation, bool compensate_dead_time,
                                  bool sensorless);
 

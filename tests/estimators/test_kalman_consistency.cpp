@@ -6,12 +6,19 @@
 #include <random>
 
 #include "estimators/extended_kalman.hpp"
-#include "tests/estimators/error_dynamics.hpp"
+#include "sim/linear/turning_state.hpp"
+#include "tests/estimators/machines.hpp"
 
 using namespace slipbench;
 using namespace slipbench::tests;
 
 namespace {
+
+Vec2<double> turned_by(const Vec2<double>& a, double angle) { return turn_forward(sincos(angle), a); }
+TurningPoint turning_at(const EstimatorSetup& setup, double flux, double torque, double w_r) {
+  return turning_point(setup.circuit, setup.control_period_s, flux / to_inverse_gamma(setup.circuit).flux_ratio, torque,
+                       w_r);
+}
 
 using Vector5 = Eigen::Matrix<double, 5, 1>;
 using Matrix5 = Eigen::Matrix<double, 5, 5>;
@@ -51,14 +58,14 @@ Consistency consistency(int told, int sensors, int runs, int ticks, unsigned see
   const auto c = ExtendedKalman::prepare(setup, {});
   const BelievedMachine<double>& m = c.model.machine;
   const double flux = nominal_rotor_flux(setup), rated = setup.nameplate.speed_rad_s() * m.pole_pairs;
-  const SteadyPoint p = steady_point(m, flux, 0.5 * setup.nameplate.torque_Nm, 0.6 * rated);
+  const TurningPoint p = turning_at(setup, flux, 0.5 * setup.nameplate.torque_Nm, 0.6 * rated);
   std::mt19937_64 random(seed);
   std::normal_distribution<double> normal;
   Consistency out;
   out.nees.assign(std::size_t(ticks), 0.0);
   for (int run = 0; run < runs; ++run) {
     auto state = ExtendedKalman::begin(setup, c);
-    state.x = {p.current, p.flux, p.w_r, 0.0};
+    state.x = {p.current, p.flux_ratio * p.rotor_flux, p.w_r, 0.0};
     KalmanVector<double> truth = state.x;
     const auto shake = [&](const std::array<double, 5>& deviation) {
       truth.current = truth.current + Vec2<double>{deviation[0] * normal(random), deviation[1] * normal(random)};
@@ -74,7 +81,7 @@ Consistency consistency(int told, int sensors, int runs, int ticks, unsigned see
     for (int k = 0; k < ticks; ++k) {
       // The voltage of the steady point, and on top a slow beat: flux and torque move all the time.
       const double t = k * m.period, beat = 1.0 + 0.1 * std::sin(40.0 * t);
-      const Vec2<double> u = beat * turned(p.voltage, p.w_s * t);
+      const Vec2<double> u = beat * turned_by(p.voltage, p.w_s * t);
       if (k > 0) {
         truth = predict_with_jacobian(c.model, truth, u).x;
         shake(process);
@@ -152,14 +159,14 @@ double least_over(std::int64_t steps, double shaft, bool live = true) {
   const BelievedMachine<double>& m = c.model.machine;
   const double flux = nominal_rotor_flux(setup), w_s = rad_per_turn * 20.0, gain = live ? 1.0 : 0.0;
   constexpr std::size_t period = 500;  // one turn at 20 Hz
-  const SteadyPoint p = steady_point(m, flux, 5.0, w_s - m.R_R * 5.0 / (m.torque_factor * flux * flux));
+  const TurningPoint p = turning_at(setup, flux, 5.0, w_s - m.R_R * 5.0 / (m.torque_factor * flux * flux));
   std::mt19937_64 random(3);
   std::normal_distribution<double> normal(0.0, setup.current_noise_A);
   std::vector<Sample<Real>> samples(period);
   for (std::size_t k = 0; k < period; ++k) {
     const double angle = w_s * m.period * double(k);
-    const Vec2<double> i = gain * turned(p.current, angle) + Vec2<double>{normal(random), normal(random)};
-    const Vec2<double> u = gain * turned(p.voltage, angle);
+    const Vec2<double> i = gain * turned_by(p.current, angle) + Vec2<double>{normal(random), normal(random)};
+    const Vec2<double> u = gain * turned_by(p.voltage, angle);
     samples[k].u_alpha = Real(u.x);
     samples[k].u_beta = Real(u.y);
     samples[k].i_alpha = Real(i.x);

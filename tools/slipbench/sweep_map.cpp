@@ -2,9 +2,9 @@
 #include <fmt/format.h>
 
 #include <algorithm>
-#include <array>
 #include <cmath>
 
+#include "tools/slipbench/heat.hpp"
 #include "tools/slipbench/scale.hpp"
 #include "tools/slipbench/svg.hpp"
 #include "tools/slipbench/sweep_figure.hpp"
@@ -15,27 +15,7 @@ namespace slipbench {
 namespace {
 
 constexpr double top = 96, plot_width = 616, plot_height = 440, bar_gap = 28, bar_width = 18, bar_room = 96;
-constexpr std::string_view none_fill = "#d9d9d9", lost_mark = "#D55E00";
-
-// One hue, ever darker, so that order is seen without colour: red, green, blue at equal distances.
-constexpr std::array<std::array<double, 3>, 5> blues = {
-    {{240, 246, 250}, {173, 207, 228}, {93, 157, 200}, {18, 100, 160}, {6, 38, 74}}};
-
-std::string heat(double share) {
-  const double at = std::clamp(share, 0.0, 1.0) * static_cast<double>(blues.size() - 1);
-  const std::size_t i = std::min(static_cast<std::size_t>(at), blues.size() - 2);
-  const double t = at - static_cast<double>(i);
-  std::array<int, 3> c{};
-  for (std::size_t k = 0; k < 3; ++k)
-    c[k] = static_cast<int>(std::lround(blues[i][k] + t * (blues[i + 1][k] - blues[i][k])));
-  return fmt::format("#{:02x}{:02x}{:02x}", c[0], c[1], c[2]);
-}
-
-// A cell without a figure: grey, crossed.
-std::string crossed(double x, double y, double w, double h) {
-  return svg::rectangle(x, y, w, h, none_fill) + svg::line(x + 2, y + 2, x + w - 2, y + h - 2, svg::frame) +
-         svg::line(x + 2, y + h - 2, x + w - 2, y + 2, svg::frame);
-}
+constexpr std::string_view lost_mark = "#D55E00";
 
 // Every how many-th label has room.
 std::size_t label_every(double room_each, double wanted) {
@@ -75,7 +55,7 @@ std::string sweep_map(const SweepPicture& p) {
       const Cell& cell = cells[x * ny + y];
       const double at_x = left + w * static_cast<double>(x), at_y = bottom - h * static_cast<double>(y + 1);
       if (!cell.median) {
-        body += crossed(at_x, at_y, w, h);
+        body += crossed_cell(at_x, at_y, w, h);
         any_none = true;
         continue;
       }
@@ -115,9 +95,9 @@ std::string sweep_map(const SweepPicture& p) {
   }
   double row = bottom + 62;
   if (any_none) {
-    body += crossed(left, row - 11, 16, 12) + svg::text(left + 24, row,
-                                                        "no figure: not run, diverged, refused, or nothing to judge",
-                                                        {11, "start", svg::soft_ink});
+    body += crossed_cell(left, row - 11, 16, 12) +
+            svg::text(left + 24, row, "no figure: not run, diverged, refused, or nothing to judge",
+                      {11, "start", svg::soft_ink});
     row += 18;
   }
   if (any_lost) {
