@@ -1,0 +1,19 @@
+// The transfer function at one point: G(s) = C (s I - A)^-1 B + D, p x m; s = z for a discrete system.
+//
+// At a pole LinearError names it.
+#pragma once
+
+#include "plant/linear/system.hpp"
+
+namespace slipbench::linear {
+
+ComplexMatrix transfer_at(const System& system, Complex s);
+
+// Largest ||G_a - G_b||_F / ||G_a||_F over points off both systems' poles (a circle around them): are these one plant?
+// 0 for two systems without inputs or outputs.
+double transfer_difference(const System& a, const System& b);
+
+// C A^k B for k = 0 .. count-1: D's followers in the impulse response.
+std::vector<Matrix> markov_parameters(const System& system, int count);
+
+}  // namespace slipbench::linear
