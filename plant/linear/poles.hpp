@@ -4,8 +4,9 @@
 // -1/Re p in s (infinite on the axis, negative when it grows). A discrete pole z means p = log(z) / sample_period_s, its
 // principal value; z = 0 (dead beat) has damping 1, infinite frequency, time constant 0.
 //
-// Stable: every pole left of the axis (inside the circle) by more than the tolerance 1e-12 n ||A|| (balanced), marginal:
-// some pole within it and no Jordan block there, unstable: else. Poles closer to each other than rounding can tell
+// Stable: every pole left of the axis (inside the circle) by more than the tolerance; marginal: some pole within it and no
+// Jordan block there; unstable: else. The tolerance is 64 times what rounding moves the pole by, n eps ||A|| / |y'x|
+// (A balanced, y and x its left and right unit eigenvectors). Poles closer to each other than rounding can tell
 // ((n eps)^(1/k) ||A|| for k of them) are one repeated pole at their mean when A - p I has fewer than k null directions.
 #pragma once
 
@@ -34,11 +35,13 @@ struct Verdict {
 };
 Verdict stability_of(const System& system);
 
-// Poles that rounding can't tell apart, as one: their mean, how many, how many null directions of A - mean I.
+// Poles that rounding can't tell apart, as one: their mean, how many, how many null directions of A - mean I. In the
+// order of eigenvalues().
 struct PoleGroup {
   Complex pole;
   Eigen::Index count = 1, eigenvectors = 1;
-  double spread = 0.0;  // largest distance of a computed pole from the mean
+  double spread = 0.0;       // largest distance of a computed pole from the mean
+  double uncertainty = 0.0;  // how far rounding may have moved it (the mean, when repeated)
 };
 std::vector<PoleGroup> pole_groups(const Matrix& a);
 

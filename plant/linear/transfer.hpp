@@ -9,8 +9,8 @@ namespace slipbench::linear {
 
 ComplexMatrix transfer_at(const System& system, Complex s);
 
-// Largest ||G_a - G_b||_F / ||G_a||_F over points off both systems' poles (a circle around them): are these one plant?
-// 0 for two systems without inputs or outputs.
+// Largest ||G_a - G_b||_F over sixteen points off both systems' poles (circles about as large as the poles), relative to the
+// largest ||G_a||_F there: are these one plant? 0 for two systems without inputs or outputs.
 double transfer_difference(const System& a, const System& b);
 
 // C A^k B for k = 0 .. count-1: D's followers in the impulse response.
