@@ -107,9 +107,16 @@ CurrentLoopGains current_loop_gains(const CurrentLoopDesign& design, double w) {
   Q.topLeftCorner(2, 2) = Matrix::Identity(2, 2);
   if (integral) Q.bottomRightCorner(2, 2) = square(design.integral_bandwidth) * Matrix::Identity(2, 2);
 
-  const StateFeedback found = integral ? lqr_with_integral(plant, Q, R) : lqr(plant, Q, R);
+  // Voltage that keeps the flux from moving the current, u = E x + v: the weight is on v.
+  const Matrix by_voltage = design.delay_periods == 0 ? plant.B.topRows(2) : plant.A.block(0, n - 2, 2, 2);
+  Matrix E = Matrix::Zero(2, n);
+  E.middleCols(2, 2) = -by_voltage.partialPivLu().solve(plant.A.block(0, 2, 2, 2));
+  System weighed = plant;
+  weighed.A += plant.B * E;
+
+  const StateFeedback found = integral ? lqr_with_integral(weighed, Q, R) : lqr(weighed, Q, R);
   CurrentLoopGains gains;
-  gains.K = found.K.leftCols(n);
+  gains.K = found.K.leftCols(n) - E;
   gains.poles = found.poles;
   gains.residual = found.residual, gains.condition = found.condition, gains.warning = found.warning;
   const ReferenceGain reference = reference_gain(plant, gains.K);

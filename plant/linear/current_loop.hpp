@@ -6,8 +6,8 @@
 // the frame follows the flux; in samples of period T with the voltages under way as states, x = (i, psi, u(k-1), ...):
 //   x(k+1) = F x(k) + G u(k),   y = i.  The voltage stands still while the frame turns; u is as seen in the middle of its period.
 //
-// Weights: 1 on each component of the current error, rho = 1 / (alpha_c L_sigma)^2 on the voltage (a lone inductance then has the
-// pole alpha_c), w_I^2 on the integral of the error. N lets the current settle at its reference; with integral action less, by
+// Weights: 1 on each component of the current error, rho = 1 / (alpha_c L_sigma)^2 on the voltage beyond what makes up for the
+// flux's push on the current (the back-EMF is no effort to be saved; a lone inductance then has the pole alpha_c), w_I^2 on the integral of the error. N lets the current settle at its reference; with integral action less, by
 // K_I times the error that the loop without it sums up on the way: so that no overshoot has to pay for that sum.
 //
 // psi = psi_r of the T circuit Wb, i A, u V (all peak), w_r electrical rad/s, alpha_c, w_I rad/s, R = R_s + g^2 R_r, g = L_m/L_r.

@@ -16,11 +16,10 @@ double rank_tolerance(Eigen::Index rows, Eigen::Index columns) {
 }
 
 Svd svd(const Matrix& m) {
-  if (m.size() == 0)
-    return {Matrix::Identity(m.rows(), m.rows()), Matrix::Identity(m.cols(), m.cols()), Vector()};
+  if (m.size() == 0) return {Matrix::Identity(m.rows(), m.rows()), Matrix::Identity(m.cols(), m.cols()), Vector()};
   // The default preconditioner has no full U and V for matrices that are not square.
-  const Eigen::JacobiSVD<Matrix, Eigen::FullPivHouseholderQRPreconditioner> of(m,
-                                                                               Eigen::ComputeFullU | Eigen::ComputeFullV);
+  const Eigen::JacobiSVD<Matrix, Eigen::FullPivHouseholderQRPreconditioner> of(
+      m, Eigen::ComputeFullU | Eigen::ComputeFullV);
   return {of.matrixU(), of.matrixV(), of.singularValues()};
 }
 
@@ -77,9 +76,8 @@ std::vector<Complex> eigenvalues(const Matrix& a) {
   const Eigen::EigenSolver<Matrix> solver(balanced, false);
   if (solver.info() != Eigen::Success) throw LinearError("the eigenvalues of A did not converge: is it finite?");
   for (const Complex& value : solver.eigenvalues()) values.push_back(value);
-  std::sort(values.begin(), values.end(), [](Complex x, Complex y) {
-    return x.real() != y.real() ? x.real() > y.real() : x.imag() > y.imag();
-  });
+  std::sort(values.begin(), values.end(),
+            [](Complex x, Complex y) { return x.real() != y.real() ? x.real() > y.real() : x.imag() > y.imag(); });
   return values;
 }
 
@@ -88,9 +86,8 @@ std::string direction_text(const System& system, const Vector& direction) {
   if (length == 0.0) return "no state";
   std::vector<Eigen::Index> order(static_cast<std::size_t>(direction.size()));
   for (std::size_t i = 0; i < order.size(); ++i) order[i] = static_cast<Eigen::Index>(i);
-  std::stable_sort(order.begin(), order.end(), [&](Eigen::Index i, Eigen::Index j) {
-    return std::fabs(direction(i)) > std::fabs(direction(j));
-  });
+  std::stable_sort(order.begin(), order.end(),
+                   [&](Eigen::Index i, Eigen::Index j) { return std::fabs(direction(i)) > std::fabs(direction(j)); });
   const Vector weight = direction / (direction(order[0]) < 0.0 ? -length : length);
   if (weight(order[0]) * weight(order[0]) >= 0.9) return system.state_name(order[0]);
   std::string text = "a combination of ";

@@ -27,9 +27,12 @@ bool harmless(const Matrix& left, double period_s, const char* cannot, std::stri
   const Verdict verdict = stability_of(rest);
   const bool fine = verdict.stability == Stability::stable;
   if (why) {
-    if (left.rows() == 0) *why = std::string("no mode ") + cannot;
-    else if (fine) *why = std::string("every mode that ") + cannot + " dies out by itself: " + verdict.why;
-    else *why = std::string("a mode that ") + cannot + " is not stable: " + verdict.why;
+    if (left.rows() == 0)
+      *why = std::string("no mode ") + cannot;
+    else if (fine)
+      *why = std::string("every mode that ") + cannot + " dies out by itself: " + verdict.why;
+    else
+      *why = std::string("a mode that ") + cannot + " is not stable: " + verdict.why;
   }
   return fine;
 }

@@ -61,8 +61,7 @@ Mode mode_of(Complex pole, double period_s) {
 std::vector<Mode> modes_of(const System& system) {
   std::vector<Complex> poles = eigenvalues(system.A);
   if (system.discrete())
-    std::stable_sort(poles.begin(), poles.end(),
-                     [](Complex x, Complex y) { return magnitude(x) > magnitude(y); });
+    std::stable_sort(poles.begin(), poles.end(), [](Complex x, Complex y) { return magnitude(x) > magnitude(y); });
   std::vector<Mode> modes;
   for (const Complex& pole : poles) modes.push_back(mode_of(pole, system.sample_period_s));
   return modes;

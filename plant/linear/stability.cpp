@@ -21,9 +21,12 @@ std::string with_pair(Complex p) { return p.imag() != 0.0 ? pole_text(p) + " and
 
 const char* name_of(Stability stability) {
   switch (stability) {
-    case Stability::stable: return "stable";
-    case Stability::marginal: return "marginal";
-    default: return "unstable";
+    case Stability::stable:
+      return "stable";
+    case Stability::marginal:
+      return "marginal";
+    default:
+      return "unstable";
   }
 }
 
@@ -59,7 +62,8 @@ Verdict stability_of(const System& system) {
                   " (a Jordan block): it grows with time";
   } else if (marginal) {
     verdict.stability = Stability::marginal;
-    verdict.why = with_pair(decides.pole) + " on the " + border + within + ", no Jordan block: it neither dies nor grows";
+    verdict.why =
+        with_pair(decides.pole) + " on the " + border + within + ", no Jordan block: it neither dies nor grows";
   } else {
     verdict.why = with_pair(decides.pole) + " is the slowest: time constant " + number(mode.time_constant_s) + " s";
   }

@@ -7,13 +7,13 @@
 
 namespace slipbench::linear {
 
-Staircase controllable_staircase(const Matrix& A, const Matrix& B, double tolerance) {
+Staircase controllable_part(const Matrix& A, const Matrix& B, double tolerance, double size_a, double size_b) {
   const auto n = A.rows();
   Staircase out;
   out.T = Matrix::Identity(n, n);
-  out.tolerance = tolerance > 0.0 ? tolerance : rank_tolerance(n, n);
+  out.tolerance = tolerance;
   Matrix a = A, step = B;
-  double size = B.norm();
+  double size = size_b;
   while (out.rank < n && step.size() > 0) {
     // The rows of `step` still to be reached; its range joins the subspace, its left null space is left over.
     const Svd of = svd(step);
@@ -30,9 +30,14 @@ Staircase controllable_staircase(const Matrix& A, const Matrix& B, double tolera
     out.rank += rank;
     out.blocks.push_back(rank);
     step = a.block(out.rank, from, n - out.rank, rank);
-    size = A.norm();
+    size = size_a;
   }
   return out;
+}
+
+Staircase controllable_staircase(const Matrix& A, const Matrix& B, double tolerance) {
+  const auto n = A.rows();
+  return controllable_part(A, B, tolerance > 0.0 ? tolerance : rank_tolerance(n, n), A.norm(), B.norm());
 }
 
 Staircase observable_staircase(const Matrix& A, const Matrix& C, double tolerance) {

@@ -26,6 +26,9 @@ struct Staircase {
 Staircase controllable_staircase(const Matrix& A, const Matrix& B, double tolerance = 0.0);
 Staircase observable_staircase(const Matrix& A, const Matrix& C, double tolerance = 0.0);
 
+// The same with the sizes of A and B to compare with: for a block of a larger pair, which may be all rounding.
+Staircase controllable_part(const Matrix& A, const Matrix& B, double tolerance, double size_a, double size_b);
+
 // Ranks of a system, decided in balanced units; warning (else empty) where the given units would decide otherwise.
 struct Ranks {
   Eigen::Index controllable = 0, observable = 0;

@@ -79,7 +79,10 @@ std::string table_text(const SettingTable& t) {
 
 std::string section_text(const std::string& name, const Settings& settings) {
   std::vector<std::string> lines;
-  for (const auto& [key, value] : settings.given()) lines.push_back(key + " = " + real_text(value) + "\n");
+  for (const auto& [key, value] : settings.given()) {
+    const bool choice = key == "integral_action";
+    lines.push_back(key + " = " + (choice ? value > 0.5 ? "true" : "false" : real_text(value)) + "\n");
+  }
   std::sort(lines.begin(), lines.end());
   for (const char* key : {"gain_frequency_Hz", "K", "K_integral", "reference_gain", "L"}) {
     if (const SettingTable* table = settings.table(key))
