@@ -123,8 +123,10 @@ CurrentLoopGains current_loop_gains(const CurrentLoopDesign& design, double w) {
   gains.N = reference.N;
   if (integral) {
     gains.K_integral = -plant.sample_period_s * found.K.rightCols(2);
-    // The error summed on the way to a step, the flux already there: C (I - F + G K)^-1 X.
+    // The error summed on the way to a step, flux and its voltage already there: C (I - F + G K)^-1 X.
     Matrix missing = reference.state;
+    for (Index from = 4; from < n; from += 2)
+      missing.middleRows(from, 2) -= E.middleCols(2, 2) * reference.state.middleRows(2, 2);
     missing.middleRows(2, 2).setZero();
     const Matrix closed = Matrix::Identity(n, n) - (plant.A - plant.B * gains.K);
     gains.N -= gains.K_integral * (plant.C * closed.partialPivLu().solve(missing));

@@ -22,4 +22,8 @@ namespace slipbench::linear {
 
 StateFeedback place(const System& system, const std::vector<Complex>& poles);
 
+// The same for a pair of matrices; unmoved is the word for a mode that stays: "unobservable" suits the dual.
+StateFeedback place(const Matrix& A, const Matrix& B, const std::vector<Complex>& poles,
+                    const std::string& unmoved = "uncontrollable");
+
 }  // namespace slipbench::linear

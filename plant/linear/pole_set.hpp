@@ -17,8 +17,6 @@ std::vector<std::size_t> match(const std::vector<Complex>& wished, const std::ve
 
 double pole_distance(const std::vector<Complex>& wished, const std::vector<Complex>& found);
 
-std::vector<Complex> eigenvalues(const Matrix& A);
-
 // "-1, -2 + 3j, -2 - 3j"
 std::string text_of(const std::vector<Complex>& poles);
 

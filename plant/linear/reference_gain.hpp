@@ -24,4 +24,7 @@ struct ReferenceGain {
 
 ReferenceGain reference_gain(const System& system, const Matrix& K);
 
+// LinearError "purpose can't be had: ..." where the outputs outnumber the inputs, or no steady input moves some combination of them.
+void refuse_unsteerable(const System& system, const std::string& purpose);
+
 }  // namespace slipbench::linear
