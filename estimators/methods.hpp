@@ -4,12 +4,13 @@
 #include <tuple>
 
 #include "estimators/extended_kalman.hpp"
+#include "estimators/linear_observer.hpp"
 #include "estimators/luenberger.hpp"
 #include "estimators/reduced_order.hpp"
 
 namespace slipbench {
 
-using EstimatorMethods = std::tuple<Luenberger, ReducedOrder, ExtendedKalman>;
+using EstimatorMethods = std::tuple<Luenberger, ReducedOrder, ExtendedKalman, LinearObserver>;
 
 // Calls f.template operator()<Method>() for each built-in method.
 template <class F>

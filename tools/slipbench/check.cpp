@@ -138,6 +138,9 @@ int check_verb(const Request& request) {
     document.facts.push_back({"cases", "cases", static_cast<double>(plan.cases()), "", ""});
     document.facts.push_back({"runs", "noise runs of each", static_cast<double>(plan.runs), "", ""});
     document.facts.push_back({"keys", "keys that vary", 0.0, fmt::format("{}", fmt::join(plan.keys(), ", ")), ""});
+  } else if (kind == FileKind::gains) {
+    document.kind = "gain file";
+    document.title = read_gain_file(request.file, request.overrides);
   } else {
     if (request.seed) {
       throw InputError("command line", "--seed", "--seed means nothing for a state-space file", "usage");
