@@ -12,33 +12,29 @@ namespace {
 
 constexpr std::array<std::string_view, 5> kinds = {"lqr", "place", "observer", "kalman", "pi"};
 
-struct DesignKey {
-  std::string_view name, goes_with;  // kinds that know it
-};
+using Holds = DesignKey::Holds;
 constexpr DesignKey keys[] = {
-    {"kind", "lqr place observer kalman pi"},
-    {"Q", "lqr observer kalman"},
-    {"R", "lqr observer kalman"},
-    {"N", "lqr observer kalman"},
-    {"Q_integral", "lqr"},
-    {"tracked_outputs", "lqr place observer kalman"},
-    {"controlled_inputs", "lqr place observer kalman"},
-    {"poles", "place observer"},
-    {"controller_poles", "observer kalman"},
-    {"observer_poles", "lqr place"},
-    {"faster_than_controller", "lqr place observer"},
-    {"W", "lqr place kalman"},
-    {"V", "lqr place kalman"},
-    {"rule", "pi"},
-    {"plant_gain", "pi"},
-    {"large_lag_s", "pi"},
-    {"small_lag_s", "pi"},
-    {"symmetric_factor", "pi"},
+    {"kind", "lqr place observer kalman pi", Holds::kind, "what is designed"},
+    {"Q", "lqr observer kalman", Holds::matrix, "weight of the states, symmetric"},
+    {"R", "lqr observer kalman", Holds::matrix, "weight of the controlled inputs, symmetric"},
+    {"N", "lqr observer kalman", Holds::matrix, "cross term, a row a state"},
+    {"Q_integral", "lqr", Holds::matrix, "weight of the tracked outputs' integrals: integral action"},
+    {"tracked_outputs", "lqr place observer kalman", Holds::names, "outputs that a reference is for; default: all"},
+    {"controlled_inputs", "lqr place observer kalman", Holds::names, "inputs that the gain drives; default: all"},
+    {"poles", "place observer", Holds::poles, "wished poles: the controller's (place), the observer's (observer)"},
+    {"controller_poles", "observer kalman", Holds::poles, "poles of the controller beside an observer"},
+    {"observer_poles", "lqr place", Holds::poles, "poles of the observer beside a controller"},
+    {"faster_than_controller", "lqr place observer", Holds::positive,
+     "the observer's poles so many times further out than the controller's; 2 to 5 is common practice"},
+    {"W", "lqr place kalman", Holds::matrix, "noise of the states: intensity, discrete: covariance"},
+    {"V", "lqr place kalman", Holds::matrix, "noise of the outputs: intensity, discrete: covariance"},
+    {"rule", "pi", Holds::rule, "how the PI controller is tuned"},
+    {"plant_gain", "pi", Holds::number, "gain of the plant; default: its DC gain"},
+    {"large_lag_s", "pi", Holds::positive, "large lag, or integration time; default: of the slowest pole"},
+    {"small_lag_s", "pi", Holds::positive, "sum of the small lags; default: of the other poles"},
+    {"symmetric_factor", "pi", Holds::positive, "a of the symmetric optimum, above 1; default 2"},
 };
-
-bool goes_with(const DesignKey& key, std::string_view kind) {
-  return (" " + std::string(key.goes_with) + " ").find(" " + std::string(kind) + " ") != std::string::npos;
-}
+constexpr std::string_view rules[] = {"magnitude_optimum", "symmetric_optimum"};
 
 std::vector<std::string_view> known_keys() {
   std::vector<std::string_view> names;
@@ -54,10 +50,10 @@ Node of_kind(const Node& node, const TableReader& t, const std::string& kind) {
   for (const Node& child : node.children) {
     const DesignKey& key =
         *std::find_if(std::begin(keys), std::end(keys), [&](const DesignKey& k) { return k.name == child.name; });
-    if (goes_with(key, kind)) {
+    if (key.goes_with(kind)) {
       kept.children.push_back(child);
     } else if (!kind_was_set || child.place.line == 0) {
-      std::string others(key.goes_with);
+      std::string others(key.kinds);
       for (std::size_t at = 0; (at = others.find(' ', at)) != std::string::npos; at += 2) others.replace(at, 1, ", ");
       refuse(child.name_place, t.dotted(child.name),
              "'" + t.dotted(child.name) + "' does not go with kind = \"" + kind + "\"; it belongs to " + others,
@@ -132,6 +128,14 @@ void read_matrices(DesignRequest& d, const TableReader& t, const linear::System&
 
 }  // namespace
 
+bool DesignKey::goes_with(std::string_view kind) const {
+  return (" " + std::string(kinds) + " ").find(" " + std::string(kind) + " ") != std::string::npos;
+}
+
+std::span<const DesignKey> design_keys() { return keys; }
+std::span<const std::string_view> design_kinds() { return kinds; }
+std::span<const std::string_view> pi_rules() { return rules; }
+
 std::string_view name_of(DesignKind kind) { return kinds[static_cast<std::size_t>(kind)]; }
 
 DesignRequest read_design(const Node& node, const linear::System& s) {
@@ -143,7 +147,7 @@ DesignRequest read_design(const Node& node, const linear::System& s) {
   const Node kept = of_kind(node, all, kind);
   const TableReader t(kept, "design", known_keys());
   if (d.kind == DesignKind::pi) {
-    d.rule = t.word("rule", {"magnitude_optimum", "symmetric_optimum"});
+    d.rule = t.word("rule", {std::begin(rules), std::end(rules)});
     if (t.child("plant_gain") != nullptr) {
       d.plant_gain = t.number("plant_gain");
       if (*d.plant_gain == 0.0) t.wrong(*t.child("plant_gain"), "plant_gain", "a number other than 0", "range");

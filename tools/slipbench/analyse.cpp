@@ -5,6 +5,7 @@
 
 #include "sim/record/out_file.hpp"
 #include "sim/scenario/system_file.hpp"
+#include "tools/slipbench/analyse_drive.hpp"
 #include "tools/slipbench/analysis.hpp"
 #include "tools/slipbench/linear_json.hpp"
 #include "tools/slipbench/verbs.hpp"
@@ -30,13 +31,21 @@ Analysis of_system_file(const Request& request) {
 
 int analyse_verb(const Request& request) {
   const FileKind kind = kind_of_file(request.file);
-  if (kind != FileKind::system)
+  const bool drive = kind == FileKind::scenario || kind == FileKind::machine;
+  if (kind != FileKind::system && !drive)
     throw InputError(request.file, "",
-                     "analyse wants a state-space file (one with [system]); this is " + kind_text(kind), "kind");
-  if (request.seed) throw InputError("command line", "--seed", "--seed means nothing for a state-space file", "usage");
+                     "analyse wants a state-space file (one with [system]), a scenario or a machine file; this is " +
+                         kind_text(kind),
+                     "kind");
+  if (request.seed && kind != FileKind::scenario)
+    throw InputError("command line", "--seed", "--seed means nothing for " + kind_text(kind), "usage");
+  if (!request.map.empty() && !drive)
+    throw InputError("command line", "--map", "--map wants a scenario or a machine file; this is " + kind_text(kind),
+                     "usage");
+  if (!request.map.empty()) return map_of_drive(request, kind);
   std::unique_ptr<OutFile> figure;
   if (!request.figure.empty()) figure = std::make_unique<OutFile>(request.figure);
-  const Analysis a = of_system_file(request);
+  const Analysis a = drive ? analysis_of_drive(request, kind) : of_system_file(request);
   if (figure) {
     figure->write(analysis_figure(a));
     figure->finish();

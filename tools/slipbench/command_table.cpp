@@ -26,15 +26,17 @@ std::span<const VerbRow> verb_rows() {
         "slipbench sweep configs/sweeps/worst_resistances.toml --search ekf.speed_rmse_rpm --budget 44 --write "
         "worst.toml"}},
       {"analyse",
-       "say what a linear system is: poles, what can be moved and seen, minimal form, zeros",
-       "state-space file",
+       "say what a linear system or drive is: poles, what can be moved and seen, zeros; or map where speed can be seen",
+       "state-space, scenario or machine file",
        {"slipbench analyse configs/systems/two_mass_shaft.toml --figure shaft.svg",
+        "slipbench analyse configs/scenarios/hoist_lowering.toml --map speed_observability --figure seen.svg",
         "slipbench analyse configs/systems/current_loop_pi.toml --period 1e-4 --at 50"}},
       {"design",
        "compute gains (LQR, poles placed, observers, PI) and compare the loops they make",
-       "state-space file",
+       "state-space file, or scenario",
        {"slipbench design configs/systems/two_mass_shaft.toml --figure loops.svg",
-        "slipbench design configs/systems/hidden_mode.toml --set design.R=[[0.1]] --json"}},
+        "slipbench design configs/systems/hidden_mode.toml --set design.R=[[0.1]] --json",
+        "slipbench design configs/scenarios/conveyor_hot_rotor.toml --write gains.toml"}},
   };
   return rows;
 }
@@ -43,7 +45,8 @@ std::span<const OptionRow> option_rows() {
   static constexpr OptionRow rows[] = {
       {"--set", "KEY=VALUE", "run check compare sweep analyse design",
        "set a key of the file, dotted; VALUE is TOML or text; repeatable", Takes::key},
-      {"--seed", "N", "run check compare sweep", "seed of every noise; wins over the file and --set", Takes::number},
+      {"--seed", "N", "run check compare sweep analyse design", "seed of every noise; wins over the file and --set",
+       Takes::number},
       {"--run", "R", "run", "take noise run R, as `compare` numbers them from 0", Takes::number},
       {"--runs", "N", "compare", "noise runs (20)", Takes::number},
       {"--in-loop", "", "compare", "each estimator closes the speed loop in turn, instead of all riding along"},
@@ -51,7 +54,7 @@ std::span<const OptionRow> option_rows() {
       {"--case", "K", "run", "of a sweep plan: run case K alone, as the sweep numbers them from 0", Takes::number},
       {"--store", "FILE.sqlite", "sweep",
        "where the rows go (PLAN's name, in this folder); an older one is gone on with", Takes::file},
-      {"--csv", "FILE.csv", "sweep", "write the whole store as CSV, one row a case and run", Takes::file},
+      {"--csv", "FILE.csv", "sweep analyse", "write the whole store (of --map: the map) as CSV", Takes::file},
       {"--isa", "double|sse2|avx2|avx512", "sweep", "instruction set of the packs (the widest there is); double: none",
        Takes::word},
       {"--shard", "I/N", "sweep", "run part I of N (from 0) into a store of its own"},
@@ -60,7 +63,10 @@ std::span<const OptionRow> option_rows() {
       {"--search", "FIGURE", "sweep",
        "look for the keys within the plan's ranges that make this figure largest; no store"},
       {"--budget", "N", "sweep", "with --search: runs to spend (200)", Takes::number},
-      {"--write", "FILE.toml", "sweep", "with --search: the worst case as a scenario of its own", Takes::file},
+      {"--write", "FILE.toml", "sweep design",
+       "with --search: the worst case as a scenario of its own; design of a scenario: its gains, for [controller] to "
+       "name",
+       Takes::file},
       {"--on", "local|slurm", "sweep", "where it runs: here, or as an array of shards on the Slurm that sbatch reaches",
        Takes::word},
       {"--shards", "N", "sweep", "with --on slurm: tasks of the array (16, or as many as there are units of 64 cases)",
@@ -76,6 +82,15 @@ std::span<const OptionRow> option_rows() {
       {"--pace", "FACTOR", "run", "run no faster than FACTOR times real time", Takes::number},
       {"--period", "S", "analyse",
        "of a continuous system: discretise at this period in s, and say what each method costs", Takes::number},
+      {"--map", "speed_observability|estimator_stability", "analyse",
+       "of a drive, over the torque-speed plane: where speed can be seen, or where an estimator is stable",
+       Takes::word},
+      {"--model", "constant_speed|unknown_load|known_load", "analyse",
+       "with --map speed_observability: what is known of the shaft (constant_speed)", Takes::word},
+      {"--estimator", "NAME", "analyse",
+       "with --map estimator_stability: of the scenario, or a built-in kind (the scenario's first, else luenberger)"},
+      {"--path", "FILE.csv", "analyse", "with --map speed_observability: the run's way through the plane as CSV",
+       Takes::file},
       {"--at", "HZ", "analyse design", "gain and phase at this frequency (design: the slowest mode's)", Takes::number},
       {"--keys", "", "check", "in place of FILE: every key of a scenario, with range, default and meaning", {}, true},
       {"--markdown", "", "check", "with --keys: as Markdown tables"},
@@ -83,7 +98,7 @@ std::span<const OptionRow> option_rows() {
        "in place of FILE: JSON Schema of such files, for TOML editors", Takes::word, true},
       {"--json", "", "run check compare sweep analyse design", "one JSON document on standard output, nothing else"},
       {"--quiet", "", "run check compare sweep analyse design", "print nothing but errors"},
-      {"--progress", "", "run compare sweep", "show progress on standard error even if it is no terminal"},
+      {"--progress", "", "run compare sweep analyse", "show progress on standard error even if it is no terminal"},
   };
   return rows;
 }
