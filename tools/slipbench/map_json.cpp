@@ -14,7 +14,7 @@ namespace {
 
 using Json = nlohmann::ordered_json;
 
-Json number(double x) { return std::isfinite(x) ? Json(x) : Json(nullptr); }
+Json value_of(double x) { return std::isfinite(x) ? Json(x) : Json(nullptr); }
 
 std::string text_of(const Json& document) {
   return document.dump(2, ' ', false, Json::error_handler_t::replace) + "\n";
@@ -29,7 +29,7 @@ Json plane_json(const Plane& p) {
 
 Json line_json(const std::vector<PlanePoint>& line) {
   Json points = Json::array();
-  for (const PlanePoint& p : line) points.push_back({number(p.speed_rpm), number(p.torque_Nm)});
+  for (const PlanePoint& p : line) points.push_back({value_of(p.speed_rpm), value_of(p.torque_Nm)});
   return points;
 }
 
@@ -48,7 +48,7 @@ Json table_json(const SettingTable& t) {
     Json m = Json::array();
     for (std::size_t i = 0; i < t.rows; ++i) {
       Json row = Json::array();
-      for (std::size_t j = 0; j < t.columns; ++j) row.push_back(number(t(n, i, j)));
+      for (std::size_t j = 0; j < t.columns; ++j) row.push_back(value_of(t(n, i, j)));
       m.push_back(std::move(row));
     }
     all.push_back(std::move(m));
@@ -62,14 +62,14 @@ std::string linear_json(const ObservabilityMap& m) {
   Json d = head("speed_observability", m.title, m.plane, m.lines);
   d["model"] = linear::name_of(m.model);
   d["smallest_singular_value"] = Json::array();  // speed the slower, as in the CSV
-  for (const double x : m.smallest) d["smallest_singular_value"].push_back(number(x));
-  d["at_rated"] = number(m.at_rated);
+  for (const double x : m.smallest) d["smallest_singular_value"].push_back(value_of(x));
+  d["at_rated"] = value_of(m.at_rated);
   d["path"] = nullptr;
   if (m.path)
     d["path"] = {{"duration_s", m.path->duration_s},
                  {"blind_s", m.path->blind_s},
                  {"longest_blind_s", m.path->longest_blind_s},
-                 {"longest_from_s", number(m.path->longest_from_s)},
+                 {"longest_from_s", value_of(m.path->longest_from_s)},
                  {"diverged", m.path->diverged}};
   return text_of(d);
 }
@@ -81,7 +81,7 @@ std::string linear_json(const EstimatorMap& m) {
   d["stable"] = counts.stable, d["unstable"] = counts.unstable, d["unsettled"] = counts.unsettled;
   d["points"] = Json::array();
   for (const EstimatorPoint& p : m.points)
-    d["points"].push_back({{"state", name_of(p.state)}, {"slowest_per_s", number(p.slowest_per_s)}});
+    d["points"].push_back({{"state", name_of(p.state)}, {"slowest_per_s", value_of(p.slowest_per_s)}});
   return text_of(d);
 }
 
@@ -91,21 +91,21 @@ std::string linear_json(const DriveDesign& design, const std::string& title) {
     const SettingTable* table = design.controller.table(name);
     if (table != nullptr) d[name] = table_json(*table);
   }
-  d["gain_period_s"] = number(design.controller.value("gain_period_s", std::nan("")));
+  d["gain_period_s"] = value_of(design.controller.value("gain_period_s", std::nan("")));
   d["points"] = Json::array();
   double residual = 0.0, condition = 0.0;
   for (const DriveDesignPoint& p : design.points) {
     Json poles = Json::array();
-    for (const linear::Complex& z : p.poles) poles.push_back({number(z.real()), number(z.imag())});
+    for (const linear::Complex& z : p.poles) poles.push_back({value_of(z.real()), value_of(z.imag())});
     Json one = {{"frequency_Hz", p.frequency_Hz},
                 {"closed_loop_poles", std::move(poles)},
-                {"residual", number(p.residual)},
-                {"condition", number(p.condition)}};
+                {"residual", value_of(p.residual)},
+                {"condition", value_of(p.condition)}};
     if (!p.warning.empty()) one["warning"] = p.warning;
     d["points"].push_back(std::move(one));
     residual = std::max(residual, p.residual), condition = std::max(condition, p.condition);
   }
-  d["residual"] = number(residual), d["condition"] = number(condition);
+  d["residual"] = value_of(residual), d["condition"] = value_of(condition);
   return text_of(d);
 }
 
