@@ -102,7 +102,8 @@ std::vector<PoleGroup> pole_groups(const Matrix& given) {
       if (directions == k && cluster.radius > coincide) continue;
       Complex mean = cluster.mean;
       if (std::fabs(mean.imag()) <= rounding * norm) mean.imag(0.0);
-      group = {mean, k, std::max<Eigen::Index>(directions, 1), cluster.radius, std::max(cluster.radius / 64.0, rounding * norm)};
+      group = {mean, k, std::max<Eigen::Index>(directions, 1), cluster.radius,
+               std::max(cluster.radius / 64.0, rounding * norm)};
       if (directions < k) group.uncertainty = std::max(rounding, trusted_digits / 64.0) * norm;
       break;
     }

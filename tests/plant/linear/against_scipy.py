@@ -110,11 +110,20 @@ def ranks(line, given, values):
 def zeros(line, given):
     A, B, C, D = given
     n, p, m = len(A), *D.shape
-    if p != m:
-        return
     pencil = np.block([[A, B], [C, D]])
     mass = np.zeros_like(pencil)
     mass[:n, :n] = np.eye(n)
+    # Singular at any s (a transfer function of lower rank): what QZ says of such a pencil means nothing.
+    if la.svdvals(pencil - (0.3 + 0.4j) * mass)[-1] < 1e-12 * la.norm(pencil):
+        return
+    if p != m:
+        # A random pencil that is not square loses rank at the modes its longer side can't help: those that the inputs
+        # can't move when there are more inputs, those that the outputs don't show when there are more outputs.
+        _, c, o, neither = line["parts"]
+        hidden = (o if m > p else c) + neither
+        expect("zeros: count, not square", line["at"], float(len(matrix(line["invariant_zeros"])) != hidden), 0.0)
+        expect("transmission zeros, not square", line["at"], float(len(matrix(line["transmission_zeros"]))), 0.0)
+        return
     ours = complex_list(line["invariant_zeros"])
     with np.errstate(all="ignore"):
         theirs = la.eigvals(pencil, mass)
@@ -190,9 +199,11 @@ def forms(line, given):
         for angle in (0.3, 1.1, 1.9, 2.7):
             s = 1.5 * radius * np.exp(1j * angle) if line["period_s"] else 1.5j * radius * angle
             # States below n sqrt(eps) of the largest value are left out: twice their sum (Glover 1984), no more.
+            # Beside that the rounding of C (s - A)^-1 B, whose parts may cancel to nothing.
+            rounding = 100 * EPS * la.norm(B) * la.norm(C) / la.svdvals(s * np.eye(len(A)) - A)[-1]
             floor = len(A) * np.sqrt(EPS) * hankel.max(initial=0.0)
             expect("balanced: transfer function", line["at"], la.norm(gain(*given, s) - gain(*form, s)),
-                   2 * len(A) * floor + 1e-10 * la.norm(gain(*given, s)))
+                   2 * len(A) * floor + 1e-10 * la.norm(gain(*given, s)) + rounding)
 
 
 def main():

@@ -120,7 +120,8 @@ TEST_CASE("minimal realisation: a difference of two equal lags is named as a com
 
 // SLICOT Library, example of TB01PD: the system is minimal as it stands.
 TEST_CASE("minimal realisation: the example of TB01PD keeps its order", "[linear][published]") {
-  const System s = system_of(rows({{1, 2, 0}, {4, -1, 0}, {0, 0, 1}}), rows({{1}, {0}, {1}}), rows({{0, 1, -1}, {0, 0, 1}}));
+  const System s =
+      system_of(rows({{1, 2, 0}, {4, -1, 0}, {0, 0, 1}}), rows({{1}, {0}, {1}}), rows({{0, 1, -1}, {0, 0, 1}}));
   const Minimal m = minimal(s);
   CHECK(m.system.A == s.A);
   CHECK(m.removed.empty());

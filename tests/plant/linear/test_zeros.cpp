@@ -48,9 +48,9 @@ TEST_CASE("zeros: a mode that cancels is an invariant zero, no transmission zero
 TEST_CASE("zeros: more outputs than inputs", "[linear][published]") {
   // Each column over (s+1)(s+2) = s^2 + 3 s + 2: numerators less D times the denominator.
   const Matrix d = rows({{0, 0}, {1, 2}, {1, 2}});
-  System s = system_of(rows({{0, 1, 0, 0}, {-2, -3, 0, 0}, {0, 0, 0, 1}, {0, 0, -2, -3}}),
-                       rows({{0, 0}, {1, 0}, {0, 0}, {0, 1}}),
-                       rows({{1, 0, -1, 0}, {-6, -2, -12, -7}, {-6, -3, -12, -6}}));
+  System s =
+      system_of(rows({{0, 1, 0, 0}, {-2, -3, 0, 0}, {0, 0, 0, 1}, {0, 0, -2, -3}}),
+                rows({{0, 0}, {1, 0}, {0, 0}, {0, 1}}), rows({{1, 0, -1, 0}, {-6, -2, -12, -7}, {-6, -3, -12, -6}}));
   s.D = d;
   const auto z = transmission_zeros(s);
   REQUIRE(z.size() == 1);
