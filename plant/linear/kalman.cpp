@@ -30,7 +30,8 @@ Observer stationary_kalman(const System& given, const Matrix& W, const Matrix& V
   o.P = r.X;
   if (s.discrete()) {
     const Matrix innovation = s.C * r.X * Ct + V;
-    o.M = innovation.fullPivLu().solve(s.C * r.X).transpose();
+    o.M = s.outputs() > 0 ? Matrix(innovation.fullPivLu().solve(s.C * r.X).transpose())
+                          : Matrix(Matrix::Zero(s.order(), 0));
     const Matrix kept = Matrix::Identity(s.order(), s.order()) - o.M * s.C;
     o.P_filtered = kept * r.X * kept.transpose() + o.M * V * o.M.transpose();
   }

@@ -16,7 +16,7 @@ StateFeedback lqr(const System& given, const Matrix& Q, const Matrix& R, const M
   s.discrete() ? expect_semidefinite("R", R) : expect_definite("R", R);
   std::string why;
   if (!stabilisable(s, &why)) throw LinearError("no state feedback stabilises the system: " + why);
-  if (smallest_eigenvalue(R) > 0.0) {
+  if (s.inputs() > 0 && smallest_eigenvalue(R) > 0.0) {
     // With the cross term taken into the input, u = v - R^-1 N'x, the weight on x is Q - N R^-1 N' and the plant A - B R^-1 N'.
     Matrix A = s.A, seen = Q;
     if (N.rows() == s.order() && N.cols() == s.inputs()) {

@@ -142,7 +142,12 @@ StateFeedback place(const Matrix& A, const Matrix& B, const std::vector<Complex>
   f.K = Matrix::Zero(B.cols(), n);
   if (n > 0) {
     // Ranks are decided in balanced units: x = diag(state) z, u = diag(input) v.
-    const auto units = in_balanced_units({A, B, Matrix::Zero(0, n), Matrix::Zero(0, B.cols())});
+    System pair;
+    pair.A = A;
+    pair.B = B;
+    pair.C = Matrix::Zero(0, n);
+    pair.D = Matrix::Zero(0, B.cols());
+    const auto units = in_balanced_units(pair);
     const auto stairs = controllable_staircase(units.system.A, units.system.B);
     const auto r = stairs.rank;
     Gain gain;

@@ -41,6 +41,12 @@ Scaled equilibrated(Matrix m) {
   return s;
 }
 
+// M^-1 right by the equilibrated M.
+Matrix solved(const Scaled& s, const Matrix& right) {
+  if (s.M.size() == 0) return Matrix::Zero(s.M.cols(), right.cols());
+  return s.column.asDiagonal() * Matrix(s.M.fullPivLu().solve(Matrix(s.row.asDiagonal() * right)));
+}
+
 // [A B; C D], discrete A - I.
 Matrix steady(const System& s) {
   const auto n = s.order(), m = s.inputs(), p = s.outputs();
@@ -84,10 +90,9 @@ ReferenceGain reference_gain(const System& given, const Matrix& K) {
   const auto direct = equilibrated(steady(s));
   Matrix wish = Matrix::Zero(n + p, p);
   wish.bottomRows(p).setIdentity();
-  const Matrix solved =
-      direct.column.asDiagonal() * Matrix(direct.M.fullPivLu().solve(Matrix(direct.row.asDiagonal() * wish)));
-  g.state = solved.topRows(n);
-  g.input = solved.bottomRows(m);
+  const Matrix both = solved(direct, wish);
+  g.state = both.topRows(n);
+  g.input = both.bottomRows(m);
   g.N = g.input + K * g.state;
 
   const Matrix closed = s.A - s.B * K;
@@ -96,13 +101,11 @@ ReferenceGain reference_gain(const System& given, const Matrix& K) {
   if (spread(inner.M) > 1.0 / trusted_digits)
     throw LinearError(std::string("a reference gain can't be had: the closed loop has a pole at ") +
                       (s.discrete() ? "z = 1" : "s = 0"));
-  const Matrix moved =
-      inner.column.asDiagonal() * Matrix(inner.M.fullPivLu().solve(Matrix(inner.row.asDiagonal() * s.B)));
+  const Matrix moved = solved(inner, s.B);
   const Matrix dc = s.D - (s.C - s.D * K) * moved;
   const auto outer = equilibrated(dc);
   g.condition = std::max(g.condition, spread(outer.M) * spread(inner.M));
-  g.N_from_dc_gain = outer.column.asDiagonal() *
-                     Matrix(outer.M.fullPivLu().solve(Matrix(outer.row.asDiagonal() * Matrix::Identity(p, p))));
+  g.N_from_dc_gain = solved(outer, Matrix::Identity(p, p));
   const double size = std::max(g.N.norm(), (K * g.state).norm());
   g.difference = size > 0.0 ? (g.N - g.N_from_dc_gain).norm() / size : 0.0;
   if (g.difference > 100.0 * unit * g.condition)

@@ -58,20 +58,33 @@ double weight_scale(const Problem& p, const Matrix& X) {
 }
 
 Matrix gain(const Problem& p, const Matrix& X) {
+  if (p.B.size() == 0) return Matrix::Zero(p.B.cols(), p.A.rows());
   const Matrix right =
       p.B.transpose() * X * (p.discrete ? p.A : Matrix::Identity(p.A.rows(), p.A.rows())) + p.N.transpose();
   return weight(p, X).fullPivLu().solve(right);
 }
 
+constexpr const char* idle =
+    "R + B'X B is singular: some combination of the inputs has neither weight nor effect; give it a weight in R or "
+    "leave it "
+    "out of B";
+
 void refuse_singular_weight(const Problem& p, const Matrix& X) {
   if (p.B.cols() == 0) return;
   const double scale = weight_scale(p, X), smallest = singular_values(weight(p, X)).minCoeff();
   if (smallest > 1e-14 * scale) return;
-  throw LinearError(
-      p.discrete ? "R + B'X B is singular: some combination of the inputs has neither weight nor effect; give it a "
-                   "weight in R or leave it out of B"
-                 : "R is singular (smallest singular value " + short_text(smallest) +
-                       "): every combination of the inputs needs a weight");
+  if (p.discrete) throw LinearError(idle);
+  throw LinearError("R is singular (smallest singular value " + short_text(smallest) +
+                    "): every combination of the inputs needs a weight");
+}
+
+// Before X is known: [B; N; R] without full column rank leaves R + B'X B singular for every X.
+void refuse_idle_input(const Problem& p) {
+  if (p.B.cols() == 0 || p.B.rows() == 0) return;
+  Matrix column(2 * p.B.rows() + p.B.cols(), p.B.cols());
+  column << p.B, p.N, p.R;
+  const auto values = singular_values(column);
+  if (!(values.minCoeff() > 1e-14 * values.maxCoeff())) throw LinearError(idle);
 }
 
 struct Residual {
@@ -148,7 +161,10 @@ Vector scales_from(const Matrix& X) {
 
 Riccati solved(const Problem& given) {
   const auto n = given.A.rows();
-  if (!given.discrete) refuse_singular_weight(given, Matrix::Zero(n, n));
+  if (given.discrete)
+    refuse_idle_input(given);
+  else
+    refuse_singular_weight(given, Matrix::Zero(n, n));
   Vector d = riccati_balance(given.A, given.B, given.Q, given.R, given.N);
   Matrix best;
   double lowest = 0.0, trust = 1.0;

@@ -75,10 +75,16 @@ void improve_pair(Matrix& X, const Column& c) {
   ComplexMatrix J(2, 2);
   J << 0.0, Complex(0.0, 0.5), Complex(0.0, -0.5), 0.0;
   const ComplexMatrix M = c.S.adjoint() * Q * J * Q.transpose() * c.S;
-  const Eigen::SelfAdjointEigenSolver<ComplexMatrix> solver(0.5 * (M + M.adjoint()));
+  // As a real symmetric matrix of twice the size: Eigen's Hermitian solver scales by the C library's complex magnitude.
+  const auto r = M.rows();
+  Matrix both(2 * r, 2 * r);
+  both << M.real(), -M.imag(), M.imag(), M.real();
+  const Eigen::SelfAdjointEigenSolver<Matrix> solver(0.5 * (both + both.transpose()));
   Index best = 0;
   solver.eigenvalues().cwiseAbs().maxCoeff(&best);
-  if (std::abs(solver.eigenvalues()(best)) > 0.0) set(X, c, solver.eigenvectors().col(best));
+  if (!(std::abs(solver.eigenvalues()(best)) > 0.0)) return;
+  const Vector w = solver.eigenvectors().col(best);
+  set(X, c, w.head(r).cast<Complex>() + Complex(0.0, 1.0) * w.tail(r).cast<Complex>());
 }
 
 void improve_one(Matrix& X, const Column& c) {

@@ -46,9 +46,8 @@ Mapped mapped(const Pencil& p, bool discrete) {
   return {minus.solve(p.M + p.L), true, -1.0};
 }
 
-// Neighbours on the diagonal change places by a unitary rotation.
-void swap(ComplexMatrix& T, ComplexMatrix& U, Index k) {
-  const Complex a = T(k, k), b = T(k + 1, k + 1), c = T(k, k + 1), d = b - a;
+// The plane of rows and columns k, k + 1 is turned by the unitary rotation whose first column is along (c, d).
+void turn(ComplexMatrix& T, ComplexMatrix& U, Index k, Complex c, Complex d) {
   const double r = slipbench::sqrt(std::norm(c) + std::norm(d));
   if (r == 0.0) return;
   const Complex cs = c / r, sn = d / r;
@@ -57,9 +56,28 @@ void swap(ComplexMatrix& T, ComplexMatrix& U, Index k) {
   T.middleCols(k, 2) = (T.middleCols(k, 2) * G).eval();
   T.middleRows(k, 2) = (G.adjoint() * T.middleRows(k, 2)).eval();
   U.middleCols(k, 2) = (U.middleCols(k, 2) * G).eval();
+  T(k + 1, k) = 0.0;
+}
+
+void swap(ComplexMatrix& T, ComplexMatrix& U, Index k) {
+  const Complex a = T(k, k), b = T(k + 1, k + 1);
+  turn(T, U, k, T(k, k + 1), b - a);
   T(k, k) = b;
   T(k + 1, k + 1) = a;
-  T(k + 1, k) = 0.0;
+}
+
+// Pairs on the diagonal of a real Schur form are parted. (Eigen's complex form calls the C library's complex root.)
+void triangular(ComplexMatrix& T, ComplexMatrix& U) {
+  for (Index k = 0; k + 1 < T.rows(); ++k) {
+    if (T(k + 1, k) == 0.0) continue;
+    const double a = T(k, k).real(), b = T(k, k + 1).real(), c = T(k + 1, k).real(), d = T(k + 1, k + 1).real();
+    const double mean = 0.5 * (a + d), half = 0.5 * (a - d), inside = half * half + b * c;
+    const double root = slipbench::sqrt(std::abs(inside));
+    const Complex first = inside < 0.0 ? Complex(mean, root) : Complex(mean + root);
+    turn(T, U, k, b, first - a);
+    T(k, k) = first;
+    T(k + 1, k + 1) = inside < 0.0 ? std::conj(first) : Complex(mean - root);
+  }
 }
 
 void stable_first(ComplexMatrix& T, ComplexMatrix& U) {
@@ -98,13 +116,14 @@ Matrix riccati_subspace(const Matrix& A, const Matrix& B, const Matrix& Q, const
     throw LinearError(discrete
                           ? "no stabilising solution: the equation's pencil is singular or has eigenvalues at 1 and -1"
                           : "no solution: R is singular to working precision");
-  const Eigen::ComplexSchur<Matrix> schur(map.S);
+  const Eigen::RealSchur<Matrix> schur(map.S);
   if (schur.info() != Eigen::Success) throw LinearError("the Schur form of the equation's pencil was not found");
-  ComplexMatrix T = schur.matrixT(), U = schur.matrixU();
+  ComplexMatrix T = schur.matrixT().cast<Complex>(), U = schur.matrixU().cast<Complex>();
+  triangular(T, U);
   refuse_limit(T, map);
   stable_first(T, U);
   const ComplexMatrix first = U.topLeftCorner(n, n).transpose(), second = U.bottomLeftCorner(n, n).transpose();
-  const Matrix X = first.fullPivLu().solve(second).real();
+  const Matrix X = first.householderQr().solve(second).real();
   return 0.5 * (X + X.transpose());
 }
 

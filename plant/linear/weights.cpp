@@ -57,7 +57,12 @@ double smallest_eigenvalue(const Matrix& symmetric) {
 void refuse_unseen_limit(const Matrix& A, const Matrix& seen, bool discrete, const std::string& why,
                          const System& names) {
   const auto n = A.rows();
-  const auto units = in_balanced_units({A, Matrix::Zero(n, 0), seen, Matrix::Zero(seen.rows(), 0)});
+  System pair;
+  pair.A = A;
+  pair.B = Matrix::Zero(n, 0);
+  pair.C = seen;
+  pair.D = Matrix::Zero(seen.rows(), 0);
+  const auto units = in_balanced_units(pair);
   const auto& balanced = units.system;
   const auto stairs = observable_staircase(balanced.A, balanced.C);
   const auto hidden = n - stairs.rank;
