@@ -166,7 +166,12 @@ ErrorDynamics error_dynamics(const typename Method::template Constants<double>& 
     out.slowest_per_s = out.miss = std::numeric_limits<double>::infinity();
     return out;
   }
-  const Eigen::VectorXcd z = detail::reaching(now.J, now.seen).eigenvalues();
+  const linear::Matrix J = detail::reaching(now.J, now.seen);
+  if (J.size() == 0) {  // held by a limit: nothing moves the estimate
+    out.miss = std::numeric_limits<double>::infinity();
+    return out;
+  }
+  const Eigen::VectorXcd z = J.eigenvalues();
   out.poles.assign(z.data(), z.data() + z.size());
   for (const auto& pole : out.poles) {
     const double size = sqrt(square(pole.real()) + square(pole.imag()));

@@ -13,6 +13,7 @@ namespace slipbench {
 namespace {
 
 constexpr double two_pi = 6.28318530717958647693, none = std::numeric_limits<double>::quiet_NaN();
+constexpr double marginal_per_s = 0.1;
 
 // Two sensors: alpha and beta carry 1 and 5/3 of a sensor's variance, 4/3 on average over a turn, three carry 2/3.
 EstimatorSetup evenly_noisy(EstimatorSetup setup) {
@@ -24,7 +25,10 @@ EstimatorSetup evenly_noisy(EstimatorSetup setup) {
 EstimatorPoint point_of(const ErrorDynamics& e) {
   using State = EstimatorPoint::State;
   if (!e.settled()) return {State::unsettled, none, none};
-  return {e.stable() ? State::stable : State::unstable, e.slowest_per_s, e.speed_error_rad_s / rad_s_in_rpm};
+  const State state = e.slowest_per_s < -marginal_per_s   ? State::stable
+                      : e.slowest_per_s <= marginal_per_s ? State::marginal
+                                                          : State::unstable;
+  return {state, e.slowest_per_s, e.speed_error_rad_s / rad_s_in_rpm};
 }
 
 }  // namespace

@@ -12,11 +12,8 @@
 namespace slipbench {
 
 struct EstimatorPoint {
-  enum class State {
-    stable,
-    unstable,
-    unsettled
-  } state = State::unsettled;    // unsettled: no steady estimate was found there
+  // marginal: neither grows nor dies within 10 s, as on the line of lost observability; unsettled: no steady estimate was found there.
+  enum class State { stable, marginal, unstable, unsettled } state = State::unsettled;
   double slowest_per_s = 0.0;    // largest ln|z| / T; NaN where unsettled
   double speed_error_rpm = 0.0;  // steady, of a wrong belief; NaN where unsettled
 };

@@ -15,7 +15,7 @@ struct Recorder : RunObserver {
   double blind_below_Hz, least_flux, period_s = 0.0;
   const std::function<double(const PlantRow&)>& observability;
   ScenarioPath path;
-  double stretch_s = 0.0;
+  double stretch_s = 0.0, stretch_from_s = 0.0;
 
   Recorder(double blind_below, double least, const std::function<double(const PlantRow&)>& value)
       : blind_below_Hz(blind_below), least_flux(least), observability(value) {}
@@ -37,11 +37,12 @@ struct Recorder : RunObserver {
       stretch_s = 0.0;
       return;
     }
+    if (stretch_s == 0.0) stretch_from_s = last.time_s;
     path.blind_s += period_s;
     stretch_s += period_s;
     if (stretch_s <= path.longest_blind_s) return;
     path.longest_blind_s = stretch_s;
-    path.longest_from_s = last.time_s + period_s - stretch_s;
+    path.longest_from_s = stretch_from_s;
   }
 };
 

@@ -28,9 +28,11 @@ void each_point(const Plane& plane, const Points& points, Row row) {
 }  // namespace
 
 const char* name_of(EstimatorPoint::State state) {
-  return state == EstimatorPoint::State::stable     ? "stable"
-         : state == EstimatorPoint::State::unstable ? "unstable"
-                                                    : "unsettled";
+  using State = EstimatorPoint::State;
+  return state == State::stable     ? "stable"
+         : state == State::marginal ? "marginal"
+         : state == State::unstable ? "unstable"
+                                    : "unsettled";
 }
 
 std::string csv_of(const ObservabilityMap& map) {

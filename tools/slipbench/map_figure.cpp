@@ -17,8 +17,9 @@ namespace {
 constexpr double left = 84, top = 96, plot_width = 640, plot_height = 440, bar_gap = 26, bar_width = 18, bar_room = 92;
 constexpr double bottom = top + plot_height, right = left + plot_width, width = right + bar_gap + bar_width + bar_room;
 constexpr std::string_view line_colour = "#D55E00", path_colour = "#111111", blind_colour = "#E69F00",
-                           unstable_fill = "#f3b9a0", unsettled_fill = "#d9d9d9";
+                           unstable_fill = "#f3b9a0", marginal_fill = "#f6e3a1", unsettled_fill = "#d9d9d9";
 constexpr int shades = 32;
+constexpr double darkest_share = 0.02;  // of the points: a few deep values must not take the whole scale
 
 // A plot of the plane: axes, a fill for every point, lines clipped to it.
 class PlanePlot {
@@ -33,7 +34,7 @@ class PlanePlot {
   // Points of equal fill along a row of one torque are one rectangle.
   template <class FillAt>
   [[nodiscard]] std::string cells(std::size_t count, FillAt fill_at) const {
-    std::string body;
+    std::string body = "<g shape-rendering=\"crispEdges\">\n";
     for (std::size_t k = 0; k < plane_.torques; ++k) {
       const double y1 = y_.at(plane_.torque_Nm(k) + 0.5 * plane_.torque_step_Nm()),
                    y2 = y_.at(plane_.torque_Nm(k) - 0.5 * plane_.torque_step_Nm());
@@ -46,7 +47,7 @@ class PlanePlot {
         body += svg::rectangle(x1, y1, x2 - x1 + 0.3, y2 - y1 + 0.3, fill);
       }
     }
-    return body;
+    return body + "</g>\n";
   }
   // `points` as (speed, torque), joined where `join` says so.
   template <class Points, class Keep>
@@ -76,10 +77,8 @@ class PlanePlot {
   }
   [[nodiscard]] std::string frequency_lines(const FrequencyLines& lines) const {
     const auto all = [](const PlanePoint&) { return true; };
-    return polyline(lines.blind_from, all, "#ffffff", 2.6) + polyline(lines.blind_to, all, "#ffffff", 2.6) +
-           polyline(lines.blind_from, all, line_colour, 1.2, "5 4") +
-           polyline(lines.blind_to, all, line_colour, 1.2, "5 4") + polyline(lines.lost, all, "#ffffff", 3.6) +
-           polyline(lines.lost, all, line_colour, 2.0);
+    return polyline(lines.blind_from, all, line_colour, 1.2, "5 4") +
+           polyline(lines.blind_to, all, line_colour, 1.2, "5 4") + polyline(lines.lost, all, line_colour, 1.6);
   }
   [[nodiscard]] std::string axes() const {
     std::string body;
@@ -111,6 +110,15 @@ std::string head(const std::string& title, const std::string& subtitle) {
                      svg::px(left), svg::px(top), svg::px(plot_width), svg::px(plot_height)) +
          svg::text(24, 32, svg::fitted(title, width - 48, 17, true), {17, "start", svg::ink, true}) +
          svg::text(24, 53, svg::fitted(subtitle, width - 48, 12), {12, "start", svg::soft_ink});
+}
+
+// Value from which on down all is darkest.
+double darkest(std::vector<double> values) {
+  std::erase_if(values, [](double value) { return !(std::isfinite(value) && value > 0.0); });
+  if (values.empty()) return 1.0;
+  const auto at = values.begin() + static_cast<std::ptrdiff_t>(darkest_share * static_cast<double>(values.size()));
+  std::nth_element(values.begin(), at, values.end());
+  return *at;
 }
 
 // Share of darkness: 0 where the value is largest.
@@ -157,6 +165,11 @@ class Legend {
   double row_ = bottom + 66;
 };
 
+std::string_view fill_of(EstimatorPoint::State state) {
+  using State = EstimatorPoint::State;
+  return state == State::unstable ? unstable_fill : state == State::marginal ? marginal_fill : unsettled_fill;
+}
+
 std::string words_of(linear::SpeedModel model) {
   return model == linear::SpeedModel::constant_speed ? "speed constant"
          : model == linear::SpeedModel::unknown_load ? "load torque unknown but constant"
@@ -167,13 +180,9 @@ std::string words_of(linear::SpeedModel model) {
 
 std::string map_figure(const ObservabilityMap& map) {
   const PlanePlot plot(map.plane);
-  // Rounding makes the line's own value nothing at all: the scale ends five decades below the greatest.
-  double greatest = 0.0;
-  for (const double value : map.smallest) {
-    if (std::isfinite(value)) greatest = std::max(greatest, value);
-  }
+  const double least = darkest(map.smallest);
   std::vector<double> shown = map.smallest;
-  for (double& value : shown) value = std::max(value, 1e-5 * greatest);
+  for (double& value : shown) value = std::max(value, least);
   const Scale scale(shown, bottom, top);
   std::string body = head(
       map.title, fmt::format("Where speed can be seen in the terminals; {}; {}", words_of(map.model), map.flux_text));
@@ -202,35 +211,36 @@ std::string map_figure(const ObservabilityMap& map) {
   }
   legend.frequency(map.lines);
   body += plot.axes();
-  if (!scale.empty()) body += colour_bar(scale, "smallest singular value, per unit");
+  if (!scale.empty()) body += colour_bar(scale, "smallest singular value, per unit; darkest: this or less");
   return svg::document(width, legend.end() + 4, map.title, body + legend.body());
 }
 
 std::string map_figure(const EstimatorMap& map) {
   const PlanePlot plot(map.plane);
   std::vector<double> decay;  // 1/s, of stable points
-  bool any_unstable = false, any_unsettled = false;
+  using State = EstimatorPoint::State;
+  const auto any = [&](State state) {
+    return std::any_of(map.points.begin(), map.points.end(), [&](const EstimatorPoint& p) { return p.state == state; });
+  };
   for (const EstimatorPoint& p : map.points) {
-    if (p.state == EstimatorPoint::State::stable) decay.push_back(-p.slowest_per_s);
-    any_unstable = any_unstable || p.state == EstimatorPoint::State::unstable;
-    any_unsettled = any_unsettled || p.state == EstimatorPoint::State::unsettled;
+    if (p.state == State::stable) decay.push_back(-p.slowest_per_s);
   }
-  const double greatest = decay.empty() ? 1.0 : *std::max_element(decay.begin(), decay.end());
-  for (double& value : decay) value = std::max(value, 1e-4 * greatest);
+  const double least = darkest(decay);
+  for (double& value : decay) value = std::max(value, least);
   const Scale scale(decay, bottom, top);
   std::string body =
       head(map.title, fmt::format("Error of {} ({}): its slowest pole; {}", map.name, map.kind, map.flux_text));
   body += plot.cells(map.points.size(), [&](std::size_t n) {
     const EstimatorPoint& p = map.points[n];
-    if (p.state == EstimatorPoint::State::unsettled) return std::string(unsettled_fill);
-    if (p.state == EstimatorPoint::State::unstable) return std::string(unstable_fill);
-    return heat(darkness(scale, std::max(-p.slowest_per_s, 1e-4 * greatest)));
+    if (p.state != State::stable) return std::string(fill_of(p.state));
+    return heat(darkness(scale, std::max(-p.slowest_per_s, least)));
   });
   body += plot.frequency_lines(map.lines) + plot.axes();
-  if (!scale.empty()) body += colour_bar(scale, "decay of the slowest pole, 1/s");
+  if (!scale.empty()) body += colour_bar(scale, "decay of the slowest pole, 1/s; darkest: this or less");
   Legend legend;
-  if (any_unstable) legend.field(unstable_fill, "unstable: an error grows");
-  if (any_unsettled) legend.field(unsettled_fill, "no steady estimate found");
+  if (any(State::unstable)) legend.field(unstable_fill, "unstable: an error grows");
+  if (any(State::marginal)) legend.field(marginal_fill, "marginal: an error neither grows nor dies within 10 s");
+  if (any(State::unsettled)) legend.field(unsettled_fill, "no steady estimate found");
   legend.frequency(map.lines);
   return svg::document(width, legend.end() + 4, map.title, body + legend.body());
 }

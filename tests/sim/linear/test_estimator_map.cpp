@@ -72,11 +72,9 @@ TEST_CASE("error dynamics: the Kalman filter's poles are those of the stationary
   const ErrorDynamics e = error_dynamics<ExtendedKalman>(c, ExtendedKalman::begin(setup, c), p);
   REQUIRE(e.settled());
   using Matrix = Eigen::MatrixXd;
-  using Map = ErrorMap<ExtendedKalman>;
-  const Map map(c, p);
   auto s = ExtendedKalman::begin(setup, c);
   tell_truth("", s, p);
-  // d x- / d x in the turning frame: the code's own prediction by central differences of its linear part would do; here F by hand.
+  // d x- / d x at the truth, seen from the turning frame.
   const SinCos<double> by = sincos(p.w_s * p.period_s);
   const Vec2<double> u = turn_forward(by, p.voltage);
   const auto F = predict_with_jacobian(c.model, s.x, u).F;
@@ -105,8 +103,8 @@ TEST_CASE("error dynamics: the Kalman filter's poles are those of the stationary
   const std::vector<linear::Complex> expected(z.data(), z.data() + z.size());
   double slowest = 0.0;
   for (const auto& pole : expected) slowest = std::max(slowest, std::abs(pole));
-  // Riccati by iteration: good to 1e-9 or so; eigenvalues of a well-separated 5 x 5 likewise.
-  CHECK(farthest(expected, e.poles) < 1e-7);
+  // The filter's series leaves (|A| T)^4 / 24 = 7e-7 of a state at 100 us, by which its fixed point differs from the truth.
+  CHECK(farthest(expected, e.poles) < 1e-6);
   CHECK(e.slowest_per_s == Approx(std::log(slowest) / p.period_s).epsilon(1e-4));
 }
 
