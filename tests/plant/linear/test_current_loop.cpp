@@ -1,4 +1,5 @@
 // Model and gains of the current loop and its observer, against SciPy, closed forms and the machine's own equations.
+#include <Eigen/Eigenvalues>
 #include <catch2/catch.hpp>
 #include <cmath>
 
