@@ -1,10 +1,10 @@
 // Current loop by state feedback in the rotor-flux frame, gains scheduled over speed.
 //
-//   u = N i_ref - K x + z + j w_slip L_sigma i,    x = (i, psi, u(k-1), u(k-2))    each d and q
+//   u = v + j w_slip L_sigma i,  v = N i_ref - K x + z,    x = (i, psi, v(k-1), v(k-2))    each d and q
 //   z(k+1) = z(k) + K_I (i_ref - i) + a (u_given - u),  |z| within the voltage limit; z = 0 without integral action
 //
 // K, K_I, N belong to |w_r| as they stand; at a negative speed the machine is its mirror image (q turned round), and so are
-// they. They are designed for a frame that turns with the rotor; the last term of u makes up for the slip's part of the
+// they. They are designed for a frame that turns with the rotor; what u adds to v makes up for the slip's part of the
 // cross-coupling, so that one schedule serves every load. The delayed voltages are those the duties really gave, in the frame of
 // their own time; with fewer than two periods of delay their columns of K are zero. a = K_I,dd / K_dd at the first point.
 //
@@ -38,15 +38,15 @@ template <class Real>
 struct StateCurrentState {
   Vec2<Real> integral;  // z
   CommandedVoltages<Real> commanded{};
-  std::array<Vec2<Real>, 2> given{};  // u(k-1), u(k-2)
+  std::array<Vec2<Real>, 2> given{};  // v(k-1), v(k-2)
   Real asked{};                       // |u| before the limit
   SLIPBENCH_FIELDS(integral, commanded, given, asked)
 };
 
-// Voltage that holds this current and flux: what a drive that is taken over has been given.
+// v that holds this current and flux: what a drive that is taken over has been given.
 template <class Real>
 Vec2<Real> holding_voltage(const StateCurrentConstants<Real>& c, const RotorFrame<Real>& f) {
-  const Real emf = c.flux_ratio * f.flux, drop = f.stator_frequency * c.leakage;
+  const Real emf = c.flux_ratio * f.flux, drop = f.electrical_speed * c.leakage;
   return {c.resistance * f.current.x - drop * f.current.y - c.rotor_rate * emf,
           c.resistance * f.current.y + drop * f.current.x + f.electrical_speed * emf};
 }
@@ -81,7 +81,7 @@ VoltageCommand<Real> control_current(StateCurrentState<Real>& s, const StateCurr
   s.asked = magnitude(wanted);
 
   const VoltageCommand<Real> out = command_voltage(s.commanded, c.legs, f, wanted, reference, limit, dc_link);
-  s.given = {out.given, s.given[0]};
+  s.given = {out.given - slip_drop, s.given[0]};
   const Vec2<Real> grown = times(integral_rows, One{mirror(error)}) + c.back * out.missing;
   const Vec2<Real> integral = s.integral + c.integral_action * grown;
   s.integral = {clamp(integral.x, -limit, limit), clamp(integral.y, -limit, limit)};

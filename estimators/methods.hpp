@@ -20,4 +20,12 @@ void each_estimator_method(F&& f) {
   }(static_cast<EstimatorMethods*>(nullptr));
 }
 
+// Those that find the speed themselves.
+template <class F>
+void each_sensorless_method(F&& f) {
+  each_estimator_method([&]<class Method>() {
+    if constexpr (!requires { Method::needs_speed; }) f.template operator()<Method>();
+  });
+}
+
 }  // namespace slipbench
