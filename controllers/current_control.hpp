@@ -7,17 +7,15 @@
 // The PI's zero cancels the machine's pole R / L_sigma: the open loop is alpha_c / s with a delay of (d + 1/2) T. In
 // samples, d = 1: i(k+1) = i(k) + alpha_c T (i_ref(k-1) - i(k-1)), both poles at 1/2 for alpha_c T = 1/4.
 //
-// Voltage limit (legs.hpp): the d axis goes first (it holds flux and frame), with at most 0.9 of the circle, so that q
-// always keeps 0.43 of it against the back-EMF. Anti-windup is back-calculation from the voltage that the duties
-// really give. Delay and dead time as in legs.hpp, at the reference current: it is free of noise.
+// Voltage limit, delay and dead time: voltage_command.hpp. Anti-windup is back-calculation from the voltage that the duties
+// really give.
 //
 // u V, i A, psi Wb (all peak), alpha_c rad/s.
 // Source: L. Harnefors, H.-P. Nee, "Model-based current control of AC machines using the internal model control
 // method", IEEE Trans. Ind. Appl. 34(1), 1998, 133-141 (from memory).
 #pragma once
 
-#include "controllers/legs.hpp"
-#include "controllers/orientation.hpp"
+#include "controllers/voltage_command.hpp"
 
 namespace slipbench {
 
@@ -33,9 +31,9 @@ struct CurrentConstants {
 
 template <class Real>
 struct CurrentState {
-  Vec2<Real> integral;                    // x, V
-  std::array<Vec2<Real>, 3> commanded{};  // voltage of this tick's command and the two before, stationary frame
-  Real asked{};                           // |u| before the limit
+  Vec2<Real> integral;  // x, V
+  CommandedVoltages<Real> commanded{};
+  Real asked{};  // |u| before the limit
   SLIPBENCH_FIELDS(integral, commanded, asked)
 };
 
@@ -43,18 +41,6 @@ template <class Real>
 Real voltage_limit(const CurrentConstants<Real>& c, const Real& dc_link) {
   return voltage_limit(c.legs, dc_link);
 }
-
-// Mean stator voltage over the period that ends at this tick: the command of d + 1 ticks ago.
-template <class Real>
-Vec2<Real> applied_before(const CurrentState<Real>& s, const CurrentConstants<Real>& c) {
-  return select(c.delay < Real(0.5), s.commanded[0], select(c.delay < Real(1.5), s.commanded[1], s.commanded[2]));
-}
-
-template <class Real>
-struct VoltageCommand {
-  Phases<Real> duty;
-  Real clipped{};
-};
 
 template <class Real>
 VoltageCommand<Real> control_current(CurrentState<Real>& s, const CurrentConstants<Real>& c, const RotorFrame<Real>& f,
@@ -65,16 +51,9 @@ VoltageCommand<Real> control_current(CurrentState<Real>& s, const CurrentConstan
   const Vec2<Real> wanted = c.k_p * error + s.integral + forward;
   s.asked = magnitude(wanted);
 
-  const Real most_d = Real(0.9) * limit, u_d = clamp(wanted.x, -most_d, most_d);
-  const Real most_q = sqrt(max(square(limit) - square(u_d), Real(0.0)));
-  const Vec2<Real> limited{u_d, clamp(wanted.y, -most_q, most_q)};
-
-  const LegCommand<Real> legs = command_legs(c.legs, f.angle, f.stator_frequency, limited, reference, dc_link);
-  s.commanded = {legs.applied, s.commanded[0], s.commanded[1]};
-  const Vec2<Real> missing = turn_back(legs.middle, legs.applied) - wanted;
-  const Vec2<Real> integral = s.integral + c.k_i_period * error + c.back * missing;
+  const VoltageCommand<Real> out = command_voltage(s.commanded, c.legs, f, wanted, reference, limit, dc_link);
+  const Vec2<Real> integral = s.integral + c.k_i_period * error + c.back * out.missing;
   s.integral = {clamp(integral.x, -limit, limit), clamp(integral.y, -limit, limit)};
-  const VoltageCommand<Real> out{legs.duty, clipped_by(limited - wanted, legs.by_rails, limit)};
   return out;
 }
 

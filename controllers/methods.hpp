@@ -4,11 +4,12 @@
 #include <tuple>
 
 #include "controllers/rotor_flux_oriented.hpp"
+#include "controllers/state_feedback.hpp"
 #include "controllers/volts_per_hertz.hpp"
 
 namespace slipbench {
 
-using ControllerMethods = std::tuple<RotorFluxOriented, VoltsPerHertz>;
+using ControllerMethods = std::tuple<RotorFluxOriented, VoltsPerHertz, StateFeedback>;
 
 template <class F>
 void each_controller_method(F&& f) {

@@ -91,13 +91,18 @@ void require(bool good, const char* what) {
 
 }  // namespace
 
+double RotorFluxOriented::current_bandwidth(const ControllerSetup& setup, const Settings& given) {
+  const double advance = (setup.delay_periods + 0.5) * setup.control_period_s;
+  return two_pi * given.value("current_bandwidth_Hz", min(0.06 / advance, 500.0));
+}
+
 RotorFluxOriented::Constants<double> RotorFluxOriented::prepare(const ControllerSetup& setup, const Settings& given) {
   require(setup.delay_periods >= 0 && setup.delay_periods <= 2, "delay_periods: 0, 1 or 2 allowed");
   require(setup.rotor_flux_reference_Wb > 0.0, "rotor flux reference must be above zero");
   require(setup.control_period_s > 0.0, "control period must be above zero");
   require(setup.inertia_kgm2 > 0.0, "inertia must be above zero");
   const double advance = (setup.delay_periods + 0.5) * setup.control_period_s;
-  const double alpha_c = two_pi * given.value("current_bandwidth_Hz", min(0.06 / advance, 500.0));
+  const double alpha_c = current_bandwidth(setup, given);
   Constants<double> c;
   c.orientation = orientation_of(setup);
   c.flux = flux_of(setup, given, alpha_c);

@@ -19,6 +19,26 @@
 
 namespace slipbench {
 
+// From speed and flux to the current reference, for any current loop; returns the torque reference. `s` and `c` hold the parts
+// named orientation, flux and speed. A drive that is already running is taken over as it is found, at its current, torque and
+// speed.
+template <class Real, class State, class Constants>
+Real follow_speed_and_flux(State& s, const Constants& c, const Measurement<Real>& m, const RotorFrame<Real>& frame,
+                           const Real& limit, const Real& asked, const MaskOf<Real>& first) {
+  s.started = Real(1.0);
+  s.current_reference = select(first, frame.current, s.current_reference);
+  s.speed.reference = select(first, m.speed, s.speed.reference);
+  const Real torque_now = c.torque_per_ampere * frame.flux * frame.current.y;
+  s.speed.integral = select(first, s.flux.magnetised * torque_now, s.speed.integral);
+
+  const FluxCommand<Real> d = control_flux(s.flux, c.flux, frame, limit, s.current_reference, asked);
+  const Real per_ampere = c.torque_per_ampere * frame.divisor_flux;
+  const MaskOf<Real> hold = s.flux.magnetised < Real(0.5);
+  const Real torque = control_speed(s.speed, c.speed, m, per_ampere * d.i_q_limit, hold);
+  s.current_reference = {d.i_d, torque / per_ampere};
+  return torque;
+}
+
 struct RotorFluxOriented {
   static constexpr std::string_view kind = "rotor_flux_oriented";
   static constexpr bool takes_speed = true;
@@ -62,30 +82,21 @@ struct RotorFluxOriented {
   // Throws std::invalid_argument for a delay outside 0..2 periods and for data without which no gain exists.
   static Constants<double> prepare(const ControllerSetup& setup, const Settings& given);
   static State<double> begin(const ControllerSetup& setup, const Constants<double>& c);
+  // alpha_c, rad/s.
+  static double current_bandwidth(const ControllerSetup& setup, const Settings& given);
 
   // Flux that a steady drive settles at, with field weakening, at this speed (rad/s) and torque.
   static double steady_rotor_flux(const Constants<double>& c, double dc_link_V, double speed_rad_s, double torque_Nm);
 
   template <class Real>
   static Command<Real> step(State<Real>& s, const Measurement<Real>& m, const Constants<Real>& c) {
-    const Real one(1.0), half(0.5);
-    const MaskOf<Real> first = s.started < half;
-    const RotorFrame<Real> frame = orient(s.orientation, c.orientation, m, applied_before(s.current, c.current), first);
+    const MaskOf<Real> first = s.started < Real(0.5);
+    const Vec2<Real> applied = applied_before(s.current.commanded, c.current.delay);
+    const RotorFrame<Real> frame = orient(s.orientation, c.orientation, m, applied, first);
 
-    // A drive that is already running is taken over as it is found: integrals at its current, torque and speed.
-    s.started = one;
     s.current.integral = select(first, c.current.resistance * frame.current, s.current.integral);
-    s.current_reference = select(first, frame.current, s.current_reference);
-    s.speed.reference = select(first, m.speed, s.speed.reference);
-    const Real torque_now = c.torque_per_ampere * frame.flux * frame.current.y;
-    s.speed.integral = select(first, s.flux.magnetised * torque_now, s.speed.integral);
-
     const Real limit = voltage_limit(c.current, m.dc_link);
-    const FluxCommand<Real> d = control_flux(s.flux, c.flux, frame, limit, s.current_reference, s.current.asked);
-    const Real per_ampere = c.torque_per_ampere * frame.divisor_flux;
-    const MaskOf<Real> hold = s.flux.magnetised < half;
-    const Real torque = control_speed(s.speed, c.speed, m, per_ampere * d.i_q_limit, hold);
-    s.current_reference = {d.i_d, torque / per_ampere};
+    const Real torque = follow_speed_and_flux(s, c, m, frame, limit, s.current.asked, first);
     const VoltageCommand<Real> u = control_current(s.current, c.current, frame, s.current_reference, limit, m.dc_link);
     Command<Real> out;
     out.duty = u.duty;

@@ -3,6 +3,7 @@
 //   struct Method {
 //     static constexpr std::string_view kind;                        // name in a scenario
 //     static constexpr std::array<Setting, n> settings;              // what a scenario may set
+//     static constexpr bool needs_speed = true;                      // only where the speed is told by a sensor
 //     template <class Real> struct Constants { ...; SLIPBENCH_FIELDS(...) };
 //     template <class Real> struct State { ...; SLIPBENCH_FIELDS(...) };
 //     static Constants<double> prepare(const EstimatorSetup&, const Settings&);        // once, in double

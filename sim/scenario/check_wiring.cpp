@@ -33,6 +33,17 @@ void check_estimator_names(const Scenario& s, const Node& root) {
   }
 }
 
+void check_estimator_speed(const Scenario& s, const Node& root) {
+  if (s.sensors.speed.kind != "none") return;
+  for (std::size_t i = 0; i < s.estimators.size(); ++i) {
+    if (!s.estimators[i].needs_speed()) continue;
+    refuse_at(root, "estimator." + std::to_string(i) + ".kind",
+              "'estimator." + std::to_string(i) + ".kind' is \"" + s.estimators[i].kind +
+                  "\", which is told the speed, but there is no speed sensor; set sensors.speed.kind, or take an "
+                  "estimator that finds the speed");
+  }
+}
+
 void check_controller(const Scenario& s, const Node& root) {
   const ControllerSettings& c = s.controller;
   if (c.kind.empty()) {
@@ -73,7 +84,9 @@ void check_controller(const Scenario& s, const Node& root) {
   if (c.speed_from == "measured" && s.sensors.speed.kind == "none") {
     refuse_at(root, "controller.speed_from",
               std::string("'controller.speed_from' is \"measured\", but there is no speed sensor; ") +
-                  (speed ? "the speed loop" : direct ? "the current loop's decoupling" : "indirect orientation") +
+                  (speed    ? "the speed loop"
+                   : direct ? "the current loop's decoupling"
+                            : "indirect orientation") +
                   " needs one: set sensors.speed.kind, or name an estimator here");
   }
 }
@@ -193,6 +206,7 @@ void check_named(const Scenario& s, const Node& root, const std::string& key, co
 
 void check_wiring(const Scenario& s, const Node& root) {
   check_estimator_names(s, root);
+  check_estimator_speed(s, root);
   check_supply(s, root);
   check_loads(s, root);
   check_sensors(s, root);

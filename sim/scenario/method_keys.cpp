@@ -12,7 +12,8 @@ namespace {
 struct MethodKind {
   std::string_view kind;
   std::span<const Setting> settings;
-  bool takes_speed = true;  // of a controller
+  bool takes_speed = true;   // of a controller
+  bool needs_speed = false;  // of an estimator
 };
 using MethodKinds = std::vector<MethodKind>;
 
@@ -28,9 +29,11 @@ OwnKinds& own_kinds() {
 
 MethodKinds all_estimators() {
   MethodKinds all;
-  each_estimator_method([&]<class Method>() { all.push_back({Method::kind, Method::settings}); });
-  all.insert(all.end(), own_kinds().estimators.begin(), own_kinds().estimators.end());
-  return all;
+  each_estimator_method([&]<class Method>() { all.push_back({Method::kind, Method::settings, true, requires { Method::needs_speed; }
+});
+});
+all.insert(all.end(), own_kinds().estimators.begin(), own_kinds().estimators.end());
+return all;
 }
 
 MethodKinds all_controllers() {
@@ -124,6 +127,11 @@ std::vector<std::string_view> speed_taking_controllers() {
 bool ControllerSettings::takes_speed() const {
   const std::vector<std::string_view> takers = speed_taking_controllers();
   return std::count(takers.begin(), takers.end(), kind) > 0;
+}
+
+bool EstimatorSettings::needs_speed() const {
+  const MethodKinds all = all_estimators();
+  return std::any_of(all.begin(), all.end(), [&](const MethodKind& m) { return m.kind == kind && m.needs_speed; });
 }
 
 void add_estimator_keys(std::string_view kind, std::span<const Setting> settings) {

@@ -8,6 +8,7 @@
 
 #include "sim/scenario/check.hpp"
 #include "sim/scenario/fill.hpp"
+#include "sim/scenario/gain_file.hpp"
 #include "sim/scenario/overrides.hpp"
 #include "sim/scenario/tree.hpp"
 #include "sim/scenario/values.hpp"
@@ -17,7 +18,7 @@ namespace slipbench {
 struct ParsedScenario {
   std::string path, folder;
   Node root;
-  std::map<std::string, Node> machines;  // files named in it, as they parsed when it was opened
+  std::map<std::string, Node> named;  // machine and gain files named in it, as they parsed when it was opened
 };
 
 namespace {
@@ -45,6 +46,7 @@ FileKind kind_of(const Node& root) {
     alone = alone && (head || child.name == "machine");
   }
   if (alone) return FileKind::machine;
+  if (is_gain_file(root)) return FileKind::gains;
   // A scenario that lacks [run] is still meant as one: let its reader name the missing key.
   for (const Node& child : root.children) {
     if (find_section(child.name) != nullptr || find_section(child.name + "[]") != nullptr) return FileKind::scenario;
@@ -62,6 +64,7 @@ void want_kind(const Node& root, FileKind wanted) {
     return k == FileKind::scenario  ? "a scenario"
            : k == FileKind::machine ? "a machine file"
            : k == FileKind::plan    ? "a sweep plan"
+           : k == FileKind::gains   ? "a gain file"
                                     : "a state-space system";
   };
   refuse({root.place.file, 1, 1}, "", std::string("this is ") + name(kind) + "; wanted is " + name(wanted), "file");
@@ -94,11 +97,11 @@ const Node& machine_table(const Node& root) {
   return *table;
 }
 
-// The machine file that a key names; what stops it from being read is told at that key, what is wrong in it there.
-Node load_machine(const ParsedScenario& parsed, const Node& key, const std::string& dotted) {
+// The machine or gain file that a key names; what stops it from being read is told at that key, what is wrong in it there.
+Node load_named(const ParsedScenario& parsed, const Node& key, const std::string& dotted) {
   const std::string path = beside(parsed.folder, key.text);
-  const auto known = parsed.machines.find(path);
-  if (known != parsed.machines.end()) return known->second;
+  const auto known = parsed.named.find(path);
+  if (known != parsed.named.end()) return known->second;
   std::string why = "there is no such file";
   const auto text = key.text.empty() ? std::nullopt : read_text(path, why);
   if (!text) refuse(key.place, dotted, "'" + dotted + "' names \"" + printable(path) + "\": " + why, "file");
@@ -109,13 +112,27 @@ void merge_machine(Node& root, const ParsedScenario& parsed) {
   Node* machine = root.child("machine");
   const Node* file = machine == nullptr ? nullptr : machine->child("file");
   if (file == nullptr || machine->kind != Node::Kind::table || file->kind != Node::Kind::text) return;
-  const Node other = load_machine(parsed, *file, "machine.file");
+  const Node other = load_named(parsed, *file, "machine.file");
   const Node& table = machine_table(other);
   if (table.kind != Node::Kind::table)
     refuse(table.place, "machine", "'machine' is " + found_text(table) + "; wanted is a table", "type");
   for (const Node& child : table.children) {
     if (machine->child(child.name) == nullptr) machine->children.push_back(child);
   }
+}
+
+// Gain files of the controller and of estimators.
+void merge_gain_files(Node& root, const ParsedScenario& parsed) {
+  const auto merge = [&](Node& table, const std::string& dotted, const std::string& name) {
+    if (table.kind != Node::Kind::table) return;
+    const Node* file = table.child("file");
+    if (file != nullptr && file->kind == Node::Kind::text) merge_gains(table, load_named(parsed, *file, dotted), name);
+  };
+  if (Node* controller = root.child("controller")) merge(*controller, "controller.file", "controller");
+  Node* estimators = root.child("estimator");
+  if (estimators == nullptr || estimators->kind != Node::Kind::array) return;
+  for (std::size_t i = 0; i < estimators->children.size(); ++i)
+    merge(estimators->children[i], "estimator." + std::to_string(i) + ".file", "estimator");
 }
 
 MachineSettings machine_of(const Node& root, const std::string& from) {
@@ -129,18 +146,23 @@ MachineSettings machine_of(const Node& root, const std::string& from) {
   return alone.machine;
 }
 
-// Parses the machine files a scenario names ahead of its readings. Failures wait for the reading that needs the file.
+// Parses the machine and gain files a scenario names ahead of its readings. Failures wait for the reading that needs the file.
 void preload(ParsedScenario& parsed, const std::vector<std::string>& more = {}) {
   const auto take = [&](const Node& key, const char* dotted) {
     if (key.kind != Node::Kind::text) return;
     try {
-      Node file = load_machine(parsed, key, dotted);
-      parsed.machines.emplace(beside(parsed.folder, key.text), std::move(file));
+      Node file = load_named(parsed, key, dotted);
+      parsed.named.emplace(beside(parsed.folder, key.text), std::move(file));
     } catch (const InputError&) {
     }
   };
-  for (const char* dotted : {"machine.file", "belief.file"}) {
+  for (const char* dotted : {"machine.file", "belief.file", "controller.file"}) {
     if (const Node* key = find(parsed.root, dotted)) take(*key, dotted);
+  }
+  if (const Node* estimators = parsed.root.child("estimator")) {
+    for (const Node& estimator : estimators->children) {
+      if (const Node* key = estimator.child("file")) take(*key, "estimator.file");
+    }
   }
   for (const std::string& text : more) take(parse_value(text, parsed.root.place), "machine.file");
 }
@@ -171,12 +193,13 @@ Scenario ScenarioFile::read(const std::vector<Override>& overrides, std::optiona
   Node root = parsed_->root;
   apply_overrides(root, overrides);
   merge_machine(root, *parsed_);
+  merge_gain_files(root, *parsed_);
   Scenario scenario;
   scenario.path = parsed_->path;
   fill(scenario, root);
   if (seed) scenario.seed = *seed;
   if (const Node* file = find(root, "belief.file")) {
-    scenario.belief.machine = machine_of(load_machine(*parsed_, *file, "belief.file"), file->text);
+    scenario.belief.machine = machine_of(load_named(*parsed_, *file, "belief.file"), file->text);
     scenario.belief.has_machine = true;
   }
   derive_defaults(scenario, root);
@@ -186,7 +209,7 @@ Scenario ScenarioFile::read(const std::vector<Override>& overrides, std::optiona
 
 std::vector<std::string> ScenarioFile::machine_files() const {
   std::vector<std::string> paths;
-  for (const auto& [path, node] : parsed_->machines) paths.push_back(path);
+  for (const auto& [path, node] : parsed_->named) paths.push_back(path);
   return paths;
 }
 
@@ -200,6 +223,15 @@ Scenario read_scenario(const std::string& path, const std::vector<Override>& ove
 Scenario read_scenario_text(const std::string& text, const std::string& name, const std::string& folder,
                             const std::vector<Override>& overrides) {
   return ScenarioFile(text, name, folder).read(overrides);
+}
+
+std::string read_gain_file(const std::string& path, const std::vector<Override>& overrides) {
+  Node root = parse_file(path);
+  want_kind(root, FileKind::gains);
+  apply_overrides(root, overrides);
+  check_gain_file(root);
+  const Node* title = root.child("title");
+  return title == nullptr ? "" : title->text;
 }
 
 MachineSettings read_machine(const std::string& path, const std::vector<Override>& overrides) {

@@ -16,9 +16,9 @@ struct Override {
   std::string key, value;  // --set key=value, as typed
 };
 
-enum class FileKind { scenario, machine, plan, system };
+enum class FileKind { scenario, machine, plan, system, gains };
 
-// Told by content: [system], top-level `scenario = "..."`, [run], only [machine]. Throws InputError.
+// Told by content: [system], top-level `scenario = "..."`, [run], only [machine], only [controller] or [estimator] without a kind. Throws InputError.
 FileKind kind_of_file(const std::string& path);
 
 // Throws InputError with file:line:column, key, what was found, what is allowed and the nearest known key.
@@ -27,6 +27,8 @@ Scenario read_scenario(const std::string& path, const std::vector<Override>& ove
 // The same from text; relative paths are relative to `folder`, errors are placed at `name`:line:column.
 Scenario read_scenario_text(const std::string& text, const std::string& name, const std::string& folder,
                             const std::vector<Override>& overrides = {});
+// A gain file by itself (gain_file.hpp): its title.
+std::string read_gain_file(const std::string& path, const std::vector<Override>& overrides = {});
 MachineSettings read_machine(const std::string& path, const std::vector<Override>& overrides = {});
 
 // A scenario file parsed once and read many times with other overrides (sweeps): well under a millisecond a reading.
@@ -34,12 +36,12 @@ MachineSettings read_machine(const std::string& path, const std::vector<Override
 struct ParsedScenario;
 class ScenarioFile {
  public:
-  // `machines`: more machine files that overrides will name, as they will name them.
+  // `machines`: more machine and gain files that overrides will name, as they will name them.
   explicit ScenarioFile(const std::string& path, const std::vector<std::string>& machines = {});
   ScenarioFile(const std::string& text, const std::string& name, const std::string& folder);
   [[nodiscard]] Scenario read(const std::vector<Override>& overrides = {},
                               std::optional<std::uint64_t> seed = {}) const;
-  // Paths of the machine files that it names and that could be read.
+  // Paths of the machine and gain files that it names and that could be read.
   [[nodiscard]] std::vector<std::string> machine_files() const;
 
  private:

@@ -33,7 +33,9 @@ struct Fresh {
 
   void operator()(const MethodSetting& method) const {
     const Setting& s = *method.setting;
-    if (!s.structural) {
+    if (s.shape != SettingShape::number) {
+      row.holds = s.shape == SettingShape::list ? Holds::list : Holds::matrices;
+    } else if (!s.structural) {
       row.holds = Holds::number, row.fallback = s.fallback;
     } else if (s.low == 0.0 && s.high == 1.0) {
       row.holds = Holds::truth, row.fallback = s.fallback != 0.0;
@@ -79,6 +81,10 @@ std::string KeyReference::allowed_text() const {
       return "[[time, x], ...], " + bounds_text(key->range);
     case Holds::triple:
       return "[x, x, x], " + bounds_text(key->range);
+    case Holds::list:
+      return "[x, ...], " + bounds_text(key->range);
+    case Holds::matrices:
+      return "[[[x, ...], ...], ...], " + bounds_text(key->range);
     case Holds::text:
       break;
   }

@@ -13,7 +13,7 @@
 namespace slipbench {
 
 // What a key's value is made of.
-enum class Holds { number, whole, truth, text, knots, triple };
+enum class Holds { number, whole, truth, text, knots, triple, list, matrices };
 
 struct KeyReference {
   using Value = std::variant<std::monostate, double, std::int64_t, bool, std::string, std::array<double, 3>>;

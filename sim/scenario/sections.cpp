@@ -99,7 +99,17 @@ struct AllowedText {
   std::string operator()(std::array<double, 3>& (*)(Scenario&, std::size_t)) const {
     return "three numbers [a, b, c], each " + ranged("a number");
   }
-  std::string operator()(const MethodSetting&) const { return ranged("a number"); }
+  std::string operator()(const MethodSetting& method) const {
+    switch (method.setting->shape) {
+      case SettingShape::number:
+        break;
+      case SettingShape::list:
+        return "a list [x, ...], each " + ranged("a number");
+      case SettingShape::matrices:
+        return "a list of matrices of one size [[[x, ...], ...], ...], each element " + ranged("a number");
+    }
+    return ranged("a number");
+  }
   std::string operator()(std::string& (*)(Scenario&, std::size_t)) const {
     if (key.words.empty()) return "a string";
     std::string list;
@@ -167,6 +177,7 @@ bool set_number(Scenario& scenario, std::string_view dotted, double value) {
     return true;
   }
   if (const auto* method = std::get_if<MethodSetting>(&key->slot)) {
+    if (method->setting->shape != SettingShape::number) return false;
     method->of(scenario, i).set(std::string(method->setting->name), checked());
     return true;
   }

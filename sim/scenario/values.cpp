@@ -8,6 +8,8 @@
 namespace slipbench {
 namespace {
 
+constexpr std::size_t largest_table = 64;  // elements of an array of numbers or rows
+
 struct Store {
   Scenario& scenario;
   const Key& key;
@@ -93,8 +95,40 @@ struct Store {
     slot(scenario, index) = values;
   }
 
+  // An array of `length` values (0: at least one), each of which `take` reads.
+  template <class Take>
+  void each(const Node& at, const std::string& shown, std::size_t length, Take take) const {
+    const std::size_t size = at.children.size();
+    if (at.kind != Node::Kind::array || size == 0 || (length != 0 && size != length))
+      wrong(at, shown, "type",
+            length == 0 ? "" : "; the first has " + std::to_string(length) + " here, and so have all");
+    if (size > largest_table)
+      wrong(at, shown, "range", "; more than " + std::to_string(largest_table) + " are not taken");
+    for (std::size_t i = 0; i < size; ++i) take(at.children[i], shown + "." + std::to_string(i));
+  }
+
+  [[nodiscard]] SettingTable table(bool matrices) const {
+    SettingTable t;
+    t.count = node.children.size();
+    const auto number_into = [&](const Node& at, const std::string& shown) { t.numbers.push_back(ranged(at, shown)); };
+    each(node, dotted, 0, [&](const Node& at, const std::string& shown) {
+      if (!matrices) return number_into(at, shown);
+      each(at, shown, t.rows, [&](const Node& row, const std::string& row_shown) {
+        each(row, row_shown, t.columns, number_into);
+        t.columns = row.children.size();
+      });
+      t.rows = at.children.size();
+    });
+    if (!matrices) t.rows = t.columns = 1;
+    return t;
+  }
+
   void operator()(const MethodSetting& method) const {
     const Setting& s = *method.setting;
+    if (s.shape != SettingShape::number) {
+      method.of(scenario, index).set(std::string(s.name), table(s.shape == SettingShape::matrices));
+      return;
+    }
     double value = 0.0;
     if (node.kind == Node::Kind::truth && s.structural && s.low == 0.0 && s.high == 1.0) {
       value = node.truth ? 1.0 : 0.0;

@@ -3,95 +3,33 @@
 #include <cmath>
 #include <filesystem>
 
-#include "sim/scenario/nearest.hpp"
+#include "sim/scenario/fill.hpp"
 #include "sim/scenario/overrides.hpp"
+#include "sim/scenario/table_reader.hpp"
 #include "sim/scenario/tree.hpp"
 
 namespace slipbench {
 
 namespace {
 
-[[noreturn]] void refuse(const Place& place, const std::string& key, const std::string& message, const char* code) {
-  throw InputError(place.text(), key, message, code);
+// `key = "..."` or `keys = ["...", ...]`.
+void keys_of(const TableReader& t, std::vector<std::string>& names, std::vector<std::string>& places) {
+  const Node *one = t.child("key"), *many = t.child("keys");
+  if ((one == nullptr) == (many == nullptr)) {
+    refuse(t.node().place, t.dotted("key"), "'" + t.shown() + "' needs either key = \"...\" or keys = [...]",
+           "missing");
+  }
+  if (one != nullptr) {
+    names = {t.word("key", {})}, places = {one->place.text()};
+    return;
+  }
+  if (many->kind != Node::Kind::array || many->children.empty())
+    t.wrong(*many, "keys", "a list of strings, at least one");
+  for (const Node& key : many->children) {
+    if (key.kind != Node::Kind::text) t.wrong(key, "keys", "a list of strings");
+    names.push_back(key.text), places.push_back(key.place.text());
+  }
 }
-
-// One table of the plan: what was asked for is taken, what was not is refused.
-class Table {
- public:
-  Table(const Node& node, std::string shown, std::vector<std::string_view> known)
-      : node_(node), shown_(std::move(shown)), known_(std::move(known)) {
-    if (node.kind != Node::Kind::table)
-      refuse(node.place, shown_, "'" + shown_ + "' is " + found_text(node) + "; wanted is a table", "type");
-    for (const Node& child : node.children) {
-      bool found = false;
-      for (const std::string_view name : known_) found = found || name == child.name;
-      if (!found) {
-        refuse(child.name_place, dotted(child.name),
-               "unknown key '" + printable(dotted(child.name)) + "'; the nearest known key is '" +
-                   dotted(nearest(child.name, known_)) + "'",
-               "unknown_key");
-      }
-    }
-  }
-
-  [[nodiscard]] const Node* child(std::string_view name) const { return node_.child(name); }
-  [[nodiscard]] std::string dotted(std::string_view name) const {
-    return shown_.empty() ? std::string(name) : shown_ + "." + std::string(name);
-  }
-  [[noreturn]] void wrong(const Node& at, std::string_view name, const std::string& wanted) const {
-    refuse(at.place, dotted(name), "'" + dotted(name) + "' is " + found_text(at) + "; wanted is " + wanted, "type");
-  }
-  const Node& need(std::string_view name, const std::string& wanted) const {
-    if (const Node* found = child(name)) return *found;
-    refuse(node_.place, dotted(name), "missing key '" + dotted(name) + "'; wanted is " + wanted, "missing");
-  }
-  double number(std::string_view name) const {
-    const Node& at = need(name, "a number");
-    if (!at.is_number() || !std::isfinite(at.number())) wrong(at, name, "a finite number");
-    return at.number();
-  }
-  std::uint64_t whole(std::string_view name, std::uint64_t low, std::uint64_t high) const {
-    const std::string wanted = "a whole number from " + std::to_string(low) + " to " + std::to_string(high);
-    const Node& at = need(name, wanted);
-    if (at.kind != Node::Kind::whole || at.whole < 0 || static_cast<std::uint64_t>(at.whole) < low ||
-        static_cast<std::uint64_t>(at.whole) > high) {
-      wrong(at, name, wanted);
-    }
-    return static_cast<std::uint64_t>(at.whole);
-  }
-  std::string word(std::string_view name, const std::vector<std::string_view>& words) const {
-    std::string list;
-    for (const std::string_view w : words) list += (list.empty() ? "one of " : ", ") + std::string(w);
-    const Node& at = need(name, words.empty() ? "a string" : list);
-    if (at.kind != Node::Kind::text) wrong(at, name, words.empty() ? "a string" : list);
-    bool known = words.empty();
-    for (const std::string_view w : words) known = known || w == at.text;
-    if (!known) wrong(at, name, list + "; nearest is " + std::string(nearest(at.text, words)));
-    return at.text;
-  }
-  // `key = "..."` or `keys = ["...", ...]`.
-  void keys(std::vector<std::string>& names, std::vector<std::string>& places) const {
-    const Node *one = child("key"), *many = child("keys");
-    if ((one == nullptr) == (many == nullptr)) {
-      refuse(node_.place, dotted("key"), "'" + shown_ + "' needs either key = \"...\" or keys = [...]", "missing");
-    }
-    if (one != nullptr) {
-      names = {word("key", {})}, places = {one->place.text()};
-      return;
-    }
-    if (many->kind != Node::Kind::array || many->children.empty())
-      wrong(*many, "keys", "a list of strings, at least one");
-    for (const Node& key : many->children) {
-      if (key.kind != Node::Kind::text) wrong(key, "keys", "a list of strings");
-      names.push_back(key.text), places.push_back(key.place.text());
-    }
-  }
-
- private:
-  const Node& node_;
-  std::string shown_;
-  std::vector<std::string_view> known_;
-};
 
 // A string as an override must give it so that it comes out the same: bare where that does, else quoted as TOML.
 std::string string_text(const std::string& text) {
@@ -110,7 +48,7 @@ std::string string_text(const std::string& text) {
 }
 
 // A value as the text of a TOML value, to be set by an override.
-std::string value_text(const Node& value, const Table& table) {
+std::string value_text(const Node& value, const TableReader& table) {
   switch (value.kind) {
     case Node::Kind::whole:
       return std::to_string(value.whole);
@@ -127,9 +65,9 @@ std::string value_text(const Node& value, const Table& table) {
   table.wrong(value, "values", "a list of numbers, strings or truths");
 }
 
-Vary vary_of(const Table& t) {
+Vary vary_of(const TableReader& t) {
   Vary vary;
-  t.keys(vary.keys, vary.key_places);
+  keys_of(t, vary.keys, vary.key_places);
   if (const Node* values = t.child("values")) {
     for (const char* other : {"from", "to", "count"}) {
       if (const Node* node = t.child(other))
@@ -160,9 +98,9 @@ Vary vary_of(const Table& t) {
   return vary;
 }
 
-DrawnKey drawn_of(const Table& t) {
+DrawnKey drawn_of(const TableReader& t) {
   DrawnKey key;
-  t.keys(key.keys, key.key_places);
+  keys_of(t, key.keys, key.key_places);
   const auto none = [&](const char* name, const char* distribution) {
     if (const Node* node = t.child(name))
       refuse(node->name_place, t.dotted(name),
@@ -185,7 +123,7 @@ DrawnKey drawn_of(const Table& t) {
 }
 
 Sampling sample_of(const Node& node, std::uint64_t scenario_seed) {
-  const Table t(node, "sample", {"kind", "count", "seed", "key"});
+  const TableReader t(node, "sample", {"kind", "count", "seed", "key"});
   Sampling sample;
   const std::string kind = t.word("kind", {"random", "latin_hypercube", "sobol", "saltelli"});
   sample.kind = kind == "random"            ? DrawKind::random
@@ -199,15 +137,15 @@ Sampling sample_of(const Node& node, std::uint64_t scenario_seed) {
   if (keys.children.size() > most_drawn_keys)
     t.wrong(keys, "key", "at most " + std::to_string(most_drawn_keys) + " tables");
   for (std::size_t i = 0; i < keys.children.size(); ++i) {
-    const Table key(keys.children[i], "sample.key." + std::to_string(i),
-                    {"key", "keys", "distribution", "low", "high", "mean", "sigma"});
+    const TableReader key(keys.children[i], "sample.key." + std::to_string(i),
+                          {"key", "keys", "distribution", "low", "high", "mean", "sigma"});
     sample.keys.push_back(drawn_of(key));
   }
   return sample;
 }
 
 // The scenario's path, once a scenario lies there.
-std::string scenario_path(const std::string& plan, const Table& t) {
+std::string scenario_path(const std::string& plan, const TableReader& t) {
   const std::string name = t.word("scenario", {});
   const std::string path = (std::filesystem::path(plan).parent_path() / name).lexically_normal().string();
   const Node& at = *t.child("scenario");
@@ -243,7 +181,7 @@ SweepPlan read_plan(const std::string& path, const std::vector<Override>& overri
   }
   apply_overrides(root, plan.of_plan, "plan.");
 
-  const Table t(root, "", {"format", "title", "scenario", "runs", "vary", "sample"});
+  const TableReader t(root, "", {"format", "title", "scenario", "runs", "vary", "sample"});
   if (t.child("format") != nullptr) (void)t.whole("format", 1, 1);
   if (t.child("title") != nullptr) plan.title = t.word("title", {});
   plan.scenario = scenario_path(path, t);
@@ -252,8 +190,8 @@ SweepPlan read_plan(const std::string& path, const std::vector<Override>& overri
     if (varies->kind != Node::Kind::array || varies->children.empty())
       t.wrong(*varies, "vary", "a list of tables, [[vary]]");
     for (std::size_t i = 0; i < varies->children.size(); ++i) {
-      const Table one(varies->children[i], "vary." + std::to_string(i),
-                      {"key", "keys", "values", "from", "to", "count"});
+      const TableReader one(varies->children[i], "vary." + std::to_string(i),
+                            {"key", "keys", "values", "from", "to", "count"});
       plan.varies.push_back(vary_of(one));
     }
   }

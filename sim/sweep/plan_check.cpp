@@ -61,7 +61,8 @@ void check_drawn(const ScenarioFile& file, const SweepPlan& plan, const DrawnKey
       const Key* row = find_key(scenario, key);
       const bool real = row != nullptr && row->numeric() &&
                         (std::holds_alternative<double& (*)(Scenario&, std::size_t)>(row->slot) ||
-                         std::holds_alternative<MethodSetting>(row->slot));
+                         (std::holds_alternative<MethodSetting>(row->slot) &&
+                          std::get<MethodSetting>(row->slot).setting->shape == SettingShape::number));
       if (real) continue;
       throw InputError(drawn.key_places[i], key,
                        "'" + printable(key) +
@@ -77,7 +78,7 @@ void check_drawn(const ScenarioFile& file, const SweepPlan& plan, const DrawnKey
 ScenarioFile scenario_of(const SweepPlan& plan) {
   std::vector<std::string> machines;
   const auto add = [&](const std::string& key, const std::string& value) {
-    if (key == "machine.file" || key == "belief.file") machines.push_back(value);
+    if (key.ends_with(".file")) machines.push_back(value);
   };
   for (const Override& o : plan.overrides) add(o.key, o.value);
   for (const Vary& vary : plan.varies) {

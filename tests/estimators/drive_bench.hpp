@@ -67,6 +67,7 @@ class DriveBench {
       sample.u_beta = applied.y;
       sample.i_alpha = measured.x;
       sample.i_beta = measured.y;
+      sample.speed = speed_;  // for those that are told it
       for (std::size_t n = 0; n < riders.size(); ++n) estimates[n] = riders[n].step(sample);
       watch(truth(t), estimates);
 

@@ -13,10 +13,14 @@ namespace {
 
 std::vector<Rider> all_riders(const EstimatorSetup& setup) {
   std::vector<Rider> riders;
-  each_estimator_method([&]<class Method>() { riders.push_back(rider<Method>(setup)); });
+  each_sensorless_method([&]<class Method>() { riders.push_back(rider<Method>(setup)); });
   return riders;
 }
-constexpr int methods = int(std::tuple_size_v<EstimatorMethods>);
+const int methods = [] {
+  int count = 0;
+  each_sensorless_method([&]<class Method>() { ++count; });
+  return count;
+}();
 
 double slip_of(const PublishedMachine& machine, double torque) {  // electrical rad/s, at nominal flux
   const BelievedMachine<double> m = believe(setup_of(machine));

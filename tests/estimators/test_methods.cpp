@@ -36,8 +36,8 @@ TEST_CASE("methods: kinds and settings are well formed", "[estimators][contract]
       CHECK(s.name.ends_with(unit));
     }
   });
-  CHECK(kinds == std::set<std::string_view>{"luenberger", "reduced_order",
-                                            "extended_kalman"});  // kinds the scenario contract names
+  CHECK(kinds == std::set<std::string_view>{"luenberger", "reduced_order", "extended_kalman",
+                                            "linear_observer"});  // kinds the scenario contract names
 }
 
 TEST_CASE("methods: constants are finite at every corner of every setting's range that a drive would use",

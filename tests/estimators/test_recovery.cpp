@@ -76,6 +76,7 @@ TEST_CASE("estimators: begun magnetised and turning, they begin right", "[estima
   each_rider(setup, [&](Rider& r) {
     Sample<double> s;
     s.i_alpha = 0.8 / m.per_flux_ratio * m.alpha / m.R_R;  // the current that holds this flux
+    s.speed = 100.0;                                       // for those that are told it
     const Estimate<double> e = r.step(s);
     CHECK(e.speed == Approx(100.0).epsilon(1e-6));
     CHECK(e.rotor_flux == Approx(0.8).epsilon(1e-3));  // the filter weighs the first current against its guess of none

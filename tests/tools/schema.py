@@ -105,6 +105,36 @@ BROKEN = [
     ("missing selector", "kind = \"fan\"", ""),
     ("missing table", "[shaft]\ninertia_kgm2 = 0.02", ""),
 ]
+SYSTEM = """
+format = 1
+[system]
+A = [[0.0, 1.0], [-4.0, -0.5]]
+B = [[0.0], [2.0]]
+C = [[1.0, 0.0]]
+states = ["angle", "speed"]
+sample_period_s = 0.1
+[design]
+kind = "place"
+poles = [[0.5, 0.1], [0.5, -0.1]]
+faster_than_controller = 2.0
+"""
+BROKEN_SYSTEM = [
+    ("unknown key", "C = [[1.0, 0.0]]", "C = [[1.0, 0.0]]\nF = [[1.0]]"),
+    ("unknown table", "[design]", "[designs]"),
+    ("no A", "A = [[0.0, 1.0], [-4.0, -0.5]]", ""),
+    ("text in A", "-4.0", "\"-4.0\""),
+    ("flat B", "[[0.0], [2.0]]", "[0.0, 2.0]"),
+    ("huge number", "-4.0", "-4e200"),
+    ("name twice", "\"angle\", \"speed\"", "\"angle\", \"angle\""),
+    ("empty name", "\"angle\"", "\"\""),
+    ("no period", "sample_period_s = 0.1", "sample_period_s = 0"),
+    ("unknown kind", "\"place\"", "\"palce\""),
+    ("no kind", "kind = \"place\"", ""),
+    ("key of another kind", "kind = \"place\"", "kind = \"place\"\nQ = [[1.0]]"),
+    ("pole of three", "[0.5, 0.1]", "[0.5, 0.1, 0.0]"),
+    ("factor of zero", "faster_than_controller = 2.0", "faster_than_controller = 0.0"),
+    ("another version", "format = 1", "format = 2"),
+]
 BROKEN_MACHINE = [
     ("unknown key", "pole_pairs = 2", "pole_pairs = 2\npoles = 4"),
     ("a scenario's table", "[machine]", "[shaft]\ninertia_kgm2 = 0.02\n[machine]"),
@@ -206,9 +236,9 @@ def every_key(schema):
     return tried
 
 
-scenario, machine = validator("scenario"), validator("machine")
+scenario, machine, system = validator("scenario"), validator("machine"), validator("system")
 shipped = 0
-for folder, schema in (("scenarios", scenario), ("machines", machine)):
+for folder, schema in (("scenarios", scenario), ("machines", machine), ("systems", system)):
     for file in sorted((source / "configs" / folder).glob("*.toml")):
         errors = [error.message for error in schema.iter_errors(tomllib.loads(file.read_text()))]
         check(f"{file.name} is valid", not errors, errors)
@@ -218,8 +248,9 @@ with tempfile.TemporaryDirectory() as name:
     broken(scenario, BASE, BROKEN, pathlib.Path(name), "scenario")
     plate = "format = 1\n" + re.search(r"\[machine\].*?(?=\[shaft\])", BASE, re.S).group()
     broken(machine, plate, BROKEN_MACHINE, pathlib.Path(name), "machine")
+    broken(system, SYSTEM, BROKEN_SYSTEM, pathlib.Path(name), "system")
     with_file = re.sub(r"(?s)\[machine\].*?(?=\[shaft\])", '[machine]\nfile = "m.toml"\ntotal_leakage_H = 0.01\n', BASE)
     check("a machine file may give the rest, and its circuit", scenario.is_valid(tomllib.loads(with_file)))
 tried = every_key(scenario)
-print(f"{shipped} shipped files, {len(BROKEN) + len(BROKEN_MACHINE)} broken ones, {tried} values of keys; {len(failures)} failed")
+print(f"{shipped} shipped files, {len(BROKEN) + len(BROKEN_MACHINE) + len(BROKEN_SYSTEM)} broken ones, {tried} values of keys; {len(failures)} failed")
 sys.exit(1 if failures or tried < 500 else 0)

@@ -100,7 +100,7 @@ TEST_CASE("command line: what stands in place of a verb or of FILE", "[tools][co
   CHECK_THAT(refusal({"check"}), Contains("check needs a FILE"));
   CHECK_THAT(refusal({"check", "--keys", "a.toml"}), Contains("--keys") && Contains("leave out 'a.toml'"));
   CHECK_THAT(refusal({"check", "a.toml", "--schema"}), Contains("--schema") && Contains("leave out 'a.toml'"));
-  CHECK_THAT(refusal({"check", "--schema", "a.toml"}), Contains("expected scenario or machine"));
+  CHECK_THAT(refusal({"check", "--schema", "a.toml"}), Contains("expected scenario or machine or system"));
   CHECK_THAT(refusal({"check", "--schema", "machin"}), Contains("nearest is machine"));
   CHECK_THAT(refusal({"check", "--markdown", "a.toml"}), Contains("--markdown goes with --keys"));
   CHECK_THAT(refusal({"check", "--keys", "--markdown", "--json"}), Contains("one form at a time"));

@@ -5,6 +5,7 @@
 
 #include "plant/steady_state.hpp"
 #include "sim/engine/simulate.hpp"
+#include "sim/scenario/system_file.hpp"
 #include "sim/sweep/plan.hpp"
 #include "tools/slipbench/json_out.hpp"
 #include "tools/slipbench/table.hpp"
@@ -79,6 +80,22 @@ void add_scenario_facts(std::vector<Fact>& facts, const Scenario& s) {
   add("score_to_s", "scored to", s.score.to_s, "s");
 }
 
+void add_system_facts(std::vector<Fact>& facts, const SystemFile& file) {
+  const linear::System& s = file.system;
+  if (!file.source.empty()) facts.push_back({"source", "source of its numbers", 0.0, file.source, ""});
+  facts.push_back({"order", "order", static_cast<double>(s.order()), "", ""});
+  facts.push_back({"inputs", "inputs", static_cast<double>(s.inputs()), "", ""});
+  facts.push_back({"outputs", "outputs", static_cast<double>(s.outputs()), "", ""});
+  facts.push_back({"time", "time", 0.0, s.discrete() ? "discrete" : "continuous", ""});
+  if (s.discrete()) facts.push_back({"sample_period_s", "sampled every", s.sample_period_s, "", "s"});
+  std::vector<std::string> redundant;
+  for (const linear::Redundant& r : file.redundant) redundant.push_back(r.variable);
+  if (!redundant.empty())
+    facts.push_back(
+        {"redundant", "redundant in the descriptor form", 0.0, fmt::format("{}", fmt::join(redundant, ", ")), ""});
+  facts.push_back({"design", "design", 0.0, file.design ? std::string(name_of(file.design->kind)) : "none", ""});
+}
+
 std::string check_summary(const CheckDocument& document) {
   Table table;
   table.column("", "", Table::Align::left);
@@ -121,12 +138,17 @@ int check_verb(const Request& request) {
     document.facts.push_back({"cases", "cases", static_cast<double>(plan.cases()), "", ""});
     document.facts.push_back({"runs", "noise runs of each", static_cast<double>(plan.runs), "", ""});
     document.facts.push_back({"keys", "keys that vary", 0.0, fmt::format("{}", fmt::join(plan.keys(), ", ")), ""});
+  } else if (kind == FileKind::gains) {
+    document.kind = "gain file";
+    document.title = read_gain_file(request.file, request.overrides);
   } else {
-    throw InputError(request.file, "",
-                     "this is " + kind_text(kind) +
-                         ", which this version does not read yet; check takes a "
-                         "scenario, a machine file or a sweep plan",
-                     "kind");
+    if (request.seed) {
+      throw InputError("command line", "--seed", "--seed means nothing for a state-space file", "usage");
+    }
+    document.kind = "state-space file";
+    const SystemFile file = read_system_file(request.file, request.overrides);
+    document.title = file.title;
+    add_system_facts(document.facts, file);
   }
   if (request.json) {
     print(json_document(document));

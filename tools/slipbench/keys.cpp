@@ -80,7 +80,9 @@ std::string keys_markdown() {
 int print_reference(const Request& request) {
   if (request.quiet) return ExitStatus::done;
   if (!request.schema.empty()) {
-    print(request.schema == "machine" ? machine_schema() : scenario_schema());
+    print(request.schema == "machine"  ? machine_schema()
+          : request.schema == "system" ? system_schema()
+                                       : scenario_schema());
   } else if (request.json) {
     print(keys_document());
   } else {

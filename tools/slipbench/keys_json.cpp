@@ -20,6 +20,10 @@ std::string_view type_name(Holds holds) {
       return "knots";
     case Holds::triple:
       return "triple";
+    case Holds::list:
+      return "list";
+    case Holds::matrices:
+      return "matrices";
   }
   return "";
 }

@@ -116,6 +116,24 @@ void check_reference(const Request& r) {
   }
 }
 
+// Options that mean something for a map alone.
+void check_map(const Request& r, bool csv) {
+  if (!r.map.empty()) {
+    for (const bool given : {r.period_s > 0.0, r.at_Hz > 0.0}) {
+      const char* name = given && r.period_s > 0.0 ? "--period" : "--at";
+      if (given) refuse(name, fmt::format("{} means nothing with --map", name));
+    }
+    return;
+  }
+  const std::pair<const char*, bool> all[] = {{"--csv", csv},
+                                              {"--model", !r.speed_model.empty()},
+                                              {"--estimator", !r.estimator.empty()},
+                                              {"--path", !r.path.empty()}};
+  for (const auto& [name, given] : all) {
+    if (given) refuse(name, fmt::format("{} needs --map beside it, as in --map speed_observability", name));
+  }
+}
+
 // What was given for each option.
 struct Given {
   std::string file;
@@ -147,7 +165,8 @@ Request request_of(const std::string& verb, Given& given) {
   r.search = text("--search"), r.write = text("--write");
   if (flag("--budget")) r.budget = whole_number<std::uint32_t>("--budget", text("--budget"), 1, 1000000);
   for (const char* name : {"--budget", "--write"}) {
-    if (flag(name) && !flag("--search")) refuse(name, fmt::format("{} needs --search FIGURE beside it", name));
+    if (flag(name) && !flag("--search") && verb == "sweep")
+      refuse(name, fmt::format("{} needs --search FIGURE beside it", name));
   }
   for (const char* name : {"--store", "--csv", "--shard", "--merge"}) {
     if (flag("--search") && !given.values[name].empty())
@@ -178,6 +197,13 @@ Request request_of(const std::string& verb, Given& given) {
     r.publish_wait = whole_number<unsigned>("--publish-wait", text("--publish-wait"), 1, 1024);
   if (r.publish_wait > 0 && !r.publish) refuse("--publish-wait", "--publish-wait needs --publish ENDPOINT beside it");
   if (flag("--pace")) r.pace = positive_number("--pace", text("--pace"));
+  if (flag("--period")) r.period_s = positive_number("--period", text("--period"));
+  if (flag("--at")) r.at_Hz = positive_number("--at", text("--at"));
+  r.map = text("--map"), r.speed_model = text("--model"), r.estimator = text("--estimator"), r.path = text("--path");
+  for (const OptionRow& row : option_rows()) {
+    if ((row.name == "--map" || row.name == "--model") && flag(row.name.data())) want_word(row, text(row.name.data()));
+  }
+  if (verb == "analyse") check_map(r, flag("--csv"));
   for (const std::string& setting : given.values["--set"]) {
     const std::size_t equals = setting.find('=');
     if (equals == std::string::npos || equals == 0) {

@@ -22,19 +22,21 @@ struct Request {
   bool in_loop = false;
   std::optional<std::string> publish;  // run: --publish ENDPOINT
   unsigned publish_wait = 0;
-  double pace = 0.0;                       // run: times real time at most; 0: as fast as it goes
-  unsigned threads = 0;                    // 0: all cores
-  std::string store, csv, isa, figure_of;  // sweep
-  Shard shard;                             // sweep: --shard i/n
-  std::vector<std::string> merge;          // sweep: --merge STORE, repeatable
-  std::string search, write;               // sweep: --search FIGURE, --write FILE; "": none
-  bool on_slurm = false;                   // sweep: --on slurm
-  std::uint64_t shards = 0;                // sweep: --shards N; 0: the usual number
-  std::vector<std::string> slurm;          // sweep: --slurm OPTION, for sbatch, without the dashes
-  std::uint32_t budget = 200;              // sweep: --budget N
-  std::optional<std::uint64_t> plan_case;  // run PLAN --case K
+  double pace = 0.0;                              // run: times real time at most; 0: as fast as it goes
+  unsigned threads = 0;                           // 0: all cores
+  std::string store, csv, isa, figure_of;         // sweep
+  Shard shard;                                    // sweep: --shard i/n
+  std::vector<std::string> merge;                 // sweep: --merge STORE, repeatable
+  std::string search, write;                      // sweep: --search FIGURE, --write FILE; "": none
+  bool on_slurm = false;                          // sweep: --on slurm
+  std::uint64_t shards = 0;                       // sweep: --shards N; 0: the usual number
+  std::vector<std::string> slurm;                 // sweep: --slurm OPTION, for sbatch, without the dashes
+  std::uint32_t budget = 200;                     // sweep: --budget N
+  double period_s = 0.0, at_Hz = 0.0;             // analyse, design; 0: not asked
+  std::string map, speed_model, estimator, path;  // analyse of a drive; "": not asked
+  std::optional<std::uint64_t> plan_case;         // run PLAN --case K
   bool keys = false, markdown = false;
-  std::string schema;  // check: of "scenario" or "machine" files; "": none
+  std::string schema;  // check: of "scenario", "machine" or "system" files; "": none
   [[nodiscard]] bool wants_reference() const { return keys || !schema.empty(); }  // then there is no file
 };
 

@@ -19,6 +19,8 @@ Json number_schema(const Key& key, const char* type) {
   return schema;
 }
 
+Json some(Json items) { return {{"type", "array"}, {"minItems", 1}, {"items", std::move(items)}}; }
+
 Json value_schema(const KeyReference& row) {
   const Key& key = *row.key;
   switch (row.holds) {
@@ -42,6 +44,10 @@ Json value_schema(const KeyReference& row) {
                 {"items", Json::array({Json{{"type", "number"}}, number_schema(key, "number")})}}}};
     case Holds::triple:
       return {{"type", "array"}, {"minItems", 3}, {"maxItems", 3}, {"items", number_schema(key, "number")}};
+    case Holds::list:
+      return some(number_schema(key, "number"));
+    case Holds::matrices:
+      return some(some(some(number_schema(key, "number"))));
   }
   return true;
 }

@@ -16,6 +16,8 @@ std::string kind_text(FileKind kind) {
       return "a sweep plan";
     case FileKind::system:
       return "a state-space file";
+    case FileKind::gains:
+      return "a gain file";
   }
   return "a file of another kind";
 }
