@@ -165,7 +165,7 @@ Riccati solved(const Problem& given) {
     refuse_idle_input(given);
   else
     refuse_singular_weight(given, Matrix::Zero(n, n));
-  Vector d = riccati_balance(given.A, given.B, given.Q, given.R, given.N);
+  Vector d = riccati_balance(given.A, given.B, given.Q, given.R);
   Matrix best;
   double lowest = 0.0, trust = 1.0;
   // The first X tells the size each state should have had; with that the subspace is found again.

@@ -9,8 +9,8 @@
 // discrete one is mapped to the half plane by a Cayley transformation; balanced; ordered complex Schur form; then Newton
 // steps (Kleinman) while they lower the residual.
 // Trust: residual is the norm of the left side over the sum of its terms' norms; condition bounds how much larger the
-// relative error of X can be than that of the data (first order); a warning stands where condition * 2^-52 > 1e-6, the
-// residual > 1e-10, or a closed-loop pole lies as near to the stability limit as rounding can put it.
+// relative error of X can be than that of the data (first order); a warning stands where condition * 2^-52 > 1e-6
+// (a closed-loop pole near the stability limit brings that about), or the residual > 1e-10.
 // LinearError: shapes; not symmetric; R singular (care), R + B'X B singular (dare); no stabilising solution, naming the
 // eigenvalue on the stability limit.
 // Sources: A.J. Laub, IEEE TAC 24(6) 1979, 913-921; P. Van Dooren, SIAM J. Sci. Stat. Comput. 2 1981, 121-135; D. Kleinman,

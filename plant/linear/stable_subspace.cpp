@@ -127,7 +127,7 @@ Matrix riccati_subspace(const Matrix& A, const Matrix& B, const Matrix& Q, const
   return 0.5 * (X + X.transpose());
 }
 
-Vector riccati_balance(const Matrix& A, const Matrix& B, const Matrix& Q, const Matrix& R, const Matrix& N) {
+Vector riccati_balance(const Matrix& A, const Matrix& B, const Matrix& Q, const Matrix& R) {
   const auto n = A.rows();
   Vector d = Vector::Ones(n);
   Matrix G = Matrix::Zero(n, n);

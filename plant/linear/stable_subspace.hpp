@@ -19,6 +19,6 @@ Matrix riccati_subspace(const Matrix& A, const Matrix& B, const Matrix& Q, const
                         bool discrete);
 
 // Scales d, powers of two, of x = diag(d) z that bring rows and columns of the pencil to like size.
-Vector riccati_balance(const Matrix& A, const Matrix& B, const Matrix& Q, const Matrix& R, const Matrix& N);
+Vector riccati_balance(const Matrix& A, const Matrix& B, const Matrix& Q, const Matrix& R);
 
 }  // namespace slipbench::linear

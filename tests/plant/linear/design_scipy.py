@@ -56,18 +56,46 @@ def judge(what, case, ours, solve, data):
     worst[what] = max(worst.get(what, (0, 0)), (found / allowed, found))
     if not found <= allowed:
         failures.append(f"case {case}: {what} differs by {found:.2e}, allowed {allowed:.2e}")
+    return moved
+
+
+def fine_solve(M, right):
+    """One step of refinement in long double."""
+    first = la.solve(M.astype(float), right.astype(float)).astype(np.longdouble)
+    return first + la.solve(M.astype(float), (right - M @ first).astype(float))
 
 
 def regulator(discrete):
-    def solve(A, B, Q, R, N):
-        if discrete:
-            X = la.solve_discrete_are(A, B, Q, R, s=N)
-            K = la.solve(R + B.T @ X @ B, B.T @ X @ A + N.T)
-        else:
-            X = la.solve_continuous_are(A, B, Q, R, s=N)
-            K = la.solve(R, B.T @ X + N.T)
-        return X, K
+    """SciPy's solution, then two Newton steps whose residual is computed in long double: its own loses up to four digits here."""
+    def solve(*data):
+        A, B, Q, R, N = data
+        X = (la.solve_discrete_are if discrete else la.solve_continuous_are)(A, B, Q, R, s=N).astype(np.longdouble)
+        A, B, Q, R, N = (m.astype(np.longdouble) for m in data)
+        gain = lambda X: fine_solve(R + B.T @ X @ B, B.T @ X @ A + N.T) if discrete else fine_solve(R, B.T @ X + N.T)
+        for _ in range(2):
+            K = gain(X)
+            closed = A - B @ K
+            left = Q + K.T @ R @ K - N @ K - K.T @ N.T
+            left += closed.T @ X @ closed - X if discrete else closed.T @ X + X @ closed
+            left, closed = left.astype(float), closed.astype(float)
+            X = X + (la.solve_discrete_lyapunov(closed.T, left) if discrete else la.solve_continuous_lyapunov(closed.T, -left))
+            X = (X + X.T) / 2
+        return X.astype(float), gain(X).astype(float)
     return solve
+
+
+def closed_poles(discrete):
+    solve = regulator(discrete)
+    return lambda A, B, Q, R, N, change: la.eigvals(A - B @ (solve(A, B, Q, R, N)[1] + change))
+
+
+def gain_error(K, moved):
+    """An error of K of the size that the data's change makes, in any direction: poles of A - B K follow K wherever it errs, while the data's
+    change moves A, B and K together."""
+    def shake(zero):
+        change = rng.uniform(-1, 1, zero.shape)
+        return change * moved * np.linalg.norm(K) / np.linalg.norm(change)
+    return [(np.zeros(K.shape), shake)]
 
 
 def exact_gain(A, b, poles):
@@ -126,13 +154,15 @@ def main():
         solve = regulator(discrete)
         data = full(A, B) + sym(Q, R) + full(N)
         judge("lqr P", i, np.array(c["lqr"]["P"]), lambda *d: solve(*d)[0], data)
-        judge("lqr K", i, np.array(c["lqr"]["K"]), lambda *d: solve(*d)[1], data)
-        judge("lqr poles", i, poles("lqr"), lambda A, B, *d: la.eigvals(A - B @ solve(A, B, *d)[1]), data)
+        K = np.array(c["lqr"]["K"])
+        moved = judge("lqr K", i, K, lambda *d: solve(*d)[1], data)
+        judge("lqr poles", i, poles("lqr"), closed_poles(discrete), data + gain_error(K, moved))
         none = full(np.zeros((len(A), len(C))))
         dual = full(A.T, C.T) + sym(W, V) + none
         judge("kalman P", i, np.array(c["kalman"]["P"]), lambda *d: solve(*d)[0], dual)
-        judge("kalman L", i, np.array(c["kalman"]["L"]), lambda *d: solve(*d)[1].T, dual)
-        judge("kalman poles", i, poles("kalman"), lambda A, B, *d: la.eigvals(A - B @ solve(A, B, *d)[1]), dual)
+        L = np.array(c["kalman"]["L"])
+        moved = judge("kalman L", i, L, lambda *d: solve(*d)[1].T, dual)
+        judge("kalman poles", i, poles("kalman"), closed_poles(discrete), dual + gain_error(L.T, moved))
         judge("step", i, np.array(c["step"]), responses(discrete, .1), full(A, B, C, D))
         w = c["frequency"]
         z = np.exp(.1j * w) if discrete else 1j * w
