@@ -127,57 +127,83 @@ linear::Matrix reaching(const linear::Matrix& J, std::array<bool, N> seen) {
 
 }  // namespace detail
 
-// `start`: the method's state as it begins; what the truth is known of is set to it and held for `held_ticks`, so that the rest (a
-// covariance, filters) settles about the truth also where the estimator by itself would run away.
+// The state that the truth is told to for so many ticks, so that the rest (a covariance, filters) settles about the truth also where the
+// estimator by itself would run away.
 template <class Method>
-ErrorDynamics error_dynamics(const typename Method::template Constants<double>& c,
-                             typename Method::template State<double> start, const TurningPoint& p,
-                             int held_ticks = 400) {
+typename Method::template State<double> held_at_truth(const typename Method::template Constants<double>& c,
+                                                      typename Method::template State<double> state,
+                                                      const TurningPoint& p, int ticks) {
+  const ErrorMap<Method> map(c, p);
+  for (int k = 0; k < ticks; ++k) {
+    tell_truth("", state, p);
+    state = map.next(state);
+  }
+  tell_truth("", state, p);
+  return state;
+}
+
+template <class Method>
+struct FixedPoint {
+  typename ErrorMap<Method>::Linear linear;
+  double miss = 0.0;
+};
+// Newton's steps from `state`, which becomes the fixed point.
+template <class Method>
+FixedPoint<Method> find_fixed_point(const typename Method::template Constants<double>& c,
+                                    typename Method::template State<double>& state, const TurningPoint& p) {
   using Map = ErrorMap<Method>;
   constexpr int most_rounds = 40;
   const Map map(c, p);
-  for (int k = 0; k < held_ticks; ++k) {
-    tell_truth("", start, p);
-    start = map.next(start);
-  }
-  tell_truth("", start, p);
-
-  const auto x = numbers_of<double>(start);
-  ErrorDynamics out;
-  typename Map::Linear now;
+  const auto x = numbers_of<double>(state);
+  FixedPoint<Method> found;
   double before = std::numeric_limits<double>::infinity();
   for (int round = 0; round < most_rounds; ++round) {
-    now = map.linearised(start);
+    found.linear = map.linearised(state);
+    const typename Map::Linear& now = found.linear;
     linear::Vector away(static_cast<Eigen::Index>(Map::N));
-    out.miss = 0.0;
+    found.miss = 0.0;
     for (std::size_t n = 0; n < Map::N; ++n) {
       away(static_cast<Eigen::Index>(n)) = now.next[n] - *x[n];
-      out.miss = max(out.miss, fabs(now.next[n] - *x[n]) / max(1.0, fabs(*x[n])));
+      found.miss = max(found.miss, fabs(now.next[n] - *x[n]) / max(1.0, fabs(*x[n])));
     }
-    if (!(out.miss < 1e12) || !now.J.allFinite()) break;       // no fixed point that Newton's steps could find
-    if (out.miss < 1e-9 && !(out.miss < 0.5 * before)) break;  // as near as rounding lets it
-    before = out.miss;
+    if (!(found.miss < 1e12) || !now.J.allFinite()) break;         // no fixed point that Newton's steps could find
+    if (found.miss < 1e-9 && !(found.miss < 0.5 * before)) break;  // as near as rounding lets it
+    before = found.miss;
     const linear::Vector step = (linear::Matrix::Identity(now.J.rows(), now.J.cols()) - now.J).fullPivLu().solve(away);
     for (std::size_t n = 0; n < Map::N; ++n) *x[n] += step(static_cast<Eigen::Index>(n));
   }
-  out.slowest_per_s = -std::numeric_limits<double>::infinity();
-  out.speed_error_rad_s = now.speed - p.w_r / p.pole_pairs;
-  if (!now.J.allFinite()) {
-    out.slowest_per_s = out.miss = std::numeric_limits<double>::infinity();
-    return out;
-  }
-  const linear::Matrix J = detail::reaching(now.J, now.seen);
-  if (J.size() == 0) {  // held by a limit: nothing moves the estimate
-    out.miss = std::numeric_limits<double>::infinity();
+  return found;
+}
+
+template <class Method>
+ErrorDynamics dynamics_at(const FixedPoint<Method>& found, const TurningPoint& p) {
+  constexpr double infinity = std::numeric_limits<double>::infinity();
+  ErrorDynamics out;
+  out.miss = found.miss;
+  out.speed_error_rad_s = found.linear.speed - p.w_r / p.pole_pairs;
+  const linear::Matrix J =
+      found.linear.J.allFinite() ? detail::reaching(found.linear.J, found.linear.seen) : linear::Matrix();
+  if (J.size() == 0) {  // not a number, or held by a limit: nothing moves the estimate
+    out.slowest_per_s = out.miss = infinity;
     return out;
   }
   const Eigen::VectorXcd z = J.eigenvalues();
   out.poles.assign(z.data(), z.data() + z.size());
+  out.slowest_per_s = -infinity;
   for (const auto& pole : out.poles) {
     const double size = sqrt(square(pole.real()) + square(pole.imag()));
     out.slowest_per_s = max(out.slowest_per_s, log(max(size, 1e-300)) / p.period_s);
   }
   return out;
+}
+
+// All of it; `start` is the method's state as it begins.
+template <class Method>
+ErrorDynamics error_dynamics(const typename Method::template Constants<double>& c,
+                             const typename Method::template State<double>& start, const TurningPoint& p,
+                             int held_ticks = 400) {
+  auto state = held_at_truth<Method>(c, start, p, held_ticks);
+  return dynamics_at<Method>(find_fixed_point<Method>(c, state, p), p);
 }
 
 }  // namespace slipbench

@@ -14,12 +14,30 @@ namespace {
 
 constexpr double two_pi = 6.28318530717958647693, none = std::numeric_limits<double>::quiet_NaN();
 constexpr double marginal_per_s = 0.1;
+constexpr int held_ticks = 400, belief_steps = 4;
 
 // Two sensors: alpha and beta carry 1 and 5/3 of a sensor's variance, 4/3 on average over a turn, three carry 2/3.
 EstimatorSetup evenly_noisy(EstimatorSetup setup) {
   if (setup.current_sensors == 2) setup.current_noise_A *= 1.41421356237309504880;
   setup.current_sensors = 3;
   return setup;
+}
+
+// With a wrong belief there may be several steady estimates: the one that grows out of the truth as the belief does is followed.
+std::vector<EstimatorSetup> beliefs(const EstimatorSetup& believed, const Circuit<double>& truth) {
+  EstimatorSetup setup = believed;
+  const auto now = numbers_of<double>(setup.circuit);
+  const auto from = numbers_of<const double>(truth), to = numbers_of<const double>(believed.circuit);
+  bool right = true;
+  for (std::size_t i = 0; i < now.size(); ++i) right = right && *from[i] == *to[i];
+  if (right) return {believed};
+  std::vector<EstimatorSetup> way;
+  for (int step = 0; step <= belief_steps; ++step) {
+    const double share = static_cast<double>(step) / belief_steps;
+    for (std::size_t i = 0; i < now.size(); ++i) *now[i] = *from[i] + share * (*to[i] - *from[i]);
+    way.push_back(setup);
+  }
+  return way;
 }
 
 EstimatorPoint point_of(const ErrorDynamics& e) {
@@ -39,15 +57,21 @@ EstimatorMapMaker::EstimatorMapMaker(const Scenario& s, std::size_t which) : flu
   const Circuit<double> truth = s.machine.circuit();
   each_estimator_method([&]<class Method>() {
     if (Method::kind != wanted.kind) return;
-    const auto c = Method::prepare(setup, wanted.settings);
-    at_ = [flux = flux_, c, setup, truth](double speed_rpm, double torque_Nm) {
+    // Constants from the true circuit to the believed one; one set where the belief is right.
+    std::vector<typename Method::template Constants<double>> way;
+    for (const EstimatorSetup& one : beliefs(setup, truth)) way.push_back(Method::prepare(one, wanted.settings));
+    at_ = [flux = flux_, way, setup, truth](double speed_rpm, double torque_Nm) -> EstimatorPoint {
       const double speed = speed_rpm * rad_s_in_rpm;
+      if (!flux.within_reach(speed, torque_Nm)) return {EstimatorPoint::State::beyond, none, none};
       EstimatorSetup here = setup;
       here.start_rotor_flux_Wb = flux.at(speed, torque_Nm);
       here.start_speed_rad_s = speed;
       const TurningPoint p =
           turning_point(truth, setup.control_period_s, here.start_rotor_flux_Wb, torque_Nm, truth.pole_pairs * speed);
-      return point_of(error_dynamics<Method>(c, Method::begin(here, c), p));
+      auto state = held_at_truth<Method>(way[0], Method::begin(here, way[0]), p, held_ticks);
+      FixedPoint<Method> found;
+      for (const auto& c : way) found = find_fixed_point<Method>(c, state, p);
+      return point_of(dynamics_at<Method>(found, p));
     };
   });
   if (!at_)

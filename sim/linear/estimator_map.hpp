@@ -12,10 +12,11 @@
 namespace slipbench {
 
 struct EstimatorPoint {
-  // marginal: neither grows nor dies within 10 s, as on the line of lost observability; unsettled: no steady estimate was found there.
-  enum class State { stable, marginal, unstable, unsettled } state = State::unsettled;
-  double slowest_per_s = 0.0;    // largest ln|z| / T; NaN where unsettled
-  double speed_error_rpm = 0.0;  // steady, of a wrong belief; NaN where unsettled
+  // marginal: neither grows nor dies within 10 s, as on the line of lost observability; unsettled: no steady estimate was found there;
+  // beyond: out of the drive's reach.
+  enum class State { stable, marginal, unstable, unsettled, beyond } state = State::unsettled;
+  double slowest_per_s = 0.0;    // largest ln|z| / T; NaN where unsettled or beyond
+  double speed_error_rpm = 0.0;  // steady, of a wrong belief; NaN where unsettled or beyond
 };
 
 struct EstimatorMapOptions {

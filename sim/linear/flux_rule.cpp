@@ -39,6 +39,15 @@ double FluxRule::at(double speed_rad_s, double torque_Nm) const {
   return weakening_from_ > 0.0 ? flux_ * min(1.0, weakening_from_ / max(electrical, 1e-9)) : flux_;
 }
 
+bool FluxRule::within_reach(double speed_rad_s, double torque_Nm) const {
+  if (!controller_) return true;
+  const double flux = at(speed_rad_s, torque_Nm);
+  const Vec2<double> current{flux / circuit_.magnetizing_inductance,
+                             torque_Nm / (controller_->torque_per_ampere * flux)};
+  // The rule's iteration ends at its floor where no flux gives the torque.
+  return flux > 1.0001 * controller_->orientation.flux_floor && magnitude(current) <= controller_->flux.current_limit;
+}
+
 double FluxRule::speed_at_frequency(double torque_Nm, double w_s) const {
   // Weakening is mild where slip and frequency matter: a few rounds settle it to rounding.
   const double p = circuit_.pole_pairs;

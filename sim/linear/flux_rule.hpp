@@ -19,6 +19,8 @@ class FluxRule {
  public:
   explicit FluxRule(const Scenario& scenario);  // throws InputError where the controller refuses its settings
   [[nodiscard]] double at(double speed_rad_s, double torque_Nm) const;  // Wb
+  // Whether voltage and current suffice for this torque there; true where no rotor_flux_oriented controller tells.
+  [[nodiscard]] bool within_reach(double speed_rad_s, double torque_Nm) const;
   // Mechanical speed at which the flux there, at this torque, turns at w_s (electrical rad/s).
   [[nodiscard]] double speed_at_frequency(double torque_Nm, double w_s) const;
   [[nodiscard]] const std::string& text() const { return text_; }  // one clause for a figure

@@ -1,5 +1,6 @@
 #include "sim/linear/observability_map.hpp"
 
+#include <limits>
 #include <memory>
 
 #include "sim/linear/operating_point.hpp"
@@ -76,7 +77,8 @@ ObservabilityMap speed_map(const Scenario& s, const SpeedMapOptions& options, co
       const linear::SpeedPoint p = maker.point(plane.speed_rpm(i), plane.torque_Nm(k));
       map.rotor_flux_Wb.push_back(p.machine.rotor_flux.x);
       map.stator_frequency_Hz.push_back(p.machine.frame_frequency / two_pi);
-      map.smallest.push_back(maker.at(p));
+      const bool reached = maker.flux().within_reach(p.machine.speed_rad_s, plane.torque_Nm(k));
+      map.smallest.push_back(reached ? maker.at(p) : std::numeric_limits<double>::quiet_NaN());
     }
     const double done = static_cast<double>(i + 1) / static_cast<double>(plane.speeds);
     going = !progress || progress(before + (1.0 - before) * done);

@@ -47,7 +47,7 @@ struct ObservabilityMap {
   linear::SpeedModel model{};
   Plane plane;
   std::vector<double> smallest, rotor_flux_Wb,
-      stator_frequency_Hz;  // by plane.index(); shorter where the work was stopped
+      stator_frequency_Hz;  // by plane.index(); NaN beyond the drive's reach; shorter where the work was stopped
   double at_rated = 0.0;    // the value at rated speed and torque
   FrequencyLines lines;
   std::optional<ScenarioPath> path;

@@ -106,7 +106,7 @@ TEST_CASE("estimator map: stable points shaded by their slowest pole, the others
                             "marginal:", "no steady estimate found", "decay of the slowest pole, 1/s"})
     CHECK_THAT(svg, Catch::Contains(label));
   // A point each: three shades and three fills, each of the fills once more in the legend.
-  for (const char* fill : {"#f3b9a0", "#f6e3a1", "#d9d9d9"}) CHECK(count(svg, fill) == 2);
+  for (const char* fill : {"#f3b9a0", "#f6e3a1", "#c4c4c4"}) CHECK(count(svg, fill) == 2);
   EstimatorMap good = map;
   good.points.assign(6, {EstimatorPoint::State::stable, -5.0, 0.0});
   const std::string even = map_figure(good);

@@ -64,8 +64,7 @@ std::span<const OptionRow> option_rows() {
        "look for the keys within the plan's ranges that make this figure largest; no store"},
       {"--budget", "N", "sweep", "with --search: runs to spend (200)", Takes::number},
       {"--write", "FILE.toml", "sweep design",
-       "with --search: the worst case as a scenario of its own; design of a scenario: its gains, for [controller] to "
-       "name",
+       "the worst case that a search found, as a scenario of its own; or a drive's gains, for [controller] to name",
        Takes::file},
       {"--on", "local|slurm", "sweep", "where it runs: here, or as an array of shards on the Slurm that sbatch reaches",
        Takes::word},

@@ -32,6 +32,7 @@ const char* name_of(EstimatorPoint::State state) {
   return state == State::stable     ? "stable"
          : state == State::marginal ? "marginal"
          : state == State::unstable ? "unstable"
+         : state == State::beyond   ? "beyond"
                                     : "unsettled";
 }
 

@@ -2,7 +2,7 @@
 //
 //   observability   speed_rpm, torque_Nm, stator_frequency_Hz, rotor_flux_Wb, smallest_singular_value
 //   path            time_s, speed_rpm, torque_Nm, stator_frequency_Hz, rotor_flux_Wb, blind (0 or 1), smallest_singular_value
-//   estimator       speed_rpm, torque_Nm, state (stable, marginal, unstable, unsettled), slowest_per_s, speed_error_rpm
+//   estimator       speed_rpm, torque_Nm, state (stable, marginal, unstable, unsettled, beyond), slowest_per_s, speed_error_rpm
 #pragma once
 
 #include <string>

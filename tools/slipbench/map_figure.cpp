@@ -17,9 +17,11 @@ namespace {
 constexpr double left = 84, top = 96, plot_width = 640, plot_height = 440, bar_gap = 26, bar_width = 18, bar_room = 92;
 constexpr double bottom = top + plot_height, right = left + plot_width, width = right + bar_gap + bar_width + bar_room;
 constexpr std::string_view line_colour = "#D55E00", path_colour = "#111111", blind_colour = "#E69F00",
-                           unstable_fill = "#f3b9a0", marginal_fill = "#f6e3a1", unsettled_fill = "#d9d9d9";
+                           unstable_fill = "#f3b9a0", marginal_fill = "#f6e3a1", unsettled_fill = "#c4c4c4",
+                           beyond_fill = "#ece7df";
+constexpr std::string_view beyond_words = "beyond the drive's voltage or current";
 constexpr int shades = 32;
-constexpr double darkest_share = 0.02;  // of the points: a few deep values must not take the whole scale
+constexpr double darkest_share = 0.005;  // of the points: a few deep values must not take the whole scale
 
 // A plot of the plane: axes, a fill for every point, lines clipped to it.
 class PlanePlot {
@@ -146,7 +148,7 @@ class Legend {
     words_at(words);
   }
   void field(std::string_view fill, const std::string& words) {
-    body_ += svg::rectangle(left, row_ - 11, 26, 12, fill);
+    body_ += svg::rectangle(left, row_ - 11, 26, 12, svg::frame) + svg::rectangle(left + 1, row_ - 10, 24, 10, fill);
     words_at(words);
   }
   void frequency(const FrequencyLines& lines) {
@@ -167,7 +169,10 @@ class Legend {
 
 std::string_view fill_of(EstimatorPoint::State state) {
   using State = EstimatorPoint::State;
-  return state == State::unstable ? unstable_fill : state == State::marginal ? marginal_fill : unsettled_fill;
+  return state == State::unstable   ? unstable_fill
+         : state == State::marginal ? marginal_fill
+         : state == State::beyond   ? beyond_fill
+                                    : unsettled_fill;
 }
 
 std::string words_of(linear::SpeedModel model) {
@@ -187,7 +192,7 @@ std::string map_figure(const ObservabilityMap& map) {
   std::string body = head(
       map.title, fmt::format("Where speed can be seen in the terminals; {}; {}", words_of(map.model), map.flux_text));
   body += plot.cells(shown.size(), [&](std::size_t n) {
-    return std::isfinite(map.smallest[n]) ? heat(darkness(scale, shown[n])) : std::string(unsettled_fill);
+    return std::isfinite(map.smallest[n]) ? heat(darkness(scale, shown[n])) : std::string(beyond_fill);
   });
   Legend legend;
   if (map.path) {
@@ -210,6 +215,8 @@ std::string map_figure(const ObservabilityMap& map) {
     body += plot.frequency_lines(map.lines);
   }
   legend.frequency(map.lines);
+  if (std::any_of(map.smallest.begin(), map.smallest.end(), [](double value) { return !std::isfinite(value); }))
+    legend.field(beyond_fill, std::string(beyond_words));
   body += plot.axes();
   if (!scale.empty()) body += colour_bar(scale, "smallest singular value, per unit; darkest: this or less");
   return svg::document(width, legend.end() + 4, map.title, body + legend.body());
@@ -241,6 +248,7 @@ std::string map_figure(const EstimatorMap& map) {
   if (any(State::unstable)) legend.field(unstable_fill, "unstable: an error grows");
   if (any(State::marginal)) legend.field(marginal_fill, "marginal: an error neither grows nor dies within 10 s");
   if (any(State::unsettled)) legend.field(unsettled_fill, "no steady estimate found");
+  if (any(State::beyond)) legend.field(beyond_fill, std::string(beyond_words));
   legend.frequency(map.lines);
   return svg::document(width, legend.end() + 4, map.title, body + legend.body());
 }

@@ -3,6 +3,7 @@
 #include <catch2/catch.hpp>
 
 #include "estimators/methods.hpp"
+#include "sim/engine/start.hpp"
 #include "sim/linear/error_dynamics.hpp"
 #include "sim/linear/estimator_map.hpp"
 #include "sim/scenario/read.hpp"
@@ -142,6 +143,32 @@ TEST_CASE("estimator map: a wrong belief shows as a steady speed error", "[sim][
   const EstimatorPoint point = maker.at(speed, torque);
   CHECK(point.state == EstimatorPoint::State::stable);
   CHECK(point.speed_error_rpm == Approx(-0.2 * slip_rpm).epsilon(0.05));
+}
+
+TEST_CASE("estimator map: of several steady estimates, the one that a run of the estimator comes to", "[sim][linear]") {
+  // At rest under load with the magnetising inductance believed 10 % too high: the estimator itself, started at the truth, is the judge.
+  const Scenario s = demo("fan_field_weakening.toml");
+  REQUIRE(s.estimators[1].kind == "reduced_order");
+  const EstimatorMapMaker maker(s, 1);
+  const Circuit<double> truth = s.machine.circuit();
+  EstimatorSetup setup = estimator_setup(s, 0.0);
+  const auto c = ReducedOrder::prepare(setup, {});
+  for (const double torque : {9.855, 13.14, 17.52, 20.805}) {
+    const TurningPoint p = turning_point(truth, setup.control_period_s, maker.flux().at(0.0, torque), torque, 0.0);
+    const ErrorMap<ReducedOrder> map(c, p);
+    auto state = held_at_truth<ReducedOrder>(c, ReducedOrder::begin(setup, c), p, 10);
+    for (int k = 0; k < 100000; ++k) state = map.next(state);  // 10 s: its slowest pole here is 4 to 10 1/s
+    const EstimatorPoint point = maker.at(0.0, torque);
+    INFO("torque " << torque << ": slowest " << point.slowest_per_s);
+    CHECK(point.state == EstimatorPoint::State::stable);
+    CHECK(point.speed_error_rpm * rad_s_in_rpm == Approx(state.speed / truth.pole_pairs).epsilon(1e-6));
+  }
+}
+
+TEST_CASE("estimator map: what the drive can't reach is told, not mapped", "[sim][linear]") {
+  const EstimatorMapMaker maker(demo("fan_field_weakening.toml"), 0);
+  CHECK(maker.at(2300.0, 21.0).state == EstimatorPoint::State::beyond);
+  CHECK(maker.at(2300.0, 5.0).state == EstimatorPoint::State::stable);
 }
 
 TEST_CASE("estimator map: what can't be mapped is refused by name", "[sim][linear]") {
