@@ -77,7 +77,7 @@ def bash_function(folder):
         ("run", "--set", "run.du"): {"run.duration_s="},
         ("run", "--set", "run.duration_s", "=", "2", "--tr"): {"--trace"},
         ("run", "--set", "run.duration_s", "=", "2", "a"): {"a.toml"},
-        ("check", "--schema", ""): {"scenario", "machine"},
+        ("check", "--schema", ""): {"scenario", "machine", "system"},
         ("check", "--schema", "--q"): {"--quiet"},
         ("--completion", "z"): {"zsh"},
         ("nonsense", ""): set(),

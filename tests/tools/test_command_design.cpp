@@ -1,5 +1,6 @@
 // The built command's `design` on state-space files: published gains, loops compared, requests that can't be met.
 #include <catch2/catch.hpp>
+#include <complex>
 
 #include "tests/tools/command.hpp"
 

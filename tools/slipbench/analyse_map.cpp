@@ -112,8 +112,9 @@ int map_of_drive(const Request& request, FileKind kind) {
   if (!request.path.empty() || !request.speed_model.empty())
     throw InputError("command line", request.path.empty() ? "--model" : "--path",
                      "--model and --path go with --map speed_observability", "usage");
-  const Scenario scenario = kind == FileKind::machine ? machine_on_mains(read_machine(request.file, request.overrides))
-                                                      : read_scenario(request.file, request.overrides, request.seed);
+  Scenario scenario = kind == FileKind::machine ? machine_on_mains(read_machine(request.file, request.overrides))
+                                                : read_scenario(request.file, request.overrides, request.seed);
+  if (kind == FileKind::machine) scenario.title = scenario.machine.title;
   const Outputs out(request);
   return told(request, out, map_of_estimator(request, scenario, told_progress("map", request.progress, request.quiet)));
 }

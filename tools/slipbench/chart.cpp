@@ -76,7 +76,7 @@ std::string chart(const Chart& c, const std::string& id) {
   if (c.decades) {
     for (const double t : decade_ticks(xs.low, xs.high, c.width)) {
       out += svg::line(x.at(t), c.top, x.at(t), bottom, svg::grid);
-      out += svg::text(x.at(t), bottom + 16, fmt::format("{:.3g}", std::pow(10.0, t)), {11, "middle", svg::soft_ink});
+      out += svg::text(x.at(t), bottom + 16, fmt::format("{:.5g}", std::pow(10.0, t)), {11, "middle", svg::soft_ink});
     }
   } else {
     const svg::Ticks ticks = svg::ticks(xs.low, xs.high, static_cast<int>(c.width / 70.0));

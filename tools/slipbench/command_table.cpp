@@ -54,7 +54,7 @@ std::span<const OptionRow> option_rows() {
       {"--case", "K", "run", "of a sweep plan: run case K alone, as the sweep numbers them from 0", Takes::number},
       {"--store", "FILE.sqlite", "sweep",
        "where the rows go (PLAN's name, in this folder); an older one is gone on with", Takes::file},
-      {"--csv", "FILE.csv", "sweep analyse", "write the whole store (of --map: the map) as CSV", Takes::file},
+      {"--csv", "FILE.csv", "sweep analyse", "write the whole store, or the map, as CSV", Takes::file},
       {"--isa", "double|sse2|avx2|avx512", "sweep", "instruction set of the packs (the widest there is); double: none",
        Takes::word},
       {"--shard", "I/N", "sweep", "run part I of N (from 0) into a store of its own"},
@@ -64,8 +64,7 @@ std::span<const OptionRow> option_rows() {
        "look for the keys within the plan's ranges that make this figure largest; no store"},
       {"--budget", "N", "sweep", "with --search: runs to spend (200)", Takes::number},
       {"--write", "FILE.toml", "sweep design",
-       "with --search: the worst case as a scenario of its own; design of a scenario: its gains, for [controller] to "
-       "name",
+       "the worst case that a search found, as a scenario of its own; or a drive's gains, for [controller] to name",
        Takes::file},
       {"--on", "local|slurm", "sweep", "where it runs: here, or as an array of shards on the Slurm that sbatch reaches",
        Takes::word},

@@ -19,7 +19,9 @@ constexpr double two_pi = 6.283185307179586, left = 70, wide = 400, gap = 80, to
                  right = left + 2 * wide + gap;
 constexpr Eigen::Index drawn_points = 1000;
 
-std::string_view dash_of(std::size_t loop) { return loop == 0 ? "2 3" : loop == 3 ? "7 4" : ""; }
+std::string_view dash_of(const Loop& loop) {
+  return loop.name == "open loop" ? "2 3" : loop.name == "with observer" ? "7 4" : "";
+}
 
 // The time that shows every stable loop settle; what is not stable runs off.
 double duration_of(const DesignResult& r) {
@@ -37,9 +39,10 @@ double duration_of(const DesignResult& r) {
   return longest > 0.0 ? longest : any;
 }
 
-ChartLine line_of(const linear::Response& r, Eigen::Index output, std::size_t loop, bool stairs) {
+ChartLine line_of(const linear::Response& r, Eigen::Index output, std::size_t loop, std::string_view dashes,
+                  bool stairs) {
   ChartLine line;
-  line.stroke = svg::colour(loop), line.dashes = dash_of(loop), line.stairs = stairs;
+  line.stroke = svg::colour(loop), line.dashes = dashes, line.stairs = stairs;
   const auto steps = static_cast<Eigen::Index>(r.time_s.size());
   const Eigen::Index stride = std::max<Eigen::Index>(1, steps / drawn_points);
   for (Eigen::Index i = 0; i < steps; i += stride) {
@@ -69,7 +72,7 @@ void scale(Chart& c, const std::vector<bool>& counts) {
 ChartLine gain_line(const DesignResult& r, const Loop& loop, Eigen::Index input, Eigen::Index output,
                     std::size_t number) {
   ChartLine line;
-  line.stroke = svg::colour(number), line.dashes = dash_of(number);
+  line.stroke = svg::colour(number), line.dashes = dash_of(loop);
   const linear::System& widest = r.loops.back().system;  // the same frequencies for all
   for (const double w : frequencies_for(widest, 300)) {
     try {
@@ -93,14 +96,14 @@ Panels panels_of(const DesignResult& r) {
     const double step_s = loop.system.discrete() ? 0.0 : grid.step_s;
     const bool stairs = loop.system.discrete();
     const auto answer = linear::step_response(loop.system, port.input, step_s, grid.steps);
-    p.output.lines.push_back(line_of(answer, port.output, i, stairs));
+    p.output.lines.push_back(line_of(answer, port.output, i, dash_of(loop), stairs));
     const Eigen::Index effort = loop.system.outputs() - r.plant.inputs();
-    p.effort.lines.push_back(line_of(answer, effort, i, stairs));
+    p.effort.lines.push_back(line_of(answer, effort, i, dash_of(loop), stairs));
     p.gain.lines.push_back(gain_line(r, loop, port.input, port.output, i));
     stable.push_back(loop.stable && (r.pi || loop.name != "open loop"));
     if (r.pi) continue;
     const auto pushed = linear::step_response(loop.system, loop.references, step_s, grid.steps);
-    p.pushed.lines.push_back(line_of(pushed, port.output, i, stairs));
+    p.pushed.lines.push_back(line_of(pushed, port.output, i, dash_of(loop), stairs));
   }
   scale(p.output, stable), scale(p.effort, stable), scale(p.pushed, stable);
   return p;
@@ -118,14 +121,15 @@ std::string design_figure(const DesignResult& r) {
   const std::string output = r.pi ? r.plant.output_name(0) : r.plant.output_name(r.tracked.front());
   const std::string input = r.plant.input_name(0);
   body += svg::text(left, 52,
-                    svg::fitted(fmt::format("{}; {} to one unit of its reference (open loop, feedback alone: of {}){}",
-                                            name_of(r.kind), output, input,
+                    svg::fitted(fmt::format("{}; {} to one unit of its reference{}{}", name_of(r.kind), output,
+                                            r.pi ? "" : " (open loop, feedback alone: of " + input + ")",
                                             r.tracked.size() > 1 ? "; the other outputs stand in the report" : ""),
                                 right - left, 12),
                     {12, "start", svg::soft_ink});
   std::vector<LegendEntry> entries;
   for (std::size_t i = 0; i < r.loops.size(); ++i)
-    entries.push_back({r.loops[i].name + (r.loops[i].stable ? "" : " (not stable)"), svg::colour(i), dash_of(i)});
+    entries.push_back(
+        {r.loops[i].name + (r.loops[i].stable ? "" : " (not stable)"), svg::colour(i), dash_of(r.loops[i])});
   double below = 76;
   body += legend(entries, left, right, 76, below);
   const double down = below - 76;

@@ -78,7 +78,8 @@ std::string linear_json(const EstimatorMap& m) {
   Json d = head("estimator_stability", m.title, m.plane, m.lines);
   d["estimator"] = m.name, d["kind"] = m.kind;
   const MapCounts counts = counts_of(m);
-  d["stable"] = counts.stable, d["unstable"] = counts.unstable, d["unsettled"] = counts.unsettled;
+  d["stable"] = counts.stable, d["marginal"] = counts.marginal, d["unstable"] = counts.unstable,
+  d["unsettled"] = counts.unsettled;
   d["points"] = Json::array();
   for (const EstimatorPoint& p : m.points)
     d["points"].push_back({{"state", name_of(p.state)}, {"slowest_per_s", value_of(p.slowest_per_s)}});

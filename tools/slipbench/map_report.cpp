@@ -68,6 +68,7 @@ MapCounts counts_of(const EstimatorMap& m) {
   MapCounts counts;
   for (const EstimatorPoint& p : m.points) {
     if (p.state == EstimatorPoint::State::stable) ++counts.stable;
+    if (p.state == EstimatorPoint::State::marginal) ++counts.marginal;
     if (p.state == EstimatorPoint::State::unstable) ++counts.unstable;
     if (p.state == EstimatorPoint::State::unsettled) ++counts.unsettled;
   }
@@ -79,8 +80,10 @@ std::string map_report(const EstimatorMap& m) {
       fmt::format("{}{}: where {} ({}) is stable\n", m.title, m.title.empty() ? "map" : "", m.name, m.kind);
   out += fmt::format("  {}; {}\n", plane_text(m.plane), m.flux_text);
   const MapCounts counts = counts_of(m);
-  out += fmt::format("Of {} points {} are stable, {} unstable, {} without a steady estimate.\n", m.points.size(),
-                     counts.stable, counts.unstable, counts.unsettled);
+  out += fmt::format(
+      "Of {} points {} are stable, {} marginal (neither grow nor die within 10 s), {} unstable, {} without a steady "
+      "estimate.\n",
+      m.points.size(), counts.stable, counts.marginal, counts.unstable, counts.unsettled);
   std::size_t slow = m.points.size();
   for (std::size_t i = 0; i < m.points.size(); ++i) {
     if (m.points[i].state != EstimatorPoint::State::stable) continue;

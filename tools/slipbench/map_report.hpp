@@ -14,7 +14,7 @@ std::string map_report(const EstimatorMap& map);
 
 // How many points of it are so.
 struct MapCounts {
-  std::size_t stable = 0, unstable = 0, unsettled = 0;
+  std::size_t stable = 0, marginal = 0, unstable = 0, unsettled = 0;
 };
 MapCounts counts_of(const EstimatorMap& map);
 

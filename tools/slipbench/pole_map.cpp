@@ -71,7 +71,7 @@ std::string s_grid(const PoleMap& map, const Plane& plane) {
     for (const double sign : {1.0, -1.0})
       out += svg::line(plane.origin_x, plane.origin_y, plane.origin_x + far * x, plane.origin_y + sign * far * y,
                        svg::grid);
-    const double reach = 0.86 * plane.reach_px;
+    const double reach = std::min(0.86 * plane.reach_px, (map.side / 2 - 14) / y);
     out += small(plane.origin_x + reach * x, plane.origin_y - reach * y, fmt::format("{:g}", d), "end");
   }
   out += svg::line(map.left, plane.origin_y, map.left + map.side, plane.origin_y, svg::frame);
