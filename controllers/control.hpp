@@ -57,7 +57,8 @@ struct InverterBelief {
 struct ControllerSetup {
   Circuit<double> circuit;  // as believed
   Nameplate nameplate;
-  double inertia_kgm2 = 0.0;  // as believed
+  double inertia_kgm2 = 0.0;     // as believed
+  double current_noise_A = 0.0;  // of a current sensor, rms a phase, ADC quantisation included
   double control_period_s = 100e-6;
   int delay_periods = 1;
   Modulation modulation = Modulation::space_vector;

@@ -1,7 +1,7 @@
 // Current loop by state feedback in the rotor-flux frame, gains scheduled over speed.
 //
 //   u = v + j w_slip L_sigma i,  v = N i_ref - K x + z,    x = (i, psi, v(k-1), v(k-2))    each d and q
-//   z(k+1) = z(k) + K_I (i_ref - i) + a (u_given - u),  |z| within the voltage limit; z = 0 without integral action
+//   z(k+1) = z(k) + K_I (i_ref - i_measured) + a (u_given - u),  |z| within the voltage limit; z = 0 without integral action
 //
 // K, K_I, N belong to |w_r| as they stand; at a negative speed the machine is its mirror image (q turned round), and so are
 // they. They are designed for a frame that turns with the rotor; what u adds to v makes up for the slip's part of the
@@ -51,11 +51,11 @@ Vec2<Real> holding_voltage(const StateCurrentConstants<Real>& c, const RotorFram
           c.resistance * f.current.y + drop * f.current.x + f.electrical_speed * emf};
 }
 
-// `flux`: rotor flux seen from the frame (d, q), Wb.
+// State: the frame's current and `flux`, seen from it (d, q), Wb. `measured`: the current that is to have no error, likewise.
 template <class Real>
 VoltageCommand<Real> control_current(StateCurrentState<Real>& s, const StateCurrentConstants<Real>& c,
-                                     const RotorFrame<Real>& f, const Vec2<Real>& flux, const Vec2<Real>& reference,
-                                     const Real& limit, const Real& dc_link) {
+                                     const RotorFrame<Real>& f, const Vec2<Real>& flux, const Vec2<Real>& measured,
+                                     const Vec2<Real>& reference, const Real& limit, const Real& dc_link) {
   const Real turn = sign(f.electrical_speed);
   const auto mirror = [&](const Vec2<Real>& x) { return Vec2<Real>{x.x, turn * x.y}; };
   const std::array<Real, scheduled_gains> gains = at(c.gains, fabs(f.electrical_speed));
@@ -74,7 +74,7 @@ VoltageCommand<Real> control_current(StateCurrentState<Real>& s, const StateCurr
   using All = std::array<Vec2<Real>, 4>;
   constexpr std::size_t integral_rows = 2 * feedback_columns, reference_rows = integral_rows + 4;
 
-  const Vec2<Real> error = reference - f.current;
+  const Vec2<Real> error = reference - measured;
   const Vec2<Real> fed_back = times(0, All{mirror(f.current), mirror(flux), mirror(s.given[0]), mirror(s.given[1])});
   const Vec2<Real> slip_drop = ((f.stator_frequency - f.electrical_speed) * c.leakage) * quarter_turn(f.current);
   const Vec2<Real> wanted = times(reference_rows, One{mirror(reference)}) - fed_back + s.integral + slip_drop;

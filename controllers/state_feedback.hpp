@@ -2,7 +2,8 @@
 //
 //   speed, flux, field weakening, orientation   as rotor_flux_oriented.hpp, same settings
 //   state_current_control.hpp                   u = N i_ref - K x + z, gains scheduled over speed
-//   plant/current_flux_observer.hpp             with `observer`: current and flux (and so the frame, unless direct) are the observer's
+//   plant/current_flux_observer.hpp             with `observer`: current and flux (and so the frame, unless direct) are the observer's;
+//                                               the integral hears the measured current, lest a wrong model leave an error
 //
 // Gains: from a gain file, or designed in `prepare` by state_feedback_design.hpp; both come as the same settings. Without observer
 // the state is the measured current and the flux of the orientation. SI units; amplitude-invariant; d on the rotor flux.
@@ -25,7 +26,9 @@ struct StateFeedback {
       {"integral_bandwidth_Hz", "Hz", 0.1, 2000.0, derived,
        "bandwidth w_I / 2 pi of the integral action in a design; default a fifth of the current loop's"},
       {"measured_current_noise_A", "A", 1e-9, 1e6, derived,
-       "noise of a current sensor, rms a phase, that the observer is designed for; default 0.1 % of rated peak"},
+       "noise of a current sensor, rms a phase, that the observer is designed for; default the sensor's, at least 0.1 "
+       "% of rated "
+       "peak"},
       {"process_voltage_V", "V", 0.0, 1e6, derived,
        "voltage error, rms and fresh each period, that it is designed for; default 0.5 % of rated phase peak"},
       {"process_flux_Wb", "Wb", 0.0, 1e3, derived,
@@ -90,8 +93,8 @@ struct StateFeedback {
     observe(s.observer, c.observer, applied, m.current, c.orientation.pole_pairs * m.speed, first);
     s.orientation.rotor_flux = select(observed, s.observer.x.flux, s.orientation.rotor_flux);
     RotorFrame<Real> frame = orient(s.orientation, c.orientation, m, applied, first | observed);
-    const Vec2<Real> current = turn_back(frame.angle, s.observer.x.current);
-    frame.current = select(observed, current, frame.current);
+    const Vec2<Real> measured = frame.current;
+    frame.current = select(observed, turn_back(frame.angle, s.observer.x.current), measured);
     const Real slip = c.orientation.slip_gain * frame.current.y / frame.divisor_flux;
     frame.stator_frequency = frame.electrical_speed + slip;
     s.orientation.stator_frequency = frame.stator_frequency;
@@ -103,7 +106,7 @@ struct StateFeedback {
     const Real limit = voltage_limit(c.current.legs, m.dc_link);
     const Real torque = follow_speed_and_flux(s, c, m, frame, limit, s.current.asked, first);
     const VoltageCommand<Real> u =
-        control_current(s.current, c.current, frame, flux, s.current_reference, limit, m.dc_link);
+        control_current(s.current, c.current, frame, flux, measured, s.current_reference, limit, m.dc_link);
     Command<Real> out;
     out.duty = u.duty;
     out.clipped = u.clipped;

@@ -49,7 +49,8 @@ StateFeedbackWeights state_feedback_weights(const ControllerSetup& setup, const 
   w.bandwidth = RotorFluxOriented::current_bandwidth(setup, given);
   if (given.value("integral_action", 1.0) > 0.5)
     w.integral_bandwidth = two_pi * given.value("integral_bandwidth_Hz", 0.2 * w.bandwidth / two_pi);
-  w.current_noise_A = component * given.value("measured_current_noise_A", 1e-3 * plate.peak_current_A());
+  w.current_noise_A =
+      component * given.value("measured_current_noise_A", max(setup.current_noise_A, 1e-3 * plate.peak_current_A()));
   w.voltage_V = given.value("process_voltage_V", 5e-3 * plate.phase_peak_V());
   w.flux_Wb = given.value("process_flux_Wb", 0.02 * setup.rotor_flux_reference_Wb * sqrt(setup.control_period_s));
   w.faster_than_controller = given.value("faster_than_controller", 0.0);

@@ -17,7 +17,7 @@ using Eigen::Index;
 // a + j b as the matrix that multiplies a vector by it.
 Matrix turning(double a, double b) {
   Matrix m(2, 2);
-  m << a, -b, b, a;
+  m << a, 0.0 - b, b, a;  // no negative zero
   return m;
 }
 
@@ -145,9 +145,12 @@ Matrix stationary_observer(const Circuit<double>& circuit, double period_s, doub
   const Matrix V = square(noise.current_A) * Matrix::Identity(2, 2);
   const Matrix M = stationary_kalman(plant, W, V).M;
   // The filter of a machine that looks the same from all sides does so too; rounding is taken out.
+  constexpr double rounding = 1e-14;
   Matrix round(4, 2);
-  for (Index row = 0; row < 4; row += 2)
-    round.middleRows(row, 2) = turning(0.5 * (M(row, 0) + M(row + 1, 1)), 0.5 * (M(row + 1, 0) - M(row, 1)));
+  for (Index row = 0; row < 4; row += 2) {
+    const double a = 0.5 * (M(row, 0) + M(row + 1, 1)), b = 0.5 * (M(row + 1, 0) - M(row, 1));
+    round.middleRows(row, 2) = turning(a, fabs(b) > rounding * fabs(a) ? b : 0.0);
+  }
   return w == 0.0 ? zero_across(round) : round;
 }
 

@@ -18,7 +18,7 @@ void add_matrix(SettingTable& table, const Matrix& matrix);
 // 0 to three times rated, in equal steps.
 SettingTable default_gain_speeds(const Nameplate& plate);
 void demand_gain_speeds(const Settings& given);
-// gain_period_s, where given, is this period.
+// gain_period_s, where given with gains, is this period.
 void demand_gain_period(const Settings& given, double period_s);
 // The table is there, with `rows` x `columns` at each speed; `why` ends the sentence that says what is wanted.
 void demand_gains(const Settings& given, const char* name, std::size_t rows, std::size_t columns,

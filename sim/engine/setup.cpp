@@ -54,6 +54,7 @@ void prepare_methods(RunSetup& run, const Scenario& s, EstimatorSetup e) {
   if (!run.shape.control.present) return;
   ControllerSetup c =
       controller_setup(s, modulation_of(s), run.shape.control.compensated, run.shape.control.speed_from >= 0);
+  c.current_noise_A = e.current_noise_A;
   c.start_rotor_flux_Wb = e.start_rotor_flux_Wb;
   c.start_speed_rad_s = e.start_speed_rad_s;
   try {

@@ -6,6 +6,7 @@
 #include "estimators/linear_observer.hpp"
 #include "plant/linear/current_loop.hpp"
 #include "plant/linear/gain_table.hpp"
+#include "sim/engine/setup_parts.hpp"
 #include "sim/engine/start.hpp"
 #include "sim/scenario/input_error.hpp"
 
@@ -65,7 +66,8 @@ DriveDesign design_drive(const Scenario& s, const DriveDesignOptions& options) {
   if (s.on_mains())
     throw InputError(s.path, "supply.kind",
                      "this scenario is on mains: without an inverter there is no current loop to design", "relation");
-  const ControllerSetup setup = controller_setup(s, Modulation::space_vector, false, false);
+  ControllerSetup setup = controller_setup(s, Modulation::space_vector, false, false);
+  setup.current_noise_A = current_noise(s);
   Settings given = s.controller.kind == "state_feedback" ? weights_of(s.controller.settings) : Settings();
   const auto change = [&](const char* name, const auto& value) {
     if (value) given.set(name, static_cast<double>(*value));

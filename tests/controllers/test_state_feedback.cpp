@@ -125,6 +125,12 @@ TEST_CASE("state feedback: integral action takes away what a wrong resistance le
     Loop integrated = torque_drive(truth, setup, chosen(true, false), speed);
     const double with = error_left(integrated, truth);
     INFO(truth.name << ": " << without << " (closed form " << expected << "), with integral action " << with);
+    Loop observed = torque_drive(truth, setup, chosen(true, true), speed);
+    (void)error_left(observed, truth);
+    // The observer's frame is turned by the wrong resistance; the current's length is the reference's all the same.
+    const double length = magnitude(observed.current()) / magnitude(observed.command.current_reference);
+    INFO("length with observer " << length);
+    CHECK(std::fabs(length - 1.0) < 1e-6);            // settled integrals
     CHECK(without == Approx(expected).epsilon(0.1));  // the turning frame's share of the impedance, left out
     CHECK(with < 1e-4);                               // as on the matched drive
   }
@@ -230,7 +236,7 @@ TEST_CASE("state feedback: the schedule has no jump", "[controllers][closed_form
       f.stator_frequency = at_speed + 10.0;
       f.current = {4.0, 7.0};
       const Vec2<double> flux{truth.rotor_flux_Wb, 0.05};
-      const auto out = control_current(s, c.current, f, flux, Vec2<double>{4.2, 6.0}, 1e4, 2e4);
+      const auto out = control_current(s, c.current, f, flux, f.current, Vec2<double>{4.2, 6.0}, 1e4, 2e4);
       return out.given;
     };
     INFO("at " << w << " rad/s");

@@ -8,8 +8,9 @@
 using namespace slipbench;
 using namespace slipbench::tests;
 
-// A drive that magnetises, speeds up and takes load, without noise. Left is the speed's bow within a period: its mean is taken of
-// both ends, and the voltage's standing vector against the test's Runge-Kutta steps: 1e-6 of the flux.
+// A drive that magnetises, speeds up (a = 750 rad/s2 electrical) and takes load, without noise. The speed moves within a period, its mean
+// alone is used: that puts the predicted current off by a T^3 w psi / (12 L_sigma) = 3e-6 A each period, of which the flux takes
+// some 0.01 H, over the 100 to 1000 periods that its error lives: 1e-5 of the flux.
 TEST_CASE("linear observer: begun right it stays right while the speed moves", "[estimators][physics]") {
   for (const PublishedMachine& machine : published_machines()) {
     std::vector<Rider> riders{rider<LinearObserver>(setup_of(machine))};
@@ -25,7 +26,7 @@ TEST_CASE("linear observer: begun right it stays right while the speed moves", "
       worst_torque = std::max(worst_torque, std::fabs(estimates[0].torque - truth.torque));
     });
     INFO(machine.name << ": flux off by " << worst_flux << " Wb, torque by " << worst_torque << " N m");
-    CHECK(worst_flux < 1e-6 * bench.flux_reference());
+    CHECK(worst_flux < 1e-5 * bench.flux_reference());
     CHECK(worst_torque < 1e-5 * machine.plate.torque_Nm);
   }
 }

@@ -194,6 +194,10 @@ def values(key):
         return [[[0.0, x]] for x in good], [[[0.0, x]] for x in bad] + [[], [[0.0]], good[0]]
     if key["type"] == "triple":
         return [[x, good[0], good[0]] for x in good], [[good[0], x, good[0]] for x in bad] + [[good[0]], good[0]]
+    if key["type"] == "list":
+        return [[x, good[0]] for x in good], [[good[0], x] for x in bad] + [[], good[0], [[good[0]]]]
+    if key["type"] == "matrices":
+        return [[[[x, good[0]]]] for x in good], [[[[good[0], x]]] for x in bad] + [[], [[]], [[good[0]]], good[0]]
     return good, bad + [[good[0]]]
 
 
