@@ -195,6 +195,24 @@ TEST_CASE("analyse: the picture holds poles, steps, gain and phase", "[tools][co
   }
 }
 
+TEST_CASE("analyse: numbers beyond sense end in a sentence, never in a fault", "[tools][command]") {
+  const Folder folder;
+  const std::string tail =
+      "B = [[0.0], [1.0]]\nC = [[1.0, 0.0]]\n[design]\nkind = \"lqr\"\nQ = [[1.0, 0.0], [0.0, 1.0]]\nR = [[1.0]]\n";
+  int n = 0;
+  for (const char* A : {"[[1e100, 1.0], [0.0, -1e-100]]", "[[-1e-6, 1.0], [0.0, -1e9]]", "[[1e6, 1.0], [0.0, -1e-6]]",
+                        "[[0.0, 0.0], [0.0, 0.0]]", "[[0.0, 1e100], [-1e100, 0.0]]"}) {
+    const std::string file =
+        folder.write("odd" + std::to_string(n++) + ".toml", "[system]\nA = " + std::string(A) + "\n" + tail);
+    for (const char* verb : {"analyse", "design"}) {
+      const Answer answer = folder.run({verb, file, "--figure", folder.file("odd.svg")});
+      INFO(verb << " of " << A << ": " << answer.err);
+      CHECK((answer.status == 0 || answer.status == 2));
+      CHECK(answer.err.find("fault in slipbench") == std::string::npos);
+    }
+  }
+}
+
 TEST_CASE("analyse: refusals", "[tools][command]") {
   const Folder folder;
   const std::string lag = folder.write("lag.toml", "[system]\nA = [[-2.0]]\nB = [[2.0]]\nC = [[1.0]]\n");
