@@ -8,6 +8,7 @@
 #include "plant/linear/dense.hpp"
 #include "plant/linear/pole_set.hpp"
 #include "plant/linear/robust_eigenvectors.hpp"
+#include "plant/linear/schur.hpp"
 #include "plant/linear/staircase.hpp"
 
 namespace slipbench::linear {
@@ -125,7 +126,7 @@ double condition_of_eigenvectors(const Matrix& A) {
   if (A.rows() == 0) return 1.0;
   return [](const Vector& s) {
     return s.minCoeff() > 0.0 ? s.maxCoeff() / s.minCoeff() : 1e300;
-  }(singular_values(ComplexMatrix(Eigen::EigenSolver<Matrix>(A).eigenvectors())));
+  }(singular_values(eigenpairs(A).vectors));
 }
 
 }  // namespace
