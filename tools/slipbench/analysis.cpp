@@ -1,5 +1,7 @@
 #include "tools/slipbench/analysis.hpp"
 
+#include <algorithm>
+
 #include "plant/linear/zeros.hpp"
 
 namespace slipbench {
@@ -19,7 +21,8 @@ auto tried(F&& make) -> Maybe<decltype(make())> {
 }
 
 void warn(Analysis& a, const std::string& warning) {
-  if (!warning.empty()) a.warnings.push_back(warning);
+  if (!warning.empty() && std::find(a.warnings.begin(), a.warnings.end(), warning) == a.warnings.end())
+    a.warnings.push_back(warning);
 }
 
 }  // namespace
