@@ -45,6 +45,16 @@ constexpr void label_d_q([[maybe_unused]] const char* name, [[maybe_unused]] con
   }
 }
 
+// Those of the three phases.
+template <template <class> class Three, class Real>
+constexpr void label_phases([[maybe_unused]] const char* name, [[maybe_unused]] const Three<Real>& x) {
+  if constexpr (Notes<Real>::kept) {
+    Notes<Real>::label(std::string(name) + "_a", x.a);
+    Notes<Real>::label(std::string(name) + "_b", x.b);
+    Notes<Real>::label(std::string(name) + "_c", x.c);
+  }
+}
+
 }  // namespace slipbench
 
 #define SLIPBENCH_LABEL(...) SLIPBENCH_EXPAND(SLIPBENCH_LABEL_ONE(__VA_ARGS__))

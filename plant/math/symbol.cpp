@@ -267,7 +267,10 @@ std::size_t operand_count(SymbolOp op) {
 
 template <class S>
 std::uint32_t Graph<S>::node(Node n) {
-  const std::array<std::uint64_t, 5> key{static_cast<std::uint64_t>(n.op), n.a, n.b, n.c,
+  // A sum is the same whichever way round; it keeps the order in which it was first written.
+  const bool turned = commutes(n.op) && n.b < n.a;
+  const std::uint32_t first = turned ? n.b : n.a, second = turned ? n.a : n.b;
+  const std::array<std::uint64_t, 5> key{static_cast<std::uint64_t>(n.op), first, second, n.c,
                                          std::bit_cast<BitsOf<S>>(n.value)};
   const auto [place, fresh] = known_.try_emplace(key, static_cast<std::uint32_t>(nodes.size()));
   if (fresh) nodes.push_back(n);
@@ -277,7 +280,13 @@ std::uint32_t Graph<S>::node(Node n) {
 template <class S>
 std::uint32_t Graph<S>::id_of(const SymbolNode<S>& n, bool mask) {
   if (n.graph == nullptr) {
-    const std::uint32_t id = node({mask ? SymbolOp::truth : SymbolOp::constant, 0, 0, 0, n.value, !is(n, -0.0)});
+    // Constants that came about differently stay apart, or one would bear the other's name.
+    std::uint32_t told = 0;
+    if (n.origin) {
+      const auto next = static_cast<std::uint32_t>(known_origins_.size() + 1);
+      told = known_origins_.try_emplace(*n.origin, next).first->second;
+    }
+    const std::uint32_t id = node({mask ? SymbolOp::truth : SymbolOp::constant, told, 0, 0, n.value, !is(n, -0.0)});
     if (n.origin) origins.try_emplace(id, *n.origin);
     return id;
   }
@@ -298,8 +307,13 @@ SymbolNode<S> record(SymbolOp op, const SymbolNode<S>& first, const SymbolNode<S
   n.a = graph->id_of(a, mask_operands(op) || op == SymbolOp::select);
   if (count > 1) n.b = graph->id_of(b, mask_operands(op));
   if (count > 2) n.c = graph->id_of(c, false);
-  if (commutes(op) && n.b < n.a) std::swap(n.a, n.b);
   return {graph, graph->node(n), S{}, {}};
+}
+
+template <class S>
+bool truth_of(const SymbolNode<S>& constant) {
+  if (constant.graph != nullptr) throw std::logic_error("a step branches on data: it must choose by select");
+  return constant.value != S(0);
 }
 
 // A constant's are computed here; the pair itself is never one.
@@ -314,73 +328,11 @@ SinCos<Symbol<S>> Symbol<S>::pair_of(SymbolOp op, const Symbol& a) {
   return {Symbol(record<S>(SymbolOp::sine_of, pair)), Symbol(record<S>(SymbolOp::cosine_of, pair))};
 }
 
-template <class S>
-Symbol<S> Program<S>::input(const std::string& name, const std::string& array) {
-  std::size_t element = 0;
-  for (const auto& port : inputs_) element += port.array == array;
-  const Symbol<S> x = input_at(array + "[" + std::to_string(element) + "]", name);
-  inputs_.back().array = array, inputs_.back().element = element;
-  return x;
-}
-
-template <class S>
-Symbol<S> Program<S>::input_at(const std::string& place, const std::string& name) {
-  const auto number = static_cast<std::uint32_t>(inputs_.size());
-  const SymbolNode<S> node{graph_.get(), graph_->node({SymbolOp::input, number, 0, 0, S{}, false}), S{}, {}};
-  graph_->label(name, node);
-  inputs_.push_back({name, place, "", 0, node});
-  return Symbol<S>(node);
-}
-
-template <class S>
-void Program<S>::output(const std::string& name, const Symbol<S>& value, const std::string& array) {
-  std::size_t element = 0;
-  for (const auto& port : outputs_) element += port.array == array;
-  output_at(array + "[" + std::to_string(element) + "]", name, value);
-  outputs_.back().array = array, outputs_.back().element = element;
-}
-
-template <class S>
-void Program<S>::output_at(const std::string& place, const std::string& name, const Symbol<S>& value) {
-  outputs_.push_back({name, place, "", 0, value.node()});
-}
-
-template <class S>
-std::vector<bool> Program<S>::needed() const {
-  std::vector<bool> need(graph_->nodes.size(), false);
-  for (const auto& port : outputs_) {
-    if (port.node.graph) need[port.node.id] = true;
-  }
-  for (std::size_t i = need.size(); i-- > 0;) {
-    const auto& n = graph_->nodes[i];
-    const std::size_t count = need[i] ? operand_count(n.op) : 0;
-    if (count > 0) need[n.a] = true;
-    if (count > 1) need[n.b] = true;
-    if (count > 2) need[n.c] = true;
-  }
-  return need;
-}
-
-template <class S>
-std::map<SymbolOp, std::size_t> Program<S>::operation_counts() const {
-  std::map<SymbolOp, std::size_t> counts;
-  const auto need = needed();
-  for (std::size_t i = 0; i < need.size(); ++i) {
-    if (need[i]) ++counts[graph_->nodes[i].op];
-  }
-  return counts;
-}
-
 #define SLIPBENCH_SYMBOL(S)                                                                                     \
   template class Graph<S>;                                                                                      \
+  template bool truth_of(const SymbolNode<S>&);                                                                 \
   template SymbolNode<S> record<S>(SymbolOp, const SymbolNode<S>&, const SymbolNode<S>&, const SymbolNode<S>&); \
-  template SinCos<Symbol<S>> Symbol<S>::pair_of(SymbolOp, const Symbol<S>&);                                    \
-  template Symbol<S> Program<S>::input(const std::string&, const std::string&);                                 \
-  template Symbol<S> Program<S>::input_at(const std::string&, const std::string&);                              \
-  template void Program<S>::output(const std::string&, const Symbol<S>&, const std::string&);                   \
-  template void Program<S>::output_at(const std::string&, const std::string&, const Symbol<S>&);                \
-  template std::vector<bool> Program<S>::needed() const;                                                        \
-  template std::map<SymbolOp, std::size_t> Program<S>::operation_counts() const;
+  template SinCos<Symbol<S>> Symbol<S>::pair_of(SymbolOp, const Symbol<S>&);
 SLIPBENCH_SYMBOL(float)
 SLIPBENCH_SYMBOL(double)
 

@@ -82,6 +82,9 @@ template <class S>
 SymbolNode<S> record(SymbolOp op, const SymbolNode<S>& a, const SymbolNode<S>& b = {}, const SymbolNode<S>& c = {});
 
 template <class S>
+bool truth_of(const SymbolNode<S>& constant);
+
+template <class S>
 class SymbolMask {
  public:
   SymbolMask() = default;
@@ -96,6 +99,8 @@ class SymbolMask {
     return SymbolMask(record<S>(SymbolOp::either, a.node(), b.node()));
   }
   friend SymbolMask operator!(const SymbolMask& a) { return SymbolMask(record<S>(SymbolOp::opposite, a.node())); }
+  // Of a choice that constants make; std::logic_error where it hangs on data.
+  friend bool any(const SymbolMask& a) { return truth_of(a.node()); }
 
  private:
   SymbolNode<S> node_;
@@ -183,6 +188,7 @@ class Graph {
 
  private:
   std::map<std::array<std::uint64_t, 5>, std::uint32_t> known_;
+  std::map<std::string, std::uint32_t> known_origins_;
 };
 
 template <class S>

@@ -45,6 +45,7 @@ class Writer {
     for (std::uint32_t i = 0; i < need_.size(); ++i) {
       if (need_[i]) visit(i);
     }
+    if (!graph_.sections.empty()) line("\n  /* kept for the next call, and answered */");
     for (const auto& port : program_.written()) {
       const std::string value = port.node.graph ? text_[port.node.id].text : constant_text(port.node);
       line("  " + port.place + (port.place == "return" ? " " : " = ") + value + ";");
@@ -75,11 +76,6 @@ class Writer {
   }
   // Names that were given are kept free from those made up here.
   void reserve_names() {
-    for (const auto& [id, origin] : graph_.origins) {
-      if (constants_ == Constants::named && need_[id] && origin.find(' ') == std::string::npos && origin[0] != '-' &&
-          !simple(graph_.nodes[id].value))
-        given_[id] = free_name(origin);
-    }
     for (const auto& [id, label] : graph_.labels) {
       if (need_[id]) given_[id] = free_name(label);
     }
@@ -95,15 +91,23 @@ class Writer {
     return value == value && fabs(value) <= S(4096.0) && floor(scaled) == scaled;
   }
 
-  std::string constant_text(const SymbolNode<S>& n) { return constant_text(n.value, n.origin ? *n.origin : "", ""); }
-  std::string constant_text(S value, const std::string& origin, const std::string& given) {
+  std::string constant_text(const SymbolNode<S>& n) { return constant_text(n.value, n.origin ? *n.origin : ""); }
+  // A constant's declaration comes with its first use; the negative of a named one is written as such.
+  std::string constant_text(S value, const std::string& origin) {
     if (constants_ == Constants::inlined || simple(value) || value - value != S(0)) return c_literal(value);
+    if (origin.size() > 1 && origin[0] == '-' && is_name(origin.substr(1)))
+      return "-" + constant_text(-value, origin.substr(1));
+    std::string& identifier = declared_[origin.empty() ? c_literal(value) : origin];
+    if (!identifier.empty()) return identifier;
+    identifier = free_name(is_name(origin) ? origin : "k" + std::to_string(++unnamed_));
     char decimal[40];
     std::snprintf(decimal, sizeof decimal, "%.7g", static_cast<double>(value));
-    const std::string identifier = given.empty() ? free_name("k" + std::to_string(++unnamed_)) : given;
     body_.constants += std::string("static const ") + c_type<S>() + " " + identifier + " = " + c_literal(value) +
-                       "; /* " + decimal + (given.empty() && !origin.empty() ? " = " + origin : "") + " */\n";
+                       "; /* " + decimal + (is_name(origin) || origin.empty() ? "" : " = " + origin) + " */\n";
     return identifier;
+  }
+  static bool is_name(const std::string& origin) {
+    return !origin.empty() && origin[0] != '-' && origin.find_first_of(" (") == std::string::npos;
   }
 
   // The heading in whose range the node was recorded, once, when its first statement comes.
@@ -118,6 +122,8 @@ class Writer {
   }
 
   void state(std::uint32_t i) {
+    if (reading_) line("");
+    reading_ = false;
     heading(recording_);
     const SymbolOp op = graph_.nodes[i].op;
     const auto given = given_.find(i);
@@ -139,12 +145,14 @@ class Writer {
       text_[i] = {n.value != S(0) ? "1" : "0", name, false};
     } else if (n.op == SymbolOp::constant) {
       const auto origin = graph_.origins.find(i);
-      const std::string text = constant_text(n.value, origin == graph_.origins.end() ? "" : origin->second, own);
+      const std::string text = constant_text(n.value, origin == graph_.origins.end() ? "" : origin->second);
       text_[i] = {text, text[0] == '-' || text[0] == '(' ? sign : name, false};
     } else if (n.op == SymbolOp::input) {
       text_[i] = {own, name, false};
       const std::string& place = program_.read()[n.a].place;
-      if (place != own) line("  const " + std::string(c_type<S>()) + " " + own + " = " + place + ";");
+      if (place == own) return;
+      line("  const " + std::string(c_type<S>()) + " " + own + " = " + place + ";");
+      reading_ = true;
     } else {
       count(n.op);
       text_[i] = expression(n);
@@ -190,6 +198,8 @@ class Writer {
     };
     switch (n.op) {
       case SymbolOp::add:
+        if (graph_.nodes[n.b].op == SymbolOp::constant && text_[n.b].text[0] == '-')  // the same to the bit
+          return Text{operand(n.a, sum) + " - " + text_[n.b].text.substr(1), sum, true};
         return infix(" + ", sum);
       case SymbolOp::subtract:
         return infix(" - ", sum);
@@ -273,10 +283,12 @@ class Writer {
   std::vector<Text> text_;
   std::set<std::string> taken_;
   std::map<std::uint32_t, std::string> given_;
+  std::map<std::string, std::string> declared_;  // constants, by origin or value
   Constants constants_;
   std::string prefix_;
   Body<S> body_;
   std::uint32_t recording_ = 0;
+  bool reading_ = false;  // the last lines read inputs
   std::ptrdiff_t headed_ = 0;
   int temporaries_ = 0, unnamed_ = 0;
 };

@@ -8,6 +8,7 @@
 
 #include "sim/scenario/read.hpp"
 #include "sim/sweep/sweep.hpp"
+#include "tools/slipbench/board_cost.hpp"
 
 namespace slipbench {
 
@@ -33,6 +34,12 @@ struct Request {
   std::vector<std::string> slurm;          // sweep: --slurm OPTION, for sbatch, without the dashes
   std::uint32_t budget = 200;              // sweep: --budget N
   std::optional<std::uint64_t> plan_case;  // run PLAN --case K
+  std::vector<std::string> estimators;     // export: --estimator NAME, repeatable
+  bool export_controller = false;          // export: --controller
+  bool double_precision = false;           // export: --precision double
+  std::string to = "exported";             // export: --to FOLDER
+  bool cost = false;                       // export: --cost
+  ClockBand band;                          // export: --clock-MHz, --clocks-per-instruction
   bool keys = false, markdown = false;
   std::string schema;  // check: of "scenario" or "machine" files; "": none
   [[nodiscard]] bool wants_reference() const { return keys || !schema.empty(); }  // then there is no file
