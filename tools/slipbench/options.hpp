@@ -8,7 +8,7 @@
 
 #include "sim/scenario/read.hpp"
 #include "sim/sweep/sweep.hpp"
-#include "tools/slipbench/board_cost.hpp"
+#include "tools/slipbench/clock_band.hpp"
 
 namespace slipbench {
 
