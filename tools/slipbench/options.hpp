@@ -39,7 +39,7 @@ struct Request {
   bool double_precision = false;           // export: --precision double
   std::string to = "exported";             // export: --to FOLDER
   bool cost = false;                       // export: --cost
-  ClockBand band;                          // export: --clock-MHz, --clocks-per-instruction
+  ClockBand band;                          // export: --clock-mhz, --clocks-per-instruction
   bool keys = false, markdown = false;
   std::string schema;  // check: of "scenario" or "machine" files; "": none
   [[nodiscard]] bool wants_reference() const { return keys || !schema.empty(); }  // then there is no file

@@ -127,7 +127,7 @@ class Asked(unittest.TestCase):
 
     def test_refusals(self):
         cases = [(["--estimator", "nobody"], 2, "there are: luenberger, reduced, ekf"), (["--precision", "half"], 2, "float or double"),
-                 (["--clock-MHz", "80"], 2, "--cost"), (["--precision", "double", "--cost"], 2, "float"),
+                 (["--clock-mhz", "80"], 2, "--cost"), (["--precision", "double", "--cost"], 2, "float"),
                  (["--cost", "--clocks-per-instruction", "2"], 2, "LOW..HIGH"),
                  (["--set", "process_noise.flux_Wb=1000.0"], 1, "nothing was exported"), (["--to", "/dev/null/x"], 3, "/dev/null/x")]
         for more, status, words in cases:
@@ -156,7 +156,7 @@ class OnTheBoard(unittest.TestCase):
     def test_counts_repeat_and_make_periods(self):
         for scenario, *parts in ((CONVEYOR, "--controller", "--estimator", "luenberger", "--estimator", "ekf"), (PUMP, "--controller")):
             with self.subTest(scenario), tempfile.TemporaryDirectory() as folder:
-                first, second, third = (self.cost(scenario, folder, *parts, "--clock-MHz", "80", "--clocks-per-instruction", "1.5..2")
+                first, second, third = (self.cost(scenario, folder, *parts, "--clock-mhz", "80", "--clocks-per-instruction", "1.5..2")
                                         for _ in range(3))
                 self.assertEqual(first, second)
                 self.assertEqual(first, third)
