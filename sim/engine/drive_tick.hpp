@@ -72,7 +72,7 @@ void DriveLoop<Real>::control(std::int64_t k) {
   speed_reference_now_ = now(speed_reference_);
   torque_reference_now_ = now(torque_reference_);
   const std::int64_t speed_from = shape_.control.speed_from, flux_from = shape_.control.flux_from;
-  Measurement<Real> m;
+  Measurement<Real>& m = measurement_;
   m.tick = k;
   m.current = sensors_.reading().current;
   m.dc_link = sensors_.reading().dc_link;

@@ -37,16 +37,20 @@ std::span<const VerbRow> verb_rows() {
        {"slipbench design configs/systems/two_mass_shaft.toml --figure loops.svg",
         "slipbench design configs/systems/hidden_mode.toml --set design.R=[[0.1]] --json",
         "slipbench design configs/scenarios/conveyor_hot_rotor.toml --write gains.toml"}},
+      {"export",
+       "write estimators and the controller of a scenario as C99 for a board, with test vectors",
+       "scenario file",
+       {"slipbench export configs/scenarios/conveyor_hot_rotor.toml --estimator ekf --to board_code"}},
   };
   return rows;
 }
 
 std::span<const OptionRow> option_rows() {
   static constexpr OptionRow rows[] = {
-      {"--set", "KEY=VALUE", "run check compare sweep analyse design",
+      {"--set", "KEY=VALUE", "run check compare sweep analyse design export",
        "set a key of the file, dotted; VALUE is TOML or text; repeatable", Takes::key},
-      {"--seed", "N", "run check compare sweep analyse design", "seed of every noise; wins over the file and --set",
-       Takes::number},
+      {"--seed", "N", "run check compare sweep analyse design export",
+       "seed of every noise; wins over the file and --set", Takes::number},
       {"--run", "R", "run", "take noise run R, as `compare` numbers them from 0", Takes::number},
       {"--runs", "N", "compare", "noise runs (20)", Takes::number},
       {"--in-loop", "", "compare", "each estimator closes the speed loop in turn, instead of all riding along"},
@@ -86,8 +90,9 @@ std::span<const OptionRow> option_rows() {
        Takes::word},
       {"--model", "constant_speed|unknown_load|known_load", "analyse",
        "with --map speed_observability: what is known of the shaft (constant_speed)", Takes::word},
-      {"--estimator", "NAME", "analyse",
-       "with --map estimator_stability: of the scenario, or a built-in kind (the scenario's first, else luenberger)"},
+      {"--estimator", "NAME", "analyse export",
+       "with --map estimator_stability: of the scenario, or a built-in kind (the scenario's first, else luenberger); "
+       "export: this one; repeatable (all estimators and the controller)"},
       {"--path", "FILE.csv", "analyse", "with --map speed_observability: the run's way through the plane as CSV",
        Takes::file},
       {"--at", "HZ", "analyse design", "gain and phase at this frequency (design: the slowest mode's)", Takes::number},
@@ -95,8 +100,17 @@ std::span<const OptionRow> option_rows() {
       {"--markdown", "", "check", "with --keys: as Markdown tables"},
       {"--schema", "[scenario|machine|system]", "check",
        "in place of FILE: JSON Schema of such files, for TOML editors", Takes::word, true},
-      {"--json", "", "run check compare sweep analyse design", "one JSON document on standard output, nothing else"},
-      {"--quiet", "", "run check compare sweep analyse design", "print nothing but errors"},
+      {"--controller", "", "export", "the controller"},
+      {"--precision", "float|double", "export", "numbers of the C code (float)", Takes::word},
+      {"--to", "FOLDER", "export", "where the files go (exported)"},
+      {"--cost", "", "export",
+       "count each step's instructions on an emulated Cortex-M4F (arm-none-eabi-gcc, qemu-system-arm)"},
+      {"--clock-mhz", "N", "export", "with --cost: clock of the board (100)", Takes::number},
+      {"--clocks-per-instruction", "LOW..HIGH", "export",
+       "with --cost: the band that instructions are turned into time with (1.0..2.5)"},
+      {"--json", "", "run check compare sweep analyse design export",
+       "one JSON document on standard output, nothing else"},
+      {"--quiet", "", "run check compare sweep analyse design export", "print nothing but errors"},
       {"--progress", "", "run compare sweep analyse", "show progress on standard error even if it is no terminal"},
   };
   return rows;
@@ -115,7 +129,7 @@ std::span<const OptionRow> program_rows() {
 std::span<const StatusRow> status_rows() {
   static constexpr StatusRow rows[] = {
       {0, "done"},
-      {1, "it ran, but the result is bad: diverged, or an estimator lost in `run`"},
+      {1, "it ran, but the result is bad: diverged, an estimator lost in `run`, or nothing fit for `export`"},
       {2, "bad usage, or a bad or missing input file"},
       {3, "something outside failed: an output file, standard output, the network"},
       {130, "interrupted; what was done is kept"},
