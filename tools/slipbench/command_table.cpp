@@ -25,16 +25,22 @@ std::span<const VerbRow> verb_rows() {
        {"slipbench sweep configs/sweeps/resistance_grid.toml --store grid.sqlite --csv grid.csv --figure grid.svg",
         "slipbench sweep configs/sweeps/worst_resistances.toml --search ekf.speed_rmse_rpm --budget 44 --write "
         "worst.toml"}},
+      {"board",
+       "close the loop of a simulated drive with a controller board, and score the board's own estimates",
+       "scenario file",
+       {"slipbench board configs/scenarios/board_conveyor.toml --lock-step --link 'pipe:python3 "
+        "tests/clients/board.py'"}},
   };
   return rows;
 }
 
 std::span<const OptionRow> option_rows() {
   static constexpr OptionRow rows[] = {
-      {"--set", "KEY=VALUE", "run check compare sweep",
+      {"--set", "KEY=VALUE", "run check compare sweep board",
        "set a key of the file, dotted; VALUE is TOML or text; repeatable", Takes::key},
-      {"--seed", "N", "run check compare sweep", "seed of every noise; wins over the file and --set", Takes::number},
-      {"--run", "R", "run", "take noise run R, as `compare` numbers them from 0", Takes::number},
+      {"--seed", "N", "run check compare sweep board", "seed of every noise; wins over the file and --set",
+       Takes::number},
+      {"--run", "R", "run board", "take noise run R, as `compare` numbers them from 0", Takes::number},
       {"--runs", "N", "compare", "noise runs (20)", Takes::number},
       {"--in-loop", "", "compare", "each estimator closes the speed loop in turn, instead of all riding along"},
       {"--threads", "N", "compare sweep", "threads (all cores); the results do not depend on it", Takes::number},
@@ -57,20 +63,28 @@ std::span<const OptionRow> option_rows() {
        Takes::number},
       {"--slurm", "OPTION[=VALUE]", "sweep",
        "with --on slurm: an option for sbatch, as in partition=main, account=x, time=2:00:00, nodelist=n1; repeatable"},
-      {"--trace", "FILE.csv|FILE.h5", "run", "write the trace, as CSV or HDF5", Takes::file},
-      {"--figure", "FILE.svg", "run compare sweep", "draw the result", Takes::file},
+      {"--trace", "FILE.csv|FILE.h5", "run board", "write the trace, as CSV or HDF5", Takes::file},
+      {"--figure", "FILE.svg", "run compare sweep board", "draw the result", Takes::file},
       {"--figure-of", "FIGURE", "sweep",
        "what --figure draws, as in ekf.angle_rmse_deg, or angle_rmse_deg for all estimators (speed_rmse_rpm)"},
-      {"--publish", "ENDPOINT", "run", "publish the run as it happens: tcp://HOST:PORT, ipc://PATH or PORT (loopback)"},
-      {"--publish-wait", "N", "run", "start when N subscribers are there", Takes::number},
+      {"--publish", "ENDPOINT", "run board",
+       "publish the run as it happens: tcp://HOST:PORT, ipc://PATH or PORT (loopback)"},
+      {"--publish-wait", "N", "run board", "start when N subscribers are there", Takes::number},
       {"--pace", "FACTOR", "run", "run no faster than FACTOR times real time", Takes::number},
+      {"--lock-step", "", "board", "the drive waits for the board at every tick; the one way there is so far"},
+      {"--link", "LINK", "board",
+       "where the board is: pipe:COMMAND, unix:PATH, serial:DEVICE[@BAUD], or the firmware of this build: host (as a "
+       "process), "
+       "emulated (Cortex-M4F under QEMU), emulated_uart"},
+      {"--watchdog", "N", "board", "missing answers in a row that open the gates (3)", Takes::number},
+      {"--answer-within", "MS", "board", "an answer that takes longer is missing (500)", Takes::number},
       {"--keys", "", "check", "in place of FILE: every key of a scenario, with range, default and meaning", {}, true},
       {"--markdown", "", "check", "with --keys: as Markdown tables"},
       {"--schema", "[scenario|machine]", "check", "in place of FILE: JSON Schema of such files, for TOML editors",
        Takes::word, true},
-      {"--json", "", "run check compare sweep", "one JSON document on standard output, nothing else"},
-      {"--quiet", "", "run check compare sweep", "print nothing but errors"},
-      {"--progress", "", "run compare sweep", "show progress on standard error even if it is no terminal"},
+      {"--json", "", "run check compare sweep board", "one JSON document on standard output, nothing else"},
+      {"--quiet", "", "run check compare sweep board", "print nothing but errors"},
+      {"--progress", "", "run compare sweep board", "show progress on standard error even if it is no terminal"},
   };
   return rows;
 }
@@ -88,9 +102,10 @@ std::span<const OptionRow> program_rows() {
 std::span<const StatusRow> status_rows() {
   static constexpr StatusRow rows[] = {
       {0, "done"},
-      {1, "it ran, but the result is bad: diverged, or an estimator lost in `run`"},
+      {1,
+       "it ran, but the result is bad: diverged, an estimator lost in `run`, gates opened by the watchdog in `board`"},
       {2, "bad usage, or a bad or missing input file"},
-      {3, "something outside failed: an output file, standard output, the network"},
+      {3, "something outside failed: an output file, standard output, the network, a controller board"},
       {130, "interrupted; what was done is kept"},
   };
   return rows;

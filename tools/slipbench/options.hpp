@@ -33,6 +33,9 @@ struct Request {
   std::vector<std::string> slurm;          // sweep: --slurm OPTION, for sbatch, without the dashes
   std::uint32_t budget = 200;              // sweep: --budget N
   std::optional<std::uint64_t> plan_case;  // run PLAN --case K
+  bool lock_step = false;                  // board: --lock-step
+  std::string link;                        // board: --link LINK
+  unsigned watchdog = 3, answer_within_ms = 500;
   bool keys = false, markdown = false;
   std::string schema;  // check: of "scenario" or "machine" files; "": none
   [[nodiscard]] bool wants_reference() const { return keys || !schema.empty(); }  // then there is no file
