@@ -62,3 +62,4 @@ endforeach()
 install(DIRECTORY configs DESTINATION ${CMAKE_INSTALL_DATADIR}/slipbench)
 install(FILES README.md LICENSE DESTINATION ${CMAKE_INSTALL_DOCDIR})
 install(FILES sim/stream/README.md DESTINATION ${CMAKE_INSTALL_DOCDIR}/sim/stream)  # the protocol, where README.md points to it
+install(FILES sim/board/README.md DESTINATION ${CMAKE_INSTALL_DOCDIR}/sim/board)

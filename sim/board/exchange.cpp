@@ -23,11 +23,12 @@ double TimeCounts::quantile_ns(double share) const {
 }
 
 Exchange::Exchange(Link& link, const board_hello& hello, std::chrono::nanoseconds first_answer_within,
-                   std::chrono::nanoseconds answer_within)
+                   std::chrono::nanoseconds answer_within, std::function<void(const board_answer&)> keep)
     : link_(link),
       duty_counts_(hello.duty_counts),
       first_within_(first_answer_within),
       within_(answer_within),
+      keep_(std::move(keep)),
       answered_(65536) {}
 
 void Exchange::sort_out(const board_answer& answer) {
@@ -110,6 +111,7 @@ bool Exchange::step(board_sample& sample, board_answer& answer) {
   figures_.used_most = std::max<std::uint64_t>(figures_.used_most, answer.used);
   used_sum_ += answer.used;
   ++figures_.answers;
+  if (keep_) keep_(answer);
   return true;
 }
 

@@ -7,6 +7,8 @@
 #include <array>
 #include <chrono>
 #include <cstdint>
+#include <functional>
+#include <string>
 #include <vector>
 
 #include "sim/board/frames.h"
@@ -24,6 +26,19 @@ struct ExchangeFigures {
   double used_mean = 0.0;
 };
 
+// Where a tick's answer comes from: a board, or the recording of one.
+class AnswerSource {
+ public:
+  virtual ~AnswerSource() = default;
+  // Fills in the sample's sequence. False: the answer is missing. Never throws.
+  virtual bool step(board_sample& sample, board_answer& answer) = 0;
+  // Tells the board that the run is over.
+  virtual void end() = 0;
+  [[nodiscard]] virtual bool gone() const = 0;
+  [[nodiscard]] virtual std::string why_gone() const = 0;
+  [[nodiscard]] virtual ExchangeFigures figures() const = 0;
+};
+
 // Times counted in 64 steps an octave (1.1 %), from 1 ns on.
 class TimeCounts {
  public:
@@ -37,18 +52,17 @@ class TimeCounts {
   double most_ = 0.0;
 };
 
-class Exchange {
+class Exchange final : public AnswerSource {
  public:
+  // `keep` is given every answer that is taken.
   Exchange(Link& link, const board_hello& hello, std::chrono::nanoseconds first_answer_within,
-           std::chrono::nanoseconds answer_within);
+           std::chrono::nanoseconds answer_within, std::function<void(const board_answer&)> keep = {});
 
-  // Fills in the sample's sequence. False: the answer is missing. Never throws, allocates nothing.
-  bool step(board_sample& sample, board_answer& answer);
-  // Tells the board that the run is over.
-  void end();
-
-  [[nodiscard]] ExchangeFigures figures() const;
-  [[nodiscard]] const Link& link() const { return link_; }
+  bool step(board_sample& sample, board_answer& answer) override;
+  void end() override;
+  [[nodiscard]] bool gone() const override { return link_.closed(); }
+  [[nodiscard]] std::string why_gone() const override { return link_.why(); }
+  [[nodiscard]] ExchangeFigures figures() const override;
 
  private:
   enum class Heard { nothing, answer, damage };
@@ -58,6 +72,7 @@ class Exchange {
   Link& link_;
   std::uint16_t duty_counts_, sequence_ = 0;
   std::chrono::nanoseconds first_within_, within_;
+  std::function<void(const board_answer&)> keep_;
   board_receiver receiver_{};
   std::vector<bool> answered_;  // by sequence
   ExchangeFigures figures_;

@@ -25,8 +25,8 @@ Estimate<double> blind() {
 
 }  // namespace
 
-BoardInLoop::BoardInLoop(Exchange& exchange, const board_hello& hello, double control_period_s, unsigned watchdog)
-    : exchange_(exchange),
+BoardInLoop::BoardInLoop(AnswerSource& source, const board_hello& hello, double control_period_s, unsigned watchdog)
+    : source_(source),
       hello_(hello),
       period_s_(control_period_s),
       current_lsb_(lsb(hello.current_range_A, hello.current_bits)),
@@ -82,23 +82,23 @@ void BoardInLoop::take(const board_answer& a, std::int64_t tick) {
 
 void BoardInLoop::open_for_good(std::int64_t tick) {
   outcome_.lost = true;
-  outcome_.gone = exchange_.link().closed();
+  outcome_.gone = source_.gone();
   outcome_.opened_tick = tick;
-  outcome_.why = exchange_.link().why();
+  outcome_.why = source_.why_gone();
   const std::string ticks = missing_in_a_row_ == 1 ? "1 tick" : std::to_string(missing_in_a_row_) + " ticks";
   note(tick, "no answer from the board for " + ticks + (outcome_.gone ? " (" + outcome_.why + ")" : "") +
                  ": gates opened, the drive coasts");
   act_ = OutsideAct{};
   act_.gates = false;
   act_.estimate = blind();
-  exchange_.end();
+  source_.end();
 }
 
 OutsideAct BoardInLoop::step(const OutsideView& view) {
   if (outcome_.lost) return act_;
   board_sample sample = sample_of(view);
   board_answer answer;
-  if (exchange_.step(sample, answer)) {
+  if (source_.step(sample, answer)) {
     missing_in_a_row_ = 0;
     take(answer, view.tick);
   } else if (++missing_in_a_row_ >= watchdog_) {

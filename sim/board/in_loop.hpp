@@ -24,7 +24,7 @@ struct BoardOutcome {
 
 class BoardInLoop final : public OutsideController {
  public:
-  BoardInLoop(Exchange& exchange, const board_hello& hello, double control_period_s, unsigned watchdog);
+  BoardInLoop(AnswerSource& source, const board_hello& hello, double control_period_s, unsigned watchdog);
 
   OutsideAct step(const OutsideView& view) override;
   [[nodiscard]] std::vector<ActedEvent> events() const override { return events_; }
@@ -36,7 +36,7 @@ class BoardInLoop final : public OutsideController {
   void open_for_good(std::int64_t tick);
   void note(std::int64_t tick, std::string what);
 
-  Exchange& exchange_;
+  AnswerSource& source_;
   board_hello hello_;
   double period_s_, current_lsb_, dc_link_lsb_;
   unsigned watchdog_, missing_in_a_row_ = 0;

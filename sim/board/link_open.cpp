@@ -196,7 +196,8 @@ std::unique_ptr<Link> open_link(const std::string& link, const FirmwareFiles& fi
     }
   }
   refuse("--link '" + link +
-         "': expected pipe:COMMAND, unix:PATH, serial:DEVICE or serial:DEVICE@BAUD, host, emulated or emulated_uart");
+         "': expected pipe:COMMAND, unix:PATH, serial:DEVICE or serial:DEVICE@BAUD, "
+         "replay:FILE.frames, host, emulated or emulated_uart");
 }
 
 }  // namespace slipbench

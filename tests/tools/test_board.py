@@ -95,6 +95,24 @@ class Boards(unittest.TestCase):
         for e, r in zip(rows["board.speed_rpm"], rows["speed_reference_rpm"]):
             self.assertAlmostEqual(e, r, delta=1e-6 * (1 + abs(r)))
 
+    def test_recording_runs_again_to_the_bit_without_the_board(self):
+        for fault, status in (("", 0), ("--fault damaged --at 100 --for 2", 0), ("--fault hang --at 200", 1)):
+            kept = self.file("kept.frames")
+            found, result, error = self.piped(fault, "--record", kept, "--answer-within", "100")
+            self.assertEqual(found, status, error)
+            found, again, error = self.board(f"replay:{kept}")
+            self.assertEqual(found, status, error)
+            self.assertEqual(again["digest"], result["digest"])
+            self.assertEqual(again["events"], result["events"])
+            self.assertEqual(again["board"]["missing"], result["board"]["missing"])
+        whole = (self.folder.path / "kept.frames").read_bytes()
+        for spoilt, text in ((b"", "empty"), (b"time_s,speed\n", "no recording"), (whole[:-1], "cut short"),
+                             (whole[:200] + whole[201:], "damaged")):
+            (self.folder.path / "spoilt.frames").write_bytes(spoilt)
+            found, result, _ = self.board(f"replay:{self.file('spoilt.frames')}")
+            self.assertEqual(found, 2)
+            self.assertIn(text, result["error"]["message"])
+
     # ---- boards that fail ----
 
     def test_silent_at_start(self):
@@ -201,7 +219,7 @@ class Boards(unittest.TestCase):
     def test_what_cannot_be_opened_or_meant(self):
         for link, status, text in (
                 ("nonsense", 2, "expected pipe:COMMAND"), ("pipe:", 2, "expected pipe:COMMAND"), ("serial:/dev/null@12345", 2, "12345"),
-                ("serial:/dev/null", 3, "no serial device"), (f"unix:{self.file('none')}", 3, "cannot connect"),
+                ("serial:/dev/null", 3, "no serial device"), (f"unix:{self.file('none')}", 3, "cannot connect"), ("replay:none.frames", 2, "cannot be opened"),
                 ("unix:" + "x" * 200, 3, "too long")):
             found, result, _ = self.board(link)
             self.assertEqual(found, status, link)

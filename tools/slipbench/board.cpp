@@ -6,6 +6,7 @@
 
 #include "sim/board/hail.hpp"
 #include "sim/board/link_open.hpp"
+#include "sim/board/recording.hpp"
 #include "tools/slipbench/run_session.hpp"
 #include "tools/slipbench/verbs.hpp"
 
@@ -50,6 +51,35 @@ class OneCore {
   bool held_;
 };
 
+constexpr const char* cautions =
+    "The drive is simulated; before a real one: power stage disconnected or DC link current-limited,\n"
+    "emergency stop, qualified people, local codes. The watchdog is no safety function.\n";
+
+// A board that said hello, or the recording of one.
+struct Board {
+  std::unique_ptr<Link> link;
+  board_hello hello{};
+  std::unique_ptr<AnswerSource> answers;
+
+  Board(const Request& request, OutFile* record) {
+    if (request.link.starts_with("replay:")) {
+      auto recording = std::make_unique<Recording>(request.link.substr(request.link.find(':') + 1));
+      hello = recording->hello();
+      answers = std::move(recording);
+    } else {
+      link = open_link(request.link, built_firmware());
+      hello = hail(*link, hello_within);
+      const auto within = std::chrono::milliseconds(request.answer_within_ms);
+      answers =
+          std::make_unique<Exchange>(*link, hello, std::max<std::chrono::milliseconds>(first_answer_within, within),
+                                     within, [record](const board_answer& a) {
+                                       if (record) record->write(recorded(a));
+                                     });
+    }
+    if (record) record->write(recorded(hello));
+  }
+};
+
 const char* unit_of(const board_hello& hello) {
   return hello.used_unit == BOARD_USED_INSTRUCTIONS  ? "instructions"
          : hello.used_unit == BOARD_USED_NANOSECONDS ? "ns"
@@ -75,33 +105,30 @@ int board_verb(const Request& request) {
   estimator.name = estimator.kind = outside_name;
   RunSession session(request, origin_of(request.file, request.overrides, request, scenario), told);
 
+  const std::unique_ptr<OutFile> record = request.record.empty() ? nullptr : std::make_unique<OutFile>(request.record);
   const OneCore one_core(started_here(request.link));
-  const std::unique_ptr<Link> link = open_link(request.link, built_firmware());
-  const board_hello hello = hail(*link, hello_within);
-  const std::string name = name_of(hello);
-  if (!request.quiet) {
-    fmt::print(stderr,
-               "board '{}' on {}. The drive is simulated; before a real one: power stage disconnected or DC link "
-               "current-limited,\n"
-               "emergency stop, qualified people, local codes. The watchdog is no safety function.\n",
-               name, request.link);
-  }
-  const Scenario simulated = fit(scenario, hello);
-  const auto within = std::chrono::milliseconds(request.answer_within_ms);
-  Exchange exchange(*link, hello, std::max<std::chrono::milliseconds>(first_answer_within, within), within);
-  BoardInLoop board(exchange, hello, scenario.run.control_period_s, request.watchdog);
+  const Board board(request, record.get());
+  const std::string name = name_of(board.hello);
+  if (!request.quiet) fmt::print(stderr, "board '{}' on {}. {}", name, request.link, cautions);
+  const Scenario simulated = fit(scenario, board.hello);
+  BoardInLoop in_loop(*board.answers, board.hello, scenario.run.control_period_s, request.watchdog);
   RunOptions options;
-  options.outside = &board;
+  options.outside = &in_loop;
   RunResult result = session.run(simulated, options);
-  if (!board.outcome().lost) exchange.end();
+  const BoardOutcome& outcome = in_loop.outcome();
+  if (!outcome.lost) board.answers->end();
 
-  result.board = {request.link,       name,           unit_of(hello), scenario.run.control_period_s, baud,
-                  exchange.figures(), board.outcome()};
-  if (result.status == "done" && (board.outcome().lost || board.outcome().faulted)) result.status = "lost";
+  if (record) {
+    record->finish();
+    result.files.push_back(fmt::format("record: {}", request.record));
+  }
+  result.board = {
+      request.link, name, unit_of(board.hello), scenario.run.control_period_s, baud, board.answers->figures(), outcome};
+  if (result.status == "done" && (outcome.lost || outcome.faulted)) result.status = "lost";
   tell(request, result);
   const int status = exit_status(result);
-  if (board.outcome().gone)
-    fmt::print(stderr, "board '{}' on {}: {}; the gates were opened\n", name, request.link, board.outcome().why);
+  if (outcome.gone)
+    fmt::print(stderr, "board '{}' on {}: {}; the gates were opened\n", name, request.link, outcome.why);
   return status;
 }
 

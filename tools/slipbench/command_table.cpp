@@ -28,8 +28,7 @@ std::span<const VerbRow> verb_rows() {
       {"board",
        "close the loop of a simulated drive with a controller board, and score the board's own estimates",
        "scenario file",
-       {"slipbench board configs/scenarios/board_conveyor.toml --lock-step --link 'pipe:python3 "
-        "tests/clients/board.py'"}},
+       {"slipbench board configs/scenarios/board_conveyor.toml --lock-step --link host --figure board.svg"}},
   };
   return rows;
 }
@@ -73,9 +72,12 @@ std::span<const OptionRow> option_rows() {
       {"--pace", "FACTOR", "run", "run no faster than FACTOR times real time", Takes::number},
       {"--lock-step", "", "board", "the drive waits for the board at every tick; the one way there is so far"},
       {"--link", "LINK", "board",
-       "where the board is: pipe:COMMAND, unix:PATH, serial:DEVICE[@BAUD], or the firmware of this build: host (as a "
+       "where the board is: pipe:COMMAND, unix:PATH, serial:DEVICE[@BAUD], replay:FILE.frames, or the firmware of this "
+       "build: host (as a "
        "process), "
        "emulated (Cortex-M4F under QEMU), emulated_uart"},
+      {"--record", "FILE.frames", "board",
+       "keep the board's answers; --link replay:FILE.frames runs them again without it", Takes::file},
       {"--watchdog", "N", "board", "missing answers in a row that open the gates (3)", Takes::number},
       {"--answer-within", "MS", "board", "an answer that takes longer is missing (500)", Takes::number},
       {"--keys", "", "check", "in place of FILE: every key of a scenario, with range, default and meaning", {}, true},

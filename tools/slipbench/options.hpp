@@ -34,7 +34,7 @@ struct Request {
   std::uint32_t budget = 200;              // sweep: --budget N
   std::optional<std::uint64_t> plan_case;  // run PLAN --case K
   bool lock_step = false;                  // board: --lock-step
-  std::string link;                        // board: --link LINK
+  std::string link, record;                // board: --link LINK, --record FILE; "": none
   unsigned watchdog = 3, answer_within_ms = 500;
   bool keys = false, markdown = false;
   std::string schema;  // check: of "scenario" or "machine" files; "": none
