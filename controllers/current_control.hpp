@@ -59,20 +59,30 @@ struct VoltageCommand {
 template <class Real>
 VoltageCommand<Real> control_current(CurrentState<Real>& s, const CurrentConstants<Real>& c, const RotorFrame<Real>& f,
                                      const Vec2<Real>& reference, const Real& limit, const Real& dc_link) {
+  section<Real>("u = k_p (i_ref - i) + x + j w_s L_sigma i + e,  e = (j p w_m - 1/tau_r) (L_m/L_r) psi");
   const Vec2<Real> error = reference - f.current;
   const Real emf = c.flux_ratio * f.flux, drop = f.stator_frequency * c.leakage;
   const Vec2<Real> forward{-drop * f.current.y - c.rotor_rate * emf, drop * f.current.x + f.electrical_speed * emf};
   const Vec2<Real> wanted = c.k_p * error + s.integral + forward;
   s.asked = magnitude(wanted);
+  label_d_q("error", error);
+  SLIPBENCH_LABEL(emf, drop)
+  label_d_q("wanted", wanted);
 
+  section<Real>("voltage limit: d first, up to 0.9 of the circle, q takes the rest");
   const Real most_d = Real(0.9) * limit, u_d = clamp(wanted.x, -most_d, most_d);
   const Real most_q = sqrt(max(square(limit) - square(u_d), Real(0.0)));
   const Vec2<Real> limited{u_d, clamp(wanted.y, -most_q, most_q)};
+  SLIPBENCH_LABEL(most_d, most_q)
+  label_d_q("u", limited);
 
   const LegCommand<Real> legs = command_legs(c.legs, f.angle, f.stator_frequency, limited, reference, dc_link);
   s.commanded = {legs.applied, s.commanded[0], s.commanded[1]};
+  section<Real>("x' = k_i (i_ref - i + (u_applied - u) / k_p), held within the circle");
   const Vec2<Real> missing = turn_back(legs.middle, legs.applied) - wanted;
   const Vec2<Real> integral = s.integral + c.k_i_period * error + c.back * missing;
+  label_d_q("missing", missing);
+  label_d_q("integral", integral);
   s.integral = {clamp(integral.x, -limit, limit), clamp(integral.y, -limit, limit)};
   const VoltageCommand<Real> out{legs.duty, clipped_by(limited - wanted, legs.by_rails, limit)};
   return out;

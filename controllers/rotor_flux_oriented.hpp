@@ -59,6 +59,11 @@ struct RotorFluxOriented {
     SLIPBENCH_FIELDS(orientation, flux, speed, current, current_reference, started)
   };
 
+  static constexpr std::string_view state_note =
+      "Orientation: _x alpha, _y beta, Wb, A, mechanical rad/s; current_integral V and current_reference A: _x d, _y "
+      "q; "
+      "current_commanded: V, alpha-beta, of this tick and those before; speed_integral N m.";
+
   // Throws std::invalid_argument for a delay outside 0..2 periods and for data without which no gain exists.
   static Constants<double> prepare(const ControllerSetup& setup, const Settings& given);
   static State<double> begin(const ControllerSetup& setup, const Constants<double>& c);
@@ -70,8 +75,10 @@ struct RotorFluxOriented {
   static Command<Real> step(State<Real>& s, const Measurement<Real>& m, const Constants<Real>& c) {
     const Real one(1.0), half(0.5);
     const MaskOf<Real> first = s.started < half;
+    SLIPBENCH_LABEL(first)
     const RotorFrame<Real> frame = orient(s.orientation, c.orientation, m, applied_before(s.current, c.current), first);
 
+    section<Real>("first tick: integrals at the current, torque and speed there are");
     // A drive that is already running is taken over as it is found: integrals at its current, torque and speed.
     s.started = one;
     s.current.integral = select(first, c.current.resistance * frame.current, s.current.integral);
@@ -80,12 +87,18 @@ struct RotorFluxOriented {
     const Real torque_now = c.torque_per_ampere * frame.flux * frame.current.y;
     s.speed.integral = select(first, s.flux.magnetised * torque_now, s.speed.integral);
 
+    section<Real>("U: linear limit of the modulation times the DC link, less what dead time takes");
     const Real limit = voltage_limit(c.current, m.dc_link);
+    label("voltage_limit", limit);
     const FluxCommand<Real> d = control_flux(s.flux, c.flux, frame, limit, s.current_reference, s.current.asked);
     const Real per_ampere = c.torque_per_ampere * frame.divisor_flux;
     const MaskOf<Real> hold = s.flux.magnetised < half;
+    SLIPBENCH_LABEL(per_ampere, hold)
     const Real torque = control_speed(s.speed, c.speed, m, per_ampere * d.i_q_limit, hold);
+    section<Real>("i_q = T / (3/2 p (L_m/L_r) psi)");
     s.current_reference = {d.i_d, torque / per_ampere};
+    label("torque_reference", torque);
+    label_d_q("i_reference", s.current_reference);
     const VoltageCommand<Real> u = control_current(s.current, c.current, frame, s.current_reference, limit, m.dc_link);
     Command<Real> out;
     out.duty = u.duty;

@@ -5,6 +5,7 @@
 //     static constexpr std::array<Setting, n> settings;              // what a scenario may set
 //     template <class Real> struct Constants { ...; SLIPBENCH_FIELDS(...) };
 //     template <class Real> struct State { ...; SLIPBENCH_FIELDS(...) };
+//     static constexpr std::string_view state_note;                  // its units, for exported code; may be left out
 //     static Constants<double> prepare(const EstimatorSetup&, const Settings&);        // once, in double
 //     static State<double> begin(const EstimatorSetup&, const Constants<double>&);     // state at tick 0
 //     template <class Real>

@@ -50,6 +50,9 @@ class DriveLoop {
   [[nodiscard]] const RunShape& shape() const { return shape_; }
   [[nodiscard]] const std::vector<Estimate<Real>>& estimates() const { return estimates_; }
   [[nodiscard]] const Real& clipped() const { return command_.clipped; }  // the controller's voltage limit acted
+  [[nodiscard]] const Sample<Real>& sample() const { return sample_; }
+  [[nodiscard]] const Measurement<Real>* measurement() const { return controller_ ? &measurement_ : nullptr; }
+  [[nodiscard]] const Command<Real>* command() const { return controller_ ? &command_ : nullptr; }
   [[nodiscard]] const Plant<Real>& plant() const { return plant_; }
   [[nodiscard]] const Real& speed_reference() const { return speed_reference_now_; }
   [[nodiscard]] const Real& torque_reference() const { return torque_reference_now_; }
@@ -76,6 +79,7 @@ class DriveLoop {
   Real speed_reference_now_{}, torque_reference_now_{};
 
   Sample<Real> sample_;
+  Measurement<Real> measurement_;
   std::vector<Estimate<Real>> estimates_;
   Command<Real> command_;
   std::array<Phases<Real>, 2> pending_;  // commands not yet acting, as a ring

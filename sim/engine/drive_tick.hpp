@@ -78,7 +78,7 @@ void DriveLoop<Real>::control(std::int64_t k) {
   if (!controller_) return;
   refer(k);
   const std::int64_t speed_from = shape_.control.speed_from, flux_from = shape_.control.flux_from;
-  Measurement<Real> m;
+  Measurement<Real>& m = measurement_;
   m.tick = k;
   m.current = sensors_.reading().current;
   m.dc_link = sensors_.reading().dc_link;

@@ -150,7 +150,14 @@ struct Run::Host {
     if (!observers.empty()) row = run.loop_.row(n);
   }
   bool tell_tick(std::int64_t k) {
-    const TickView view{k, row[P::time], &row, run.loop_.estimates(), run.loop_.clipped() != 0.0};
+    const TickView view{k,
+                        row[P::time],
+                        &row,
+                        run.loop_.estimates(),
+                        run.loop_.clipped() != 0.0,
+                        &run.loop_.sample(),
+                        run.loop_.measurement(),
+                        run.loop_.command()};
     for (RunObserver* o : observers) o->control_tick(view);
     if (run.diverged(k)) return false;
     const auto& keep_going = run.options_.keep_going;

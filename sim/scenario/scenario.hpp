@@ -93,12 +93,14 @@ struct ControllerSettings {
   std::string orientation = "indirect", flux_from, speed_from = "measured";
   std::int64_t delay_periods = 1;
   bool dead_time_compensation = true;
-  Settings settings;                                                                // of that kind
+  std::string precision = "double";        // double | float
+  Settings settings;                       // of that kind
   [[nodiscard]] bool takes_speed() const;  // from a sensor or an estimator
 };
 
 struct EstimatorSettings {
   std::string name, kind, file;
+  std::string precision = "double";  // double | float
   Settings settings;
 };
 

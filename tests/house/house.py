@@ -29,6 +29,7 @@ ARROWS = {
     "sim/linear": RUN + ("sim/linear",),
     "sim/record": RUN + ("sim/record",),
     "sim/stream": RUN + ("sim/stream",),
+    "sim/export": RUN + ("sim/export",),
     "sim/board": RUN + ("sim/board",),
     "sim/sweep": RUN + ("sim/score", "sim/record", "sim/sweep"),
     "tools": DRIVE + ("sim", "tools"),

@@ -29,15 +29,19 @@ std::span<const VerbRow> verb_rows() {
        "close the loop of a simulated drive with a controller board, and score the board's own estimates",
        "scenario file",
        {"slipbench board configs/scenarios/board_conveyor.toml --lock-step --link host --figure board.svg"}},
+      {"export",
+       "write estimators and the controller of a scenario as C99 for a board, with test vectors",
+       "scenario file",
+       {"slipbench export configs/scenarios/conveyor_hot_rotor.toml --estimator ekf --to board_code"}},
   };
   return rows;
 }
 
 std::span<const OptionRow> option_rows() {
   static constexpr OptionRow rows[] = {
-      {"--set", "KEY=VALUE", "run check compare sweep board",
+      {"--set", "KEY=VALUE", "run check compare sweep board export",
        "set a key of the file, dotted; VALUE is TOML or text; repeatable", Takes::key},
-      {"--seed", "N", "run check compare sweep board", "seed of every noise; wins over the file and --set",
+      {"--seed", "N", "run check compare sweep board export", "seed of every noise; wins over the file and --set",
        Takes::number},
       {"--run", "R", "run board", "take noise run R, as `compare` numbers them from 0", Takes::number},
       {"--runs", "N", "compare", "noise runs (20)", Takes::number},
@@ -84,8 +88,17 @@ std::span<const OptionRow> option_rows() {
       {"--markdown", "", "check", "with --keys: as Markdown tables"},
       {"--schema", "[scenario|machine]", "check", "in place of FILE: JSON Schema of such files, for TOML editors",
        Takes::word, true},
-      {"--json", "", "run check compare sweep board", "one JSON document on standard output, nothing else"},
-      {"--quiet", "", "run check compare sweep board", "print nothing but errors"},
+      {"--estimator", "NAME", "export", "this estimator; repeatable (all estimators and the controller)"},
+      {"--controller", "", "export", "the controller"},
+      {"--precision", "float|double", "export", "numbers of the C code (float)", Takes::word},
+      {"--to", "FOLDER", "export", "where the files go (exported)"},
+      {"--cost", "", "export",
+       "count each step's instructions on an emulated Cortex-M4F (arm-none-eabi-gcc, qemu-system-arm)"},
+      {"--clock-MHz", "N", "export", "with --cost: clock of the board (100)", Takes::number},
+      {"--clocks-per-instruction", "LOW..HIGH", "export",
+       "with --cost: the band that instructions are turned into time with (1.0..2.5)"},
+      {"--json", "", "run check compare sweep board export", "one JSON document on standard output, nothing else"},
+      {"--quiet", "", "run check compare sweep board export", "print nothing but errors"},
       {"--progress", "", "run compare sweep board", "show progress on standard error even if it is no terminal"},
   };
   return rows;
@@ -105,7 +118,8 @@ std::span<const StatusRow> status_rows() {
   static constexpr StatusRow rows[] = {
       {0, "done"},
       {1,
-       "it ran, but the result is bad: diverged, an estimator lost in `run`, gates opened by the watchdog in `board`"},
+       "it ran, but the result is bad: diverged, an estimator lost in `run`, gates opened by the watchdog in `board`, "
+       "nothing fit for `export`"},
       {2, "bad usage, or a bad or missing input file"},
       {3, "something outside failed: an output file, standard output, the network, a controller board"},
       {130, "interrupted; what was done is kept"},

@@ -7,6 +7,7 @@
 #include "sim/scenario/scenario.hpp"
 #include "sim/sweep/worst_case.hpp"
 #include "tools/slipbench/comparison.hpp"
+#include "tools/slipbench/export_result.hpp"
 #include "tools/slipbench/run_result.hpp"
 #include "tools/slipbench/sweep_result.hpp"
 
@@ -216,6 +217,41 @@ std::string json_document(const CheckDocument& check) {
   document["facts"] = Json::object();
   for (const Fact& fact : check.facts) {
     document["facts"][fact.key] = fact.text.empty() ? value_of(fact.number) : Json(fact.text);
+  }
+  return text_of(document);
+}
+
+std::string json_document(const ExportResult& r) {
+  Json document = {
+      {"slipbench", SLIPBENCH_VERSION}, {"scenario", r.scenario}, {"format", export_format},
+      {"precision", r.precision},       {"folder", r.folder},     {"control_period_s", r.control_period_s}};
+  document["parts"] = Json::object();
+  for (std::size_t i = 0; i < r.parts.size(); ++i) {
+    const ExportedPart& part = r.parts[i];
+    const OperationCount& o = part.operations;
+    Json entry = {
+        {"kind", part.kind}, {"state_bytes", part.state_bytes}, {"vector_ticks", part.stretches * part.ticks}};
+    entry["operations"] = {{"all", o.all()},     {"add", o.add},          {"multiply", o.multiply},
+                           {"divide", o.divide}, {"square_root", o.root}, {"compare", o.compare},
+                           {"choose", o.choose}, {"other", o.other}};
+    entry["files"] = Json::array();
+    for (const ExportedFile& file : part.files) entry["files"].push_back(file.name);
+    if (i < r.costs.size()) {
+      const BoardCost& c = r.costs[i];
+      entry["cortex_m4f"] = {{"instructions_least", c.least},
+                             {"instructions_mean", c.mean},
+                             {"instructions_most", c.most},
+                             {"ticks", c.ticks},
+                             {"flash_bytes", c.flash_bytes}};
+    }
+    document["parts"][part.name] = std::move(entry);
+  }
+  if (!r.costs.empty()) {
+    document["clock_MHz"] = r.band.clock_MHz;
+    document["clocks_per_instruction"] = {r.band.least, r.band.most};
+    document["shortest_control_period_us"] = Json::object();
+    for (const ShortestPeriod& p : r.periods())
+      document["shortest_control_period_us"][p.of] = {r.band.least_us(p.instructions), r.band.most_us(p.instructions)};
   }
   return text_of(document);
 }

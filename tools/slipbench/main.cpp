@@ -29,6 +29,7 @@ int work(const std::vector<std::string>& arguments) {
   }
   if (line.request->verb == "run") return run_verb(*line.request);
   if (line.request->verb == "check") return check_verb(*line.request);
+  if (line.request->verb == "export") return export_verb(*line.request);
   if (line.request->verb == "sweep") return sweep_verb(*line.request);
   if (line.request->verb == "board") return board_verb(*line.request);
   return compare_verb(*line.request);

@@ -70,6 +70,18 @@ bool is_verb(std::string_view word) {
   refuse(name, fmt::format("unknown option '{}' of {}; the nearest is {}", name, verb, nearest(name, known)));
 }
 
+// LOW..HIGH, as in 1.0..2.5.
+void read_band(const std::string& text, ClockBand& band) {
+  const std::size_t dots = text.find("..");
+  if (dots == std::string::npos)
+    refuse("--clocks-per-instruction",
+           fmt::format("--clocks-per-instruction '{}': expected LOW..HIGH, as in 1.0..2.5", text));
+  band.least = positive_number("--clocks-per-instruction", text.substr(0, dots));
+  band.most = positive_number("--clocks-per-instruction", text.substr(dots + 2));
+  if (band.least > band.most)
+    refuse("--clocks-per-instruction", fmt::format("--clocks-per-instruction '{}': LOW is above HIGH", text));
+}
+
 Shard shard_of(const std::string& text) {
   const std::size_t slash = text.find('/');
   if (slash == std::string::npos || text.find('/', slash + 1) != std::string::npos) {
@@ -170,6 +182,21 @@ Request request_of(const std::string& verb, Given& given) {
     if (r.on_slurm && !given.values[name].empty())
       refuse(name, fmt::format("{} does not go with --on slurm, which cuts and joins the shards itself", name));
   }
+  r.estimators = given.values["--estimator"];
+  r.export_controller = given.flags["--controller"], r.cost = given.flags["--cost"];
+  if (flag("--precision")) {
+    for (const OptionRow& row : option_rows()) {
+      if (row.name == "--precision") want_word(row, text("--precision"));
+    }
+    r.double_precision = text("--precision") == "double";
+  }
+  if (flag("--to")) r.to = text("--to");
+  if (r.to.empty()) refuse("--to", "--to needs the name of a folder");
+  for (const char* name : {"--clock-MHz", "--clocks-per-instruction"}) {
+    if (flag(name) && !r.cost) refuse(name, fmt::format("{} needs --cost beside it", name));
+  }
+  if (flag("--clock-MHz")) r.band.clock_MHz = positive_number("--clock-MHz", text("--clock-MHz"));
+  if (flag("--clocks-per-instruction")) read_band(text("--clocks-per-instruction"), r.band);
   if (flag("--case")) r.plan_case = whole_number<std::uint64_t>("--case", text("--case"), 0, most_cases);
   if (flag("--shard")) r.shard = shard_of(text("--shard"));
   if (flag("--threads")) r.threads = whole_number<unsigned>("--threads", text("--threads"), 1, 1024);

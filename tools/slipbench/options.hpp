@@ -8,6 +8,7 @@
 
 #include "sim/scenario/read.hpp"
 #include "sim/sweep/sweep.hpp"
+#include "tools/slipbench/board_cost.hpp"
 
 namespace slipbench {
 
@@ -36,6 +37,12 @@ struct Request {
   bool lock_step = false;                  // board: --lock-step
   std::string link, record;                // board: --link LINK, --record FILE; "": none
   unsigned watchdog = 3, answer_within_ms = 500;
+  std::vector<std::string> estimators;     // export: --estimator NAME, repeatable
+  bool export_controller = false;          // export: --controller
+  bool double_precision = false;           // export: --precision double
+  std::string to = "exported";             // export: --to FOLDER
+  bool cost = false;                       // export: --cost
+  ClockBand band;                          // export: --clock-MHz, --clocks-per-instruction
   bool keys = false, markdown = false;
   std::string schema;  // check: of "scenario" or "machine" files; "": none
   [[nodiscard]] bool wants_reference() const { return keys || !schema.empty(); }  // then there is no file
