@@ -114,7 +114,13 @@ TEST_CASE("frames, 1 % of bytes damaged, dropped or doubled: none of 1e5 wrongly
 
 TEST_CASE("frames, 1 % of bytes damaged, dropped or doubled: none of 1e6 wrongly accepted, all counted",
           "[sim/board][long]") {
-  for (std::uint64_t seed = 2; seed <= 6; ++seed) check(run(1000000, seed));
+  std::uint64_t past_one_check = 0;
+  for (std::uint64_t seed = 2; seed <= 6; ++seed) {
+    const Trial t = run(1000000, seed);
+    check(t);
+    past_one_check += t.one_check_only;
+  }
+  CHECK(past_one_check > 0);  // why there are two: by chance about one in 5e6, and these seeds hold one
 }
 
 // The random errors above are rarely long: here every frame of the right length is noise behind its type. Of 2^22 such, 64 +- 8 pass `ahead`
