@@ -67,10 +67,10 @@ std::string header(const ExportedPart& part, const RecordedStep<S>& step, const 
                   part.state_numbers, part.state_bytes, n, count_text(part.operations)));
   text += " *\n * Bits are those of the simulated step (IEEE 754, round to nearest, subnormals kept) under\n";
   text += " *   -std=c99 -O2 -ffp-contract=off -fno-math-errno      (no -ffast-math; FLT_EVAL_METHOD 0)\n";
-  text += paragraph(
-      fmt::format("-fno-math-errno makes sqrt{} one instruction; without it the result is the same, but libm is "
-                  "linked. {}_replay.c replays test vectors and tells whether a build keeps the bits.",
-                  c_suffix<S>(), n));
+  text += paragraph(fmt::format(
+      "-fno-math-errno makes sqrt{} one instruction; without it, or without -O, the bits are the same but libm is "
+      "linked. {}_replay.c replays test vectors and tells whether a build keeps the bits.",
+      c_suffix<S>(), n));
   text += " *\n * Units are SI, in the names. Space vectors are amplitude-invariant (peak), motor convention. */\n";
   text += fmt::format("#ifndef {0}\n#define {0}\n\n#ifdef __cplusplus\nextern \"C\" {{\n#endif\n\n", guard);
 

@@ -98,8 +98,9 @@ std::string replay_text(const ExportOrigin& o) {
   constexpr const char* text = R"(/* Replays the test vectors of NAME and compares every answer and state to the bit.
  * Exit status: 0 all alike, 1 something differs (the first difference is printed).
  *   cc -std=c99 -O2 -ffp-contract=off -fno-math-errno NAME.c NAME_replay.c -o NAME_replay && ./NAME_replay */
-#include "NAME_vectors.h"
-
+)"
+                               "#include \"NAME_vectors.h\"\n"
+                               R"(
 #include <stdio.h>
 #include <string.h>
 

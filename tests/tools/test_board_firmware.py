@@ -168,6 +168,7 @@ class Faults(unittest.TestCase):
 
     def test_ends_with_its_input(self):
         self.process.stdin.close()
+        self.process.stdin = None
         self.assertEqual(self.process.wait(PATIENCE_S), 0)
 
 

@@ -21,11 +21,4 @@ struct BoardCost {
 void demand_board_tools();
 BoardCost cost_on_board(const ExportedPart& part);
 
-struct ClockBand {
-  double clock_MHz = 100.0;
-  double least = 1.0, most = 2.5;  // clocks per instruction
-  [[nodiscard]] double least_us(double instructions) const { return instructions * least / clock_MHz; }
-  [[nodiscard]] double most_us(double instructions) const { return instructions * most / clock_MHz; }
-};
-
 }  // namespace slipbench

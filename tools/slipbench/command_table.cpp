@@ -94,7 +94,7 @@ std::span<const OptionRow> option_rows() {
       {"--to", "FOLDER", "export", "where the files go (exported)"},
       {"--cost", "", "export",
        "count each step's instructions on an emulated Cortex-M4F (arm-none-eabi-gcc, qemu-system-arm)"},
-      {"--clock-MHz", "N", "export", "with --cost: clock of the board (100)", Takes::number},
+      {"--clock-mhz", "N", "export", "with --cost: clock of the board (100)", Takes::number},
       {"--clocks-per-instruction", "LOW..HIGH", "export",
        "with --cost: the band that instructions are turned into time with (1.0..2.5)"},
       {"--json", "", "run check compare sweep board export", "one JSON document on standard output, nothing else"},

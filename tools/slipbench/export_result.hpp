@@ -5,6 +5,7 @@
 #include <vector>
 
 #include "tools/slipbench/board_cost.hpp"
+#include "tools/slipbench/clock_band.hpp"
 
 namespace slipbench {
 

@@ -192,10 +192,10 @@ Request request_of(const std::string& verb, Given& given) {
   }
   if (flag("--to")) r.to = text("--to");
   if (r.to.empty()) refuse("--to", "--to needs the name of a folder");
-  for (const char* name : {"--clock-MHz", "--clocks-per-instruction"}) {
+  for (const char* name : {"--clock-mhz", "--clocks-per-instruction"}) {
     if (flag(name) && !r.cost) refuse(name, fmt::format("{} needs --cost beside it", name));
   }
-  if (flag("--clock-MHz")) r.band.clock_MHz = positive_number("--clock-MHz", text("--clock-MHz"));
+  if (flag("--clock-mhz")) r.band.clock_MHz = positive_number("--clock-mhz", text("--clock-mhz"));
   if (flag("--clocks-per-instruction")) read_band(text("--clocks-per-instruction"), r.band);
   if (flag("--case")) r.plan_case = whole_number<std::uint64_t>("--case", text("--case"), 0, most_cases);
   if (flag("--shard")) r.shard = shard_of(text("--shard"));

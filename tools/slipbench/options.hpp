@@ -8,7 +8,7 @@
 
 #include "sim/scenario/read.hpp"
 #include "sim/sweep/sweep.hpp"
-#include "tools/slipbench/board_cost.hpp"
+#include "tools/slipbench/clock_band.hpp"
 
 namespace slipbench {
 
@@ -42,7 +42,7 @@ struct Request {
   bool double_precision = false;           // export: --precision double
   std::string to = "exported";             // export: --to FOLDER
   bool cost = false;                       // export: --cost
-  ClockBand band;                          // export: --clock-MHz, --clocks-per-instruction
+  ClockBand band;                          // export: --clock-mhz, --clocks-per-instruction
   bool keys = false, markdown = false;
   std::string schema;  // check: of "scenario" or "machine" files; "": none
   [[nodiscard]] bool wants_reference() const { return keys || !schema.empty(); }  // then there is no file

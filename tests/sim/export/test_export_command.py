@@ -33,14 +33,13 @@ class Exported(unittest.TestCase):
     def setUpClass(cls):
         cls.top = tempfile.TemporaryDirectory()
         cls.folders = {}
-        for scenario in (CONVEYOR, PUMP):
-            for precision in ("float", "double"):
-                folder = os.path.join(cls.top.name, os.path.basename(scenario)[:-5] + "_" + precision)
-                answer = slipbench("export", scenario, "--precision", precision, "--to", folder, "--quiet",
-                                   "--set", "run.duration_s=1.0", *WHOLE)
-                assert answer.returncode == 0, answer.stderr
-                assert answer.stdout == "", answer.stdout
-                cls.folders[os.path.basename(folder)] = folder
+        for scenario, precision, *more in ((CONVEYOR, "float"), (CONVEYOR, "double"), (PUMP, "float", "--controller")):
+            folder = os.path.join(cls.top.name, os.path.basename(scenario)[:-5] + "_" + precision)
+            answer = slipbench("export", scenario, "--precision", precision, "--to", folder, "--quiet", "--set", "run.duration_s=1.0",
+                               *WHOLE, *more)
+            assert answer.returncode == 0, answer.stderr
+            assert answer.stdout == "", answer.stdout
+            cls.folders[os.path.basename(folder)] = folder
 
     @classmethod
     def tearDownClass(cls):
@@ -53,7 +52,7 @@ class Exported(unittest.TestCase):
 
     def build(self, folder, part, *flags):
         program = os.path.join(folder, part + ".x")
-        done = subprocess.run(["cc", *BITS, *flags, part + ".c", part + "_replay.c", "-o", program], cwd=folder,
+        done = subprocess.run(["cc", *BITS, part + ".c", part + "_replay.c", "-o", program, *flags], cwd=folder,
                               capture_output=True, text=True, timeout=PATIENCE_S)
         self.assertEqual(done.returncode, 0, done.stderr)
         return program
@@ -61,7 +60,7 @@ class Exported(unittest.TestCase):
     def test_vectors_replay_to_the_bit_and_strict_warnings_stay_silent(self):
         for folder, part, named in self.each():
             with named:
-                for flags in (STRICT, ["-O0"], ["-O3", "-march=native"]):
+                for flags in (STRICT, ["-O0", "-lm"], ["-O3", "-march=native"]):  # unoptimised, sqrt is a call
                     run = subprocess.run([self.build(folder, part, *flags)], capture_output=True, text=True, timeout=PATIENCE_S)
                     self.assertEqual(run.returncode, 0, run.stdout)
                     self.assertIn("alike to the bit", run.stdout)
@@ -72,16 +71,17 @@ class Exported(unittest.TestCase):
                 path = os.path.join(folder, part + ".c")
                 with open(path, encoding="utf-8") as file:
                     text = file.read()
-                # The least change there is, in the middle one of the machine's constants: its last hexadecimal digit.
-                places = list(re.finditer(r"^static const \w+ \w+ = -?0x1\.([0-9a-f]+)p", text, re.MULTILINE))
-                at = places[len(places) // 2].end(1) - 1
+                # The last hexadecimal digit of the first of the machine's constants, which stands in an equation; a threshold that
+                # decides nothing in the vectors would be another matter.
+                found = re.search(r"^static const \w+ \w+ = -?0x1\.([0-9a-f]+)p", text, re.MULTILINE)
+                at = found.end(1) - 1
                 other = "8" if text[at] != "8" else "4"
                 with tempfile.TemporaryDirectory() as wrong:
                     shutil.copytree(folder, wrong, dirs_exist_ok=True)
                     with open(os.path.join(wrong, part + ".c"), "w", encoding="utf-8") as file:
                         file.write(text[:at] + other + text[at + 1:])
                     run = subprocess.run([self.build(wrong, part)], capture_output=True, text=True, timeout=PATIENCE_S)
-                self.assertEqual(run.returncode, 1, f"{text[places[len(places) // 2].start():at + 1]} changed unnoticed")
+                self.assertEqual(run.returncode, 1, f"{found.group()} changed unnoticed")
                 self.assertIn("expected", run.stdout)
 
     def test_no_library_is_linked(self):
@@ -127,7 +127,7 @@ class Asked(unittest.TestCase):
 
     def test_refusals(self):
         cases = [(["--estimator", "nobody"], 2, "there are: luenberger, reduced, ekf"), (["--precision", "half"], 2, "float or double"),
-                 (["--clock-MHz", "80"], 2, "--cost"), (["--precision", "double", "--cost"], 2, "float"),
+                 (["--clock-mhz", "80"], 2, "--cost"), (["--precision", "double", "--cost"], 2, "float"),
                  (["--cost", "--clocks-per-instruction", "2"], 2, "LOW..HIGH"),
                  (["--set", "process_noise.flux_Wb=1000.0"], 1, "nothing was exported"), (["--to", "/dev/null/x"], 3, "/dev/null/x")]
         for more, status, words in cases:
@@ -154,9 +154,9 @@ class OnTheBoard(unittest.TestCase):
         return json.loads(answer.stdout)
 
     def test_counts_repeat_and_make_periods(self):
-        for scenario in (CONVEYOR, PUMP):
+        for scenario, *parts in ((CONVEYOR, "--controller", "--estimator", "luenberger", "--estimator", "ekf"), (PUMP, "--controller")):
             with self.subTest(scenario), tempfile.TemporaryDirectory() as folder:
-                first, second, third = (self.cost(scenario, folder, "--clock-MHz", "80", "--clocks-per-instruction", "1.5..2")
+                first, second, third = (self.cost(scenario, folder, *parts, "--clock-mhz", "80", "--clocks-per-instruction", "1.5..2")
                                         for _ in range(3))
                 self.assertEqual(first, second)
                 self.assertEqual(first, third)
@@ -167,6 +167,8 @@ class OnTheBoard(unittest.TestCase):
                     # Each operation is an instruction at least, but for those that a fused compare or a select takes along.
                     self.assertGreater(count["instructions_most"], 0.5 * first["parts"][name]["operations"]["all"])
                     self.assertEqual(count["ticks"], first["parts"][name]["vector_ticks"])
+                if scenario == PUMP:
+                    continue
                 together = counts["controller"]["instructions_most"] + counts["luenberger"]["instructions_most"]
                 low, high = first["shortest_control_period_us"]["controller + luenberger"]
                 self.assertAlmostEqual(low, together * 1.5 / 80, places=9)
