@@ -32,15 +32,16 @@ bool ready(int descriptor, short what, LinkClock::time_point deadline) {
 
 }  // namespace
 
-Link::Link(int from_board, int to_board, pid_t child, std::string name)
-    : in_(from_board), out_(to_board), child_(child), name_(std::move(name)), buffer_(4096) {
+Link::Link(int from_board, int to_board, pid_t child, std::string name, int said)
+    : in_(from_board), out_(to_board), said_(said), child_(child), name_(std::move(name)), buffer_(4096) {
   for (const int descriptor : {in_, out_}) fcntl(descriptor, F_SETFL, fcntl(descriptor, F_GETFL) | O_NONBLOCK);
 }
 
 void Link::close_descriptors() {
   if (in_ >= 0) close(in_);
   if (out_ >= 0 && out_ != in_) close(out_);
-  in_ = out_ = -1;
+  if (said_ >= 0) close(said_);
+  in_ = out_ = said_ = -1;
 }
 
 Link::~Link() {
@@ -72,6 +73,18 @@ void Link::gone(const char* what) {
   closed_ = true;
   why_ = what;
   if (child_ > 0) reap(300ms);
+  if (const std::string last = last_said(); !last.empty()) why_ += "; it said: " + last;
+}
+
+// The last line.
+std::string Link::last_said() const {
+  std::string text(4096, '\0');
+  const off_t end = said_ >= 0 ? lseek(said_, 0, SEEK_END) : 0;
+  const ssize_t length = end > 0 ? pread(said_, text.data(), text.size(), std::max<off_t>(0, end - 4096)) : 0;
+  text.resize(static_cast<std::size_t>(std::max<ssize_t>(length, 0)));
+  while (!text.empty() && text.back() == '\n') text.pop_back();
+  const std::string last = text.substr(text.rfind('\n') + 1);
+  return last.ends_with("has no peer") ? "" : last;  // QEMU always warns so of a network card
 }
 
 bool Link::send(std::span<const std::uint8_t> bytes) {

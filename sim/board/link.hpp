@@ -18,8 +18,8 @@ using LinkClock = std::chrono::steady_clock;
 
 class Link {
  public:
-  // Takes both descriptors (they may be one and the same) and the child, 0 for none.
-  Link(int from_board, int to_board, pid_t child, std::string name);
+  // Takes both descriptors (they may be one and the same), the child, 0 for none, and the file that its standard error goes to, -1 for none.
+  Link(int from_board, int to_board, pid_t child, std::string name, int said = -1);
   // Closes; a child that does not end within half a second of that is killed, with its process group, which is its own.
   ~Link();
   Link(const Link&) = delete;
@@ -36,10 +36,11 @@ class Link {
 
  private:
   void gone(const char* what);
+  [[nodiscard]] std::string last_said() const;
   bool reap(std::chrono::milliseconds patience);
   void close_descriptors();
 
-  int in_, out_;
+  int in_, out_, said_;
   pid_t child_;
   std::string name_, why_;
   bool closed_ = false;

@@ -2,6 +2,7 @@
 
 #include <fcntl.h>
 #include <spawn.h>
+#include <sys/mman.h>
 #include <sys/socket.h>
 #include <sys/un.h>
 #include <termios.h>
@@ -25,8 +26,8 @@ namespace {
   throw OutsideError("link " + link + ": " + what);
 }
 
-// The child's standard input and output are `in` and `out`; its process group is its own, its signals the usual ones.
-pid_t start(const std::vector<std::string>& words, int in, int out, const std::string& link) {
+// The child's standard input and output are `in` and `out`, its standard error `said` unless that is -1; its process group is its own, its signals the usual ones.
+pid_t start(const std::vector<std::string>& words, int in, int out, int said, const std::string& link) {
   std::vector<char*> arguments;
   for (const std::string& word : words) arguments.push_back(const_cast<char*>(word.c_str()));
   arguments.push_back(nullptr);
@@ -34,6 +35,7 @@ pid_t start(const std::vector<std::string>& words, int in, int out, const std::s
   posix_spawn_file_actions_init(&files);
   posix_spawn_file_actions_adddup2(&files, in, STDIN_FILENO);
   posix_spawn_file_actions_adddup2(&files, out, STDOUT_FILENO);
+  if (said >= 0) posix_spawn_file_actions_adddup2(&files, said, STDERR_FILENO);
   posix_spawnattr_t how;
   posix_spawnattr_init(&how);
   sigset_t usual;
@@ -54,7 +56,7 @@ pid_t start(const std::vector<std::string>& words, int in, int out, const std::s
   return child;
 }
 
-std::unique_ptr<Link> by_pipes(const std::vector<std::string>& words, const std::string& link) {
+std::unique_ptr<Link> by_pipes(const std::vector<std::string>& words, const std::string& link, int said = -1) {
   std::array<int, 2> to{}, from{};
   if (pipe2(to.data(), O_CLOEXEC) != 0) failed(link, std::strerror(errno));
   if (pipe2(from.data(), O_CLOEXEC) != 0) {
@@ -63,9 +65,9 @@ std::unique_ptr<Link> by_pipes(const std::vector<std::string>& words, const std:
   }
   const auto close_all = [](int a, int b) { close(a), close(b); };
   try {
-    const pid_t child = start(words, to[0], from[1], link);
+    const pid_t child = start(words, to[0], from[1], said, link);
     close_all(to[0], from[1]);
-    return std::make_unique<Link>(from[0], to[1], child, link);
+    return std::make_unique<Link>(from[0], to[1], child, link, said);
   } catch (...) {
     close_all(to[0], to[1]), close_all(from[0], from[1]);
     throw;
@@ -73,13 +75,13 @@ std::unique_ptr<Link> by_pipes(const std::vector<std::string>& words, const std:
 }
 
 // The board's end of a socket pair is the child's standard input.
-std::unique_ptr<Link> by_socket_pair(const std::vector<std::string>& words, const std::string& link) {
+std::unique_ptr<Link> by_socket_pair(const std::vector<std::string>& words, const std::string& link, int said) {
   std::array<int, 2> ends{};
   if (socketpair(AF_UNIX, SOCK_STREAM | SOCK_CLOEXEC, 0, ends.data()) != 0) failed(link, std::strerror(errno));
   try {
-    const pid_t child = start(words, ends[1], STDERR_FILENO, link);
+    const pid_t child = start(words, ends[1], STDERR_FILENO, said, link);
     close(ends[1]);
-    return std::make_unique<Link>(ends[0], ends[0], child, link);
+    return std::make_unique<Link>(ends[0], ends[0], child, link, said);
   } catch (...) {
     close(ends[0]), close(ends[1]);
     throw;
@@ -140,11 +142,13 @@ void want_file(const std::string& path, const std::string& link) {
                                      : ""));
 }
 
+// QEMU always warns of a network card without a network: what it says is told only when the board is gone.
+int emulator_speech() { return memfd_create("emulator", MFD_CLOEXEC); }
+
 std::vector<std::string> emulator(const std::string& image) {
   // One instruction is 2^7 ns of the board's time, always: counts repeat from run to run.
-  return {
-      "qemu-system-arm",   "-M",   "mps2-an386",      "-nodefaults", "-display", "none", "-kernel", image, "-icount",
-      "shift=7,sleep=off", "-nic", "user,restrict=on"};  // the board has one, and a warning for one without a peer
+  return {"qemu-system-arm", "-M",  "mps2-an386", "-nodefaults",      "-display", "none",
+          "-kernel",         image, "-icount",    "shift=7,sleep=off"};
 }
 
 }  // namespace
@@ -179,13 +183,13 @@ std::unique_ptr<Link> open_link(const std::string& link, const FirmwareFiles& fi
       std::vector<std::string> words = emulator(firmware.semihosting);
       words.insert(words.end(), {"-semihosting-config",
                                  "enable=on,target=native,arg=board,arg=/proc/self/fd/0,arg=/proc/self/fd/1"});
-      return by_pipes(words, link);
+      return by_pipes(words, link, emulator_speech());
     }
     if (kind == "emulated_uart") {
       want_file(firmware.uart, link);
       std::vector<std::string> words = emulator(firmware.uart);
       words.insert(words.end(), {"-chardev", "socket,id=line,fd=0", "-serial", "chardev:line"});
-      return by_socket_pair(words, link);
+      return by_socket_pair(words, link, emulator_speech());
     }
   } else if (!rest.empty()) {
     if (kind == "pipe") return by_pipes({"/bin/sh", "-c", rest}, link);

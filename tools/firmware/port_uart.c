@@ -34,17 +34,20 @@ void port_open(void) {
 }
 
 static int wait_for_byte(uint32_t periods) {
-  const uint32_t begun = timer_value();
+  uint32_t begun;
+  int there = 1;
   /* 25 MHz: 25 counts a microsecond; up to 171 s */
   const uint64_t wanted = (uint64_t)periods * BOARD_CONTROL_PERIOD_NS / 40u;
   const uint32_t wait = wanted < 0xFFFFFFFFu ? (uint32_t)wanted : 0xFFFFFFFFu;
-  while ((UART->state & receive_full) == 0) {
-    if (periods == 0)
-      __asm volatile("wfi" ::: "memory");
-    else if (begun - timer_value() >= wait)
-      return 0;
+  if (periods == 0) {
+    while ((UART->state & receive_full) == 0) __asm volatile("wfi" ::: "memory");
+    return 1;
   }
-  return 1;
+  timer_run(1u);
+  begun = timer_value();
+  while (there && (UART->state & receive_full) == 0) there = begun - timer_value() < wait;
+  timer_run(0u);
+  return there;
 }
 
 int port_read(uint8_t* bytes, size_t room, uint32_t periods) {
