@@ -98,9 +98,10 @@ class Exported(unittest.TestCase):
     @unittest.skipUnless(shutil.which("cppcheck"), "cppcheck is not installed")
     def test_cppcheck_has_nothing_to_say(self):
         for folder, part, named in self.each():
+            replays = [part + "_replay.c"] if "pump" in folder else []  # one text for all parts, and slow to check
             with named:
                 done = subprocess.run(["cppcheck", "--std=c99", "--enable=warning,style,performance,portability", "--inline-suppr",
-                                       "--error-exitcode=1", "--quiet", part + ".c", part + "_replay.c"], cwd=folder,
+                                       "--error-exitcode=1", "--quiet", part + ".c", *replays], cwd=folder,
                                       capture_output=True, text=True, timeout=PATIENCE_S)
                 self.assertEqual((done.returncode, done.stdout + done.stderr), (0, ""))
 
