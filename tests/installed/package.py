@@ -72,5 +72,8 @@ check(output(command, "--version").split() == ["slipbench", version], "unpacked,
 unpacked = json.loads(output(command, "run", scenario, "--json"))
 built = json.loads(output(build / "tools/slipbench/slipbench", "run", scenario, "--json"))
 check(unpacked["digest"] == built["digest"], "and runs a shipped scenario to the same bits as the build's")
+driven = json.loads(output(command, "board", scenario.parent / "board_conveyor.toml", "--lock-step", "--link", "host", "--set", "run.duration_s=0.1",
+                           "--set", "score.from_s=0.0", "--json"))
+check(driven["board"]["answers"] == 1001, "and the firmware that came along closes a loop")
 check("qualified people" in (tree / "usr/share/doc/slipbench/README.md").read_text(), "the cautions came along")
 sys.exit(1 if failures else 0)
