@@ -3,6 +3,7 @@
 #include <cmath>
 #include <nlohmann/json.hpp>
 
+#include "sim/board/budget.hpp"
 #include "sim/scenario/scenario.hpp"
 #include "sim/sweep/worst_case.hpp"
 #include "tools/slipbench/comparison.hpp"
@@ -62,6 +63,33 @@ void add_sensitivities(Json& document, const SweepResult& r) {
   document["sensitivity_points"] = std::move(points);
 }
 
+Json board_of(const BoardResult& b) {
+  const ExchangeFigures& f = b.exchange;
+  const BoardOutcome& o = b.outcome;
+  Json board = {{"link", b.link},
+                {"name", b.name},
+                {"samples", f.samples},
+                {"answers", f.answers},
+                {"missing", f.missing},
+                {"damaged", f.damaged},
+                {"late", f.late},
+                {"doubled", f.doubled},
+                {"strange", f.strange},
+                {"restarts", f.restarts},
+                {"fault", o.fault},
+                {"gates_opened_at_s", nullptr},
+                {"gone", nullptr},
+                {"exchange_p50_us", f.round_trip_p50_us},
+                {"exchange_p99_us", f.round_trip_p99_us},
+                {"exchange_max_us", f.round_trip_max_us}};
+  if (o.lost) board["gates_opened_at_s"] = static_cast<double>(o.opened_tick) * b.control_period_s;
+  if (o.gone) board["gone"] = o.why;
+  if (!b.used_unit.empty() && f.answers > 0)
+    board["used"] = {{"unit", b.used_unit}, {"least", f.used_least}, {"mean", f.used_mean}, {"most", f.used_most}};
+  if (b.baud > 0.0) board["serial"] = {{"baud", b.baud}, {"exchange_us", 1e6 * serial_exchange_s(b.baud)}};
+  return board;
+}
+
 }  // namespace
 
 std::string json_document(const RunResult& r) {
@@ -91,6 +119,7 @@ std::string json_document(const RunResult& r) {
     document["estimators"][e.name] = std::move(entry);
     document["digest"][e.name] = e.digest;
   }
+  if (r.board) document["board"] = board_of(*r.board);
   if (r.stream) {
     document["stream"] = {{"endpoint", r.stream->endpoint},
                           {"subscribers", r.stream->subscribers},

@@ -33,6 +33,7 @@ int work(const std::vector<std::string>& arguments) {
   if (line.request->verb == "sweep") return sweep_verb(*line.request);
   if (line.request->verb == "analyse") return analyse_verb(*line.request);
   if (line.request->verb == "design") return design_verb(*line.request);
+  if (line.request->verb == "board") return board_verb(*line.request);
   return compare_verb(*line.request);
 }
 

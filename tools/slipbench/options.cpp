@@ -224,6 +224,16 @@ Request request_of(const std::string& verb, Given& given) {
   if (flag("--publish-wait"))
     r.publish_wait = whole_number<unsigned>("--publish-wait", text("--publish-wait"), 1, 1024);
   if (r.publish_wait > 0 && !r.publish) refuse("--publish-wait", "--publish-wait needs --publish ENDPOINT beside it");
+  r.lock_step = given.flags["--lock-step"], r.link = text("--link"), r.record = text("--record");
+  if (flag("--watchdog")) r.watchdog = whole_number<unsigned>("--watchdog", text("--watchdog"), 1, 1000000);
+  if (flag("--answer-within"))
+    r.answer_within_ms = whole_number<unsigned>("--answer-within", text("--answer-within"), 1, 60000);
+  if (verb == "board" && !r.lock_step)
+    refuse("--lock-step", "board runs in lock-step only so far: say --lock-step, so that a paced run may come later");
+  if (verb == "board" && r.link.empty())
+    refuse("--link", "board needs --link: pipe:COMMAND, unix:PATH, serial:DEVICE, host, emulated or emulated_uart");
+  if (flag("--record") && !r.record.ends_with(".frames") && !r.record.starts_with("/dev/"))
+    refuse("--record", fmt::format("--record '{}': expected a name that ends in .frames", r.record));
   if (flag("--pace")) r.pace = positive_number("--pace", text("--pace"));
   if (flag("--period")) r.period_s = positive_number("--period", text("--period"));
   if (flag("--at")) r.at_Hz = positive_number("--at", text("--at"));

@@ -25,9 +25,11 @@ namespace fs = std::filesystem;
 
 const std::string scenarios = SLIPBENCH_SOURCE_DIR "/configs/scenarios/";
 
-// A shipped scenario for each kind of controller, all estimators riding along in it; `seconds` long.
+// A shipped scenario for each kind of controller, all estimators that it has the sensors for riding along; `seconds` long. A
+// controller with a linear observer besides.
 std::vector<Scenario> closed_loops(const std::string& seconds) {
-  std::vector<Scenario> all;
+  std::vector<Scenario> all = {
+      read_scenario(scenarios + "current_loop_observer.toml", {{"run.duration_s", seconds}}, {})};
   each_controller_method([&]<class Method>() {
     for (const auto& file : fs::directory_iterator(scenarios)) {
       if (file.path().extension() != ".toml") continue;
@@ -36,6 +38,7 @@ std::vector<Scenario> closed_loops(const std::string& seconds) {
       std::vector<Override> changes = {{"run.duration_s", seconds}};
       std::size_t i = 0;
       each_estimator_method([&]<class Estimator>() {
+        if (requires { Estimator::needs_speed; } && as_shipped.sensors.speed.kind == "none") return;
         const std::string at = "estimator." + std::to_string(as_shipped.estimators.size() + i++);
         changes.push_back({at + ".name", "added_" + std::to_string(i)});
         changes.push_back({at + ".kind", std::string(Estimator::kind)});
