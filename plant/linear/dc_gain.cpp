@@ -21,9 +21,8 @@ Matrix dc_gain(const System& given) {
   if (of.s(n - 1) <= size) {
     const Minimal smaller = minimal(given);
     if (smaller.system.order() < n) return dc_gain(smaller.system);
-    throw LinearError(std::string("there is no DC gain: pole ") + (given.discrete() ? "1" : "0") +
-                      " is an integrator in " + direction_text(given, of.V.col(n - 1)) +
-                      ", and a constant input makes it run away");
+    throw LinearError(std::string("pole ") + (given.discrete() ? "1" : "0") + " is an integrator in " +
+                      direction_text(given, of.V.col(n - 1)) + ", and a constant input makes it run away");
   }
   const Matrix inner = s.C * of.V * of.s.cwiseInverse().asDiagonal() * of.U.transpose() * s.B;
   return given.D + balanced.output.asDiagonal() * inner * balanced.input.cwiseInverse().asDiagonal();

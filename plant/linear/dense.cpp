@@ -7,6 +7,7 @@
 #include <limits>
 
 #include "plant/linear/balance.hpp"
+#include "plant/linear/schur.hpp"
 #include "plant/math/elementary.hpp"
 
 namespace slipbench::linear {
@@ -73,9 +74,7 @@ std::vector<Complex> eigenvalues(const Matrix& a) {
   if (a.size() == 0) return values;
   const Vector scale = balancing_scale(a);
   const Matrix balanced = scale.cwiseInverse().asDiagonal() * a * scale.asDiagonal();
-  const Eigen::EigenSolver<Matrix> solver(balanced, false);
-  if (solver.info() != Eigen::Success) throw LinearError("the eigenvalues of A did not converge: is it finite?");
-  for (const Complex& value : solver.eigenvalues()) values.push_back(value);
+  for (const Complex& value : eigenpairs(balanced).values) values.push_back(value);
   std::sort(values.begin(), values.end(),
             [](Complex x, Complex y) { return x.real() != y.real() ? x.real() > y.real() : x.imag() > y.imag(); });
   return values;

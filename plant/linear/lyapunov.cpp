@@ -6,6 +6,7 @@
 #include <limits>
 
 #include "plant/linear/dense.hpp"
+#include "plant/linear/schur.hpp"
 
 namespace slipbench::linear {
 namespace {
@@ -19,9 +20,8 @@ struct Schur {
 };
 
 Schur schur_of(const Matrix& a) {
-  const Eigen::RealSchur<Matrix> of(a);
-  if (of.info() != Eigen::Success) throw LinearError("the Schur form of A did not converge: is it finite?");
-  Schur out{of.matrixU(), of.matrixT(), {}};
+  RealSchurForm of = real_schur(a);
+  Schur out{std::move(of.U), std::move(of.T), {}};
   for (Eigen::Index i = 0; i < a.rows(); ++i)
     if (i == 0 || out.S(i, i - 1) == 0.0) out.at.push_back(i);
   out.at.push_back(a.rows());

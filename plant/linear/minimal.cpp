@@ -7,6 +7,7 @@
 
 #include "plant/linear/decomposition.hpp"
 #include "plant/linear/dense.hpp"
+#include "plant/linear/schur.hpp"
 #include "plant/linear/transfer.hpp"
 
 namespace slipbench::linear {
@@ -16,11 +17,11 @@ namespace {
 void tell(const System& given, const Matrix& block, const Matrix& directions, const char* why,
           std::vector<std::string>* removed) {
   if (block.rows() == 0) return;
-  const Eigen::EigenSolver<Matrix> of(block);
+  const Eigenpairs of = eigenpairs(block);
   for (Eigen::Index i = 0; i < block.rows(); ++i) {
-    const Complex p = of.eigenvalues()(i);
+    const Complex p = of.values(i);
     if (p.imag() < 0.0) continue;
-    const Eigen::VectorXcd v = directions.cast<Complex>() * of.eigenvectors().col(i);
+    const Eigen::VectorXcd v = directions.cast<Complex>() * of.vectors.col(i);
     Vector weight = v.real();
     if (p.imag() != 0.0) weight = (v.real().array().square() + v.imag().array().square()).sqrt();
     removed->push_back("pole " + text_of(p) + (p.imag() != 0.0 ? " and its conjugate in " : " in ") +

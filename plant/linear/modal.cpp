@@ -7,6 +7,7 @@
 #include "plant/linear/decomposition.hpp"
 #include "plant/linear/dense.hpp"
 #include "plant/linear/poles.hpp"
+#include "plant/linear/schur.hpp"
 #include "plant/math/elementary.hpp"
 
 namespace slipbench::linear {
@@ -37,24 +38,22 @@ Modal modal_form(const System& given) {
                         " times with " + std::to_string(g.eigenvectors) +
                         " eigenvector(s), and the condition of the modes would be beyond double precision");
   const Vector unit = in_balanced_units(given).state, inverse = unit.cwiseInverse();
-  const Eigen::EigenSolver<Matrix> of(inverse.asDiagonal() * given.A * unit.asDiagonal());
-  if (of.info() != Eigen::Success) throw LinearError("the eigenvectors of A did not converge: is it finite?");
+  const Eigenpairs of = eigenpairs(inverse.asDiagonal() * given.A * unit.asDiagonal());
   std::vector<Eigen::Index> order;
   for (Eigen::Index i = 0; i < n; ++i)
-    if (of.eigenvalues()(i).imag() >= 0.0) order.push_back(i);
-  std::stable_sort(order.begin(), order.end(), [&](Eigen::Index i, Eigen::Index j) {
-    return of.eigenvalues()(i).real() > of.eigenvalues()(j).real();
-  });
+    if (of.values(i).imag() >= 0.0) order.push_back(i);
+  std::stable_sort(order.begin(), order.end(),
+                   [&](Eigen::Index i, Eigen::Index j) { return of.values(i).real() > of.values(j).real(); });
   Matrix t = Matrix::Zero(n, n), a = Matrix::Zero(n, n);
   Eigen::Index at = 0;
   for (const auto i : order) {
-    const Complex p = of.eigenvalues()(i);
+    const Complex p = of.values(i);
     a(at, at) = p.real();
     if (p.imag() == 0.0) {
-      t.col(at++) = of.eigenvectors().col(i).real().normalized();
+      t.col(at++) = of.vectors.col(i).real().normalized();
       continue;
     }
-    t.middleCols(at, 2) = real_pair(of.eigenvectors().col(i).normalized());
+    t.middleCols(at, 2) = real_pair(of.vectors.col(i).normalized());
     a.block(at, at, 2, 2) << p.real(), p.imag(), -p.imag(), p.real();
     at += 2;
   }

@@ -30,8 +30,8 @@ double slowest(const System& s, const std::vector<Complex>& poles) {
   double time = 0.0;
   for (const auto p : poles) {
     const double size = magnitude(p);
-    const double rate = s.discrete() ? (size > 0.0 ? -slipbench::log(size) / s.sample_period_s : 1e300) : -p.real();
-    time = std::max(time, 1.0 / rate);
+    if (s.discrete() && size == 0.0) continue;  // dead beat
+    time = std::max(time, s.discrete() ? -s.sample_period_s / slipbench::log(size) : -1.0 / p.real());
   }
   return time;
 }

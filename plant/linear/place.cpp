@@ -6,8 +6,10 @@
 
 #include "plant/linear/balance.hpp"
 #include "plant/linear/dense.hpp"
+#include "plant/linear/pbh.hpp"
 #include "plant/linear/pole_set.hpp"
 #include "plant/linear/robust_eigenvectors.hpp"
+#include "plant/linear/schur.hpp"
 #include "plant/linear/staircase.hpp"
 
 namespace slipbench::linear {
@@ -125,7 +127,18 @@ double condition_of_eigenvectors(const Matrix& A) {
   if (A.rows() == 0) return 1.0;
   return [](const Vector& s) {
     return s.minCoeff() > 0.0 ? s.maxCoeff() / s.minCoeff() : 1e300;
-  }(singular_values(ComplexMatrix(Eigen::EigenSolver<Matrix>(A).eigenvectors())));
+  }(singular_values(eigenpairs(A).vectors));
+}
+
+// Such poles are rounding's, not the wish's: they may well grow.
+[[noreturn]] void refuse_lost(const Matrix& A, const Matrix& B, const StateFeedback& f, const std::string& word) {
+  const auto tests = pbh({A, B, Matrix::Zero(0, A.rows()), Matrix::Zero(0, B.cols()), 0.0, {}, {}, {}});
+  const auto least = std::min_element(tests.begin(), tests.end(), [](const ModeTest& a, const ModeTest& b) {
+    return a.controllability < b.controllability;
+  });
+  throw LinearError("the mode at " + text_of(least->pole) + " is all but " + word + ": moving it takes gains up to " +
+                    short_text(f.K.cwiseAbs().maxCoeff()) + ", whose rounding puts poles at " + text_of(f.poles) +
+                    ", off the wish by " + short_text(f.residual) + " relative");
 }
 
 }  // namespace
@@ -168,7 +181,10 @@ StateFeedback place(const Matrix& A, const Matrix& B, const std::vector<Complex>
     f.condition = r == n && gain.condition > 0.0 ? gain.condition : condition_of_eigenvectors(A - B * f.K);
   }
   f.poles = eigenvalues(A - B * f.K);
-  f.residual = pole_distance(wished, f.poles);
+  double moved = 0.0;
+  for (const auto p : eigenvalues(A)) moved = std::max(moved, magnitude(p));
+  f.residual = pole_distance(wished, f.poles, moved);
+  if (f.residual > 0.1) refuse_lost(A, B, f, unmoved);
   if (f.warning.empty() && f.residual > 1e-6)
     f.warning = "the achieved poles differ from the wished ones by " + short_text(f.residual) +
                 " relative (condition of the eigenvectors " + short_text(f.condition) +

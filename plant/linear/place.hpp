@@ -10,7 +10,7 @@
 // makes the plant reachable from one direction of the inputs, then as for one input, with a warning.
 // Uncontrollable modes stay where they are: each must be among the wished poles, to 1e-6 relative.
 // poles: n of them, closed under conjugation, any order.
-// residual of the answer: pole_distance(wished, achieved); a warning above 1e-6.
+// residual of the answer: pole_distance(wished, achieved, largest open-loop pole); a warning above 1e-6, a refusal above 0.1.
 // LinearError: number of poles; a conjugate missing; an uncontrollable mode that was not wished, named.
 // Sources: J. Kautsky, N.K. Nichols, P. Van Dooren, Int. J. Control 41(5) 1985, 1129-1155; A.L. Tits, Y. Yang, IEEE TAC 41(10)
 // 1996, 1432-1452; J. Ackermann, Regelungstechnik 20 1972, 297-300; M. Heymann, IEEE TAC 13 1968, 748-749.

@@ -65,9 +65,9 @@ std::vector<std::size_t> match(const std::vector<Complex>& wished, const std::ve
   return order;
 }
 
-double pole_distance(const std::vector<Complex>& wished, const std::vector<Complex>& found) {
+double pole_distance(const std::vector<Complex>& wished, const std::vector<Complex>& found, double size) {
   const auto order = match(wished, found);
-  double largest = 0.0, distance = 0.0;
+  double largest = size, distance = 0.0;
   for (const auto p : wished) largest = std::max(largest, magnitude(p));
   for (const auto p : found) largest = std::max(largest, magnitude(p));
   if (largest == 0.0) return 0.0;

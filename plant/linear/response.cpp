@@ -29,6 +29,7 @@ Vector initial(const System& s, const Vector& x0) {
 
 Response empty(const System& s, double step_s, Index steps) {
   Response r;
+  r.sampled = s.discrete();
   r.time_s.resize(static_cast<std::size_t>(steps) + 1);
   for (Index k = 0; k <= steps; ++k) r.time_s[static_cast<std::size_t>(k)] = static_cast<double>(k) * step_s;
   r.y.resize(steps + 1, s.outputs());

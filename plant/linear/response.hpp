@@ -15,6 +15,7 @@ namespace slipbench::linear {
 struct Response {
   std::vector<double> time_s;  // k step_s, k = 0 ... steps
   Matrix y, u, x;
+  bool sampled = false;  // of a discrete system: between the samples there is nothing
 };
 
 // input is stepped from 0 to amplitude at t = 0 and held.

@@ -4,6 +4,7 @@
 #include <algorithm>
 #include <numeric>
 
+#include "plant/linear/schur.hpp"
 #include "plant/math/elementary.hpp"
 
 namespace slipbench::linear {
@@ -116,9 +117,8 @@ Matrix riccati_subspace(const Matrix& A, const Matrix& B, const Matrix& Q, const
     throw LinearError(discrete
                           ? "no stabilising solution: the equation's pencil is singular or has eigenvalues at 1 and -1"
                           : "no solution: R is singular to working precision");
-  const Eigen::RealSchur<Matrix> schur(map.S);
-  if (schur.info() != Eigen::Success) throw LinearError("the Schur form of the equation's pencil was not found");
-  ComplexMatrix T = schur.matrixT().cast<Complex>(), U = schur.matrixU().cast<Complex>();
+  const RealSchurForm schur = real_schur(map.S);
+  ComplexMatrix T = schur.T.cast<Complex>(), U = schur.U.cast<Complex>();
   triangular(T, U);
   refuse_limit(T, map);
   stable_first(T, U);

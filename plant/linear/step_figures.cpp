@@ -13,7 +13,7 @@ double time(const Response& r, Index k) { return r.time_s[static_cast<std::size_
 double first_crossing(const Response& r, const Vector& way, double level) {
   for (Index k = 0; k < way.size(); ++k) {
     if (way(k) < level) continue;
-    if (k == 0) return time(r, 0);
+    if (k == 0 || r.sampled) return time(r, k);
     return time(r, k - 1) + (time(r, k) - time(r, k - 1)) * (level - way(k - 1)) / (way(k) - way(k - 1));
   }
   return -1.0;
@@ -25,6 +25,7 @@ double last_outside(const Response& r, const Vector& way, double band) {
   for (Index k = last - 1; k >= 0; --k) {
     const double here = way(k) - 1.0, next = way(k + 1) - 1.0;
     if (std::abs(here) <= band) continue;
+    if (r.sampled) return time(r, k + 1);
     const double edge = here > 0.0 ? band : -band;
     return time(r, k) + (time(r, k + 1) - time(r, k)) * (here - edge) / (here - next);
   }
@@ -49,7 +50,7 @@ StepFigures step_figures(const Response& r, Index output, double wished, std::op
   Index top = 0;
   double peak = share.maxCoeff(&top);
   f.peak_time_s = time(r, top);
-  if (top > 0 && top + 1 < share.size()) {
+  if (!r.sampled && top > 0 && top + 1 < share.size()) {
     const double before = share(top - 1), after = share(top + 1), bend = before - 2.0 * peak + after;
     if (bend < 0.0) {
       const double shift = 0.5 * (before - after) / bend;
@@ -57,7 +58,7 @@ StepFigures step_figures(const Response& r, Index output, double wished, std::op
       f.peak_time_s += shift * (time(r, top + 1) - time(r, top));
     }
   }
-  f.overshoot = peak > 1.0 ? peak - 1.0 : 0.0;
+  f.overshoot = peak > 1.0 + 1e-12 ? peak - 1.0 : 0.0;  // less is the rounding of what settles
   const double low = first_crossing(r, share, 0.1), high = first_crossing(r, share, 0.9);
   f.rise_s = high < 0.0 ? -1.0 : high - low;
   f.settling_s = last_outside(r, share, 0.02);

@@ -2,9 +2,10 @@
 //
 // final is the value the response goes to (the caller's DC gain times the step); where there is none, the last sample. Crossings are
 // interpolated linearly between samples, the peak by a parabola through three; so their error is of the second (third) order in the spacing.
+// A discrete system's peak is its largest sample, and its crossings the first samples beyond: a parabola would see 12.5 % in 0, 1, 1, 1.
 //   overshoot     (largest y - final) / |final - first| on the far side of final, 0 if never beyond
 //   rise_s        from 10 % to 90 % of the way; negative: not reached
-//   settling_s    last time outside +-2 % of the way; negative: not settled in the record
+//   settling_s    last time outside +-2 % of the way (discrete: the first sample that stays inside); negative: not settled in the record
 //   steady_error  wished - final
 // Source: common practice; K. Ogata, "Modern Control Engineering", ch. 5.
 #pragma once

@@ -10,7 +10,7 @@ namespace slipbench::linear {
 ComplexMatrix transfer_at(const System& system, Complex s);
 
 // Largest ||G_a - G_b||_F over sixteen points off both systems' poles (circles about as large as the poles), relative to the
-// largest ||G_a||_F there: are these one plant? 0 for two systems without inputs or outputs.
+// largest ||G_a||_F there: are these one plant? 0 for two systems without inputs or outputs; 1 where rounding leaves no such point.
 double transfer_difference(const System& a, const System& b);
 
 // C A^k B for k = 0 .. count-1: D's followers in the impulse response.

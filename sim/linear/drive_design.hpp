@@ -2,7 +2,8 @@
 //
 // What is designed for: the machine as the scenario believes it, its control period, delay and rated speed; weights as the settings
 // of state_feedback say (the scenario's own where it has that controller), changed by the options. Gains are those that the
-// controller and linear_observer would design for themselves: a run that includes the file gives the same bits.
+// controller would design for itself: a run that includes the file gives the same bits. A linear_observer that includes it gets the
+// controller's observer (flux noise by the flux reference), where its own design takes the nameplate's flux.
 #pragma once
 
 #include <optional>

@@ -56,6 +56,8 @@ class ErrorMap {
     sample_.i_alpha = i.x;
     sample_.i_beta = i.y;
     sample_.dc_link = sample_.speed = std::numeric_limits<double>::quiet_NaN();
+    // Those that find the speed themselves are told none: one that listened would be found out.
+    if constexpr (requires { Method::needs_speed; }) sample_.speed = p.w_r / p.pole_pairs;
     sample_.tick = 1;
   }
 

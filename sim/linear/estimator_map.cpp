@@ -82,7 +82,7 @@ EstimatorMapMaker::EstimatorMapMaker(const Scenario& s, std::size_t which) : flu
 }
 
 EstimatorMap estimator_map(const Scenario& s, std::size_t which, const EstimatorMapOptions& options,
-                           const Progress& progress) {
+                           const MapProgress& progress) {
   const EstimatorMapMaker maker(s, which);
   EstimatorMap map;
   map.title = s.title;
@@ -102,7 +102,7 @@ EstimatorMap estimator_map(const Scenario& s, std::size_t which, const Estimator
 }
 
 EstimatorMap estimator_map(Scenario s, const std::string& kind, const EstimatorMapOptions& options,
-                           const Progress& progress) {
+                           const MapProgress& progress) {
   s.estimators = {{kind, kind, "", {}}};
   return estimator_map(s, 0, options, progress);
 }

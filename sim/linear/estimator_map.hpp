@@ -45,9 +45,9 @@ struct EstimatorMap {
 };
 
 EstimatorMap estimator_map(const Scenario& scenario, std::size_t estimator, const EstimatorMapOptions& options,
-                           const Progress& progress = {});
+                           const MapProgress& progress = {});
 // The same for a built-in kind with its default settings, where a scenario names no estimator.
 EstimatorMap estimator_map(Scenario scenario, const std::string& kind, const EstimatorMapOptions& options,
-                           const Progress& progress = {});
+                           const MapProgress& progress = {});
 
 }  // namespace slipbench

@@ -54,7 +54,7 @@ double SpeedMapMaker::at(const PlantRow& row) const {
   return at(p);
 }
 
-ObservabilityMap speed_map(const Scenario& s, const SpeedMapOptions& options, const Progress& progress) {
+ObservabilityMap speed_map(const Scenario& s, const SpeedMapOptions& options, const MapProgress& progress) {
   const SpeedMapMaker maker(s, options.model);
   ObservabilityMap map;
   map.title = s.title;
@@ -65,7 +65,7 @@ ObservabilityMap speed_map(const Scenario& s, const SpeedMapOptions& options, co
   const double before = options.with_path ? share_of_path : 0.0;
   bool going = true;
   if (options.with_path) {
-    const Progress part = [&](double done) { return going = !progress || progress(share_of_path * done); };
+    const MapProgress part = [&](double done) { return going = !progress || progress(share_of_path * done); };
     map.path = path_of(
         s, options.blind_below_Hz, [&](const PlantRow& row) { return maker.at(row); }, part);
     for (const PathPoint& p : map.path->points) map.plane = holding(map.plane, p.speed_rpm, p.torque_Nm);
@@ -86,7 +86,8 @@ ObservabilityMap speed_map(const Scenario& s, const SpeedMapOptions& options, co
   return map;
 }
 
-ObservabilityMap speed_map(const MachineSettings& machine, const SpeedMapOptions& options, const Progress& progress) {
+ObservabilityMap speed_map(const MachineSettings& machine, const SpeedMapOptions& options,
+                           const MapProgress& progress) {
   if (options.model != linear::SpeedModel::constant_speed)
     throw InputError(machine.file, "shaft.inertia_kgm2",
                      "a machine file gives no inertia, which the " + std::string(linear::name_of(options.model)) +

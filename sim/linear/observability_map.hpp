@@ -54,9 +54,9 @@ struct ObservabilityMap {
 };
 
 // Throws InputError for a plane that can't be (plane.hpp), a blind_below_Hz that is not positive, a scenario that can't be run.
-ObservabilityMap speed_map(const Scenario& scenario, const SpeedMapOptions& options, const Progress& progress = {});
+ObservabilityMap speed_map(const Scenario& scenario, const SpeedMapOptions& options, const MapProgress& progress = {});
 // Of a machine alone on its rated flux: constant_speed, no path.
 ObservabilityMap speed_map(const MachineSettings& machine, const SpeedMapOptions& options,
-                           const Progress& progress = {});
+                           const MapProgress& progress = {});
 
 }  // namespace slipbench

@@ -43,6 +43,6 @@ Plane plane_of(const MachineSettings& machine, const PlaneOptions& options);
 Plane holding(Plane plane, double speed_rpm, double torque_Nm);
 
 // Told the share done, now and then; false stops the work, and what there is comes back.
-using Progress = std::function<bool(double done)>;
+using MapProgress = std::function<bool(double done)>;
 
 }  // namespace slipbench

@@ -49,7 +49,7 @@ struct Recorder : RunObserver {
 }  // namespace
 
 ScenarioPath path_of(const Scenario& scenario, double blind_below_Hz,
-                     const std::function<double(const PlantRow&)>& observability, const Progress& progress) {
+                     const std::function<double(const PlantRow&)>& observability, const MapProgress& progress) {
   Recorder recorder(blind_below_Hz, hardly_any_flux * FluxRule(scenario).at(0.0, 0.0), observability);
   const std::array<RunObserver*, 1> observers{&recorder};
   RunOptions options;

@@ -27,6 +27,6 @@ struct ScenarioPath {
 
 // Runs the scenario and asks `observability` of each row. Throws as simulate() does.
 ScenarioPath path_of(const Scenario& scenario, double blind_below_Hz,
-                     const std::function<double(const PlantRow&)>& observability, const Progress& progress = {});
+                     const std::function<double(const PlantRow&)>& observability, const MapProgress& progress = {});
 
 }  // namespace slipbench

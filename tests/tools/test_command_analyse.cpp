@@ -94,6 +94,36 @@ TEST_CASE("analyse: a hidden mode is named, and what it means", "[tools][command
   CHECK_THAT(worse["stabilisable_why"].get<std::string>(), Catch::Contains("0.5"));
 }
 
+TEST_CASE("analyse: modal form, Kalman's decomposition and Gramians are told to scripts", "[tools][command]") {
+  const Folder folder;
+  const std::string lag = folder.write("lag.toml", "[system]\nA = [[-2.0]]\nB = [[2.0]]\nC = [[1.0]]\n");
+  // b^2 / 2a and c^2 / 2a of x' = -a x + b u, y = c x (closed form).
+  const auto one = analysed(folder, {lag});
+  CHECK(at(one["gramians"]["controllability"], 0, 0) == near(1.0));
+  CHECK(at(one["gramians"]["observability"], 0, 0) == near(0.25));
+  // Roots -1, -2, -3 on the diagonal; A T = T A_z column by column.
+  const auto three = analysed(folder, {systems + "third_order_placed.toml"});
+  for (std::size_t j = 0; j < 3; ++j) {
+    const double pole = -1.0 - static_cast<double>(j);
+    CHECK(at(three["modal"]["A"], j, j) == Approx(pole).epsilon(1e-11));  // condition of these roots: about 100
+    for (std::size_t i = 0; i < 3; ++i) {
+      double AT = 0.0;
+      for (std::size_t k = 0; k < 3; ++k) AT += at(three["A"], i, k) * at(three["modal"]["T"], k, j);
+      CHECK(AT == Approx(pole * at(three["modal"]["T"], i, j)).margin(1e-11));
+    }
+  }
+  // 1/(s - 1) is the part that is moved and seen, -1/2 the part that is neither (by hand, above).
+  const auto hidden = analysed(folder, {systems + "hidden_mode.toml"});
+  CHECK(at(hidden["kalman"]["A"], 0, 0) == near(1.0));
+  CHECK(at(hidden["kalman"]["A"], 1, 1) == near(-0.5));
+  CHECK(at(hidden["kalman"]["B"], 1, 0) == 0.0);
+  CHECK(at(hidden["kalman"]["C"], 0, 1) == 0.0);
+  CHECK(hidden["gramians"].is_null());
+  const auto jordan = analysed(folder, {systems + "double_integrator_sampled.toml"});
+  CHECK(jordan["modal"].is_null());
+  CHECK_THAT(jordan["modal_why"].get<std::string>(), Catch::Contains("1"));
+}
+
 TEST_CASE("analyse: an integrator has no DC gain, and two grow", "[tools][command]") {
   const Folder folder;
   const std::string one = folder.write("one.toml", "[system]\nA = [[0.0]]\nB = [[2.0]]\nC = [[1.0]]\n");
@@ -192,6 +222,24 @@ TEST_CASE("analyse: the picture holds poles, steps, gain and phase", "[tools][co
       CHECK_THAT(svg, Catch::Contains(part));
     CHECK(svg.find("nan") == std::string::npos);
     CHECK(svg.find("inf") == std::string::npos);
+  }
+}
+
+TEST_CASE("analyse: numbers beyond sense end in a sentence, never in a fault", "[tools][command]") {
+  const Folder folder;
+  const std::string tail =
+      "B = [[0.0], [1.0]]\nC = [[1.0, 0.0]]\n[design]\nkind = \"lqr\"\nQ = [[1.0, 0.0], [0.0, 1.0]]\nR = [[1.0]]\n";
+  int n = 0;
+  for (const char* A : {"[[1e100, 1.0], [0.0, -1e-100]]", "[[-1e-6, 1.0], [0.0, -1e9]]", "[[1e6, 1.0], [0.0, -1e-6]]",
+                        "[[0.0, 0.0], [0.0, 0.0]]", "[[0.0, 1e100], [-1e100, 0.0]]"}) {
+    const std::string file =
+        folder.write("odd" + std::to_string(n++) + ".toml", "[system]\nA = " + std::string(A) + "\n" + tail);
+    for (const char* verb : {"analyse", "design"}) {
+      const Answer answer = folder.run({verb, file, "--figure", folder.file("odd.svg")});
+      INFO(verb << " of " << A << ": " << answer.err);
+      CHECK((answer.status == 0 || answer.status == 2));
+      CHECK(answer.err.find("fault in slipbench") == std::string::npos);
+    }
   }
 }
 

@@ -45,15 +45,19 @@ int analyse_verb(const Request& request) {
   if (!request.map.empty()) return map_of_drive(request, kind);
   std::unique_ptr<OutFile> figure;
   if (!request.figure.empty()) figure = std::make_unique<OutFile>(request.figure);
-  const Analysis a = drive ? analysis_of_drive(request, kind) : of_system_file(request);
-  if (figure) {
-    figure->write(analysis_figure(a));
-    figure->finish();
-  }
-  if (request.json) {
-    print(linear_json(a));
-  } else if (!request.quiet) {
-    print(analysis_report(a) + (figure ? fmt::format("figure: {}\n", request.figure) : ""));
+  try {
+    const Analysis a = drive ? analysis_of_drive(request, kind) : of_system_file(request);
+    if (figure) {
+      figure->write(analysis_figure(a));
+      figure->finish();
+    }
+    if (request.json) {
+      print(linear_json(a));
+    } else if (!request.quiet) {
+      print(analysis_report(a) + (figure ? fmt::format("figure: {}\n", request.figure) : ""));
+    }
+  } catch (const linear::LinearError& error) {
+    throw InputError(request.file, "system", error.what(), "linear");
   }
   return ExitStatus::done;
 }

@@ -1,5 +1,7 @@
 #include "tools/slipbench/analysis.hpp"
 
+#include <algorithm>
+
 #include "plant/linear/zeros.hpp"
 
 namespace slipbench {
@@ -19,7 +21,8 @@ auto tried(F&& make) -> Maybe<decltype(make())> {
 }
 
 void warn(Analysis& a, const std::string& warning) {
-  if (!warning.empty()) a.warnings.push_back(warning);
+  if (!warning.empty() && std::find(a.warnings.begin(), a.warnings.end(), warning) == a.warnings.end())
+    a.warnings.push_back(warning);
 }
 
 }  // namespace
@@ -36,12 +39,15 @@ Analysis analyse(const linear::System& system, double period_s, double at_Hz) {
   a.minimal = tried([&] { return linear::minimal(system); });
   a.balanced = tried([&] { return linear::balanced(system); });
   a.parts = tried([&] { return linear::kalman_form(system); });
+  a.modal = tried([&] { return linear::modal_form(system); });
+  a.gramians = tried([&] { return linear::gramians(system); });
   a.zeros = tried([&] { return linear::transmission_zeros(system); });
   a.dc_gain = tried([&] { return linear::dc_gain(system); });
   warn(a, a.ranks.warning);
   if (a.minimal) warn(a, a.minimal->warning);
   if (a.parts) warn(a, a.parts->warning);
   if (a.balanced) warn(a, a.balanced->warning);
+  if (a.gramians) warn(a, a.gramians->warning);
   if (period_s > 0.0) {
     for (const auto method :
          {linear::Discretisation::zero_order_hold, linear::Discretisation::euler, linear::Discretisation::tustin}) {

@@ -9,6 +9,7 @@
 #include "plant/linear/descriptor.hpp"
 #include "plant/linear/discretise.hpp"
 #include "plant/linear/frequency_response.hpp"
+#include "plant/linear/gramians.hpp"
 #include "plant/linear/minimal.hpp"
 #include "plant/linear/pbh.hpp"
 #include "plant/linear/poles.hpp"
@@ -50,6 +51,8 @@ struct Analysis {
   std::string stabilisable_why, detectable_why;
   Maybe<linear::Minimal> minimal, balanced;
   Maybe<linear::KalmanForm> parts;
+  Maybe<linear::Modal> modal;
+  Maybe<linear::Gramians> gramians;
   Maybe<std::vector<linear::Complex>> zeros;
   Maybe<linear::Matrix> dc_gain;
   std::vector<Maybe<Discretised>> discretised;

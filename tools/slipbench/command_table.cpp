@@ -96,8 +96,9 @@ std::span<const OptionRow> option_rows() {
       {"--model", "constant_speed|unknown_load|known_load", "analyse",
        "with --map speed_observability: what is known of the shaft (constant_speed)", Takes::word},
       {"--estimator", "NAME", "analyse export",
-       "with --map estimator_stability: of the scenario, or a built-in kind (the scenario's first, else luenberger); "
-       "export: this one; repeatable (all estimators and the controller)"},
+       "stability is mapped of this one of the scenario, or of a built-in kind (the scenario's first, else "
+       "luenberger); "
+       "export: write this one; repeatable (all estimators and the controller)"},
       {"--path", "FILE.csv", "analyse", "with --map speed_observability: the run's way through the plane as CSV",
        Takes::file},
       {"--at", "HZ", "analyse design", "gain and phase at this frequency (design: the slowest mode's)", Takes::number},

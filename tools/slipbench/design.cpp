@@ -33,7 +33,11 @@ int design_verb(const Request& request) {
   const DesignResult result = design(read_system_file(request.file, request.overrides), request.at_Hz);
   if (!request.figure.empty()) figure = std::make_unique<OutFile>(request.figure);
   if (figure) {
-    figure->write(design_figure(result));
+    try {
+      figure->write(design_figure(result));
+    } catch (const linear::LinearError& error) {
+      throw InputError(request.file, "design", std::string("no picture: ") + error.what(), "linear");
+    }
     figure->finish();
   }
   if (request.json) {

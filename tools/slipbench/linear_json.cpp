@@ -65,6 +65,13 @@ Json modes(const Analysis& a) {
   return list;
 }
 
+// In other coordinates, x = T z.
+Json form(const linear::System& s, const Matrix& T, double condition) {
+  Json one = matrices(s);
+  one["T"] = matrix(T), one["condition"] = number(condition);
+  return one;
+}
+
 Json discretisations(const Analysis& a) {
   Json list = Json::array();
   for (const auto& d : a.discretised) {
@@ -119,6 +126,14 @@ std::string linear_json(const Analysis& a) {
                   {"controllable_only", a.parts->controllable_only},
                   {"observable_only", a.parts->observable_only},
                   {"neither", a.parts->neither}};
+  d["kalman"] = a.parts ? form(a.parts->system, a.parts->T, a.parts->condition) : Json(nullptr);
+  d["modal"] = a.modal ? form(a.modal->system, a.modal->T, a.modal->condition) : Json(nullptr);
+  if (!a.modal) d["modal_why"] = a.modal.why;
+  d["gramians"] = nullptr;
+  if (a.gramians)
+    d["gramians"] = {{"controllability", matrix(a.gramians->controllability)},
+                     {"observability", matrix(a.gramians->observability)},
+                     {"residual", number(a.gramians->residual)}};
   d["balanced"] = nullptr, d["hankel"] = nullptr;
   if (a.balanced) {
     d["balanced"] = matrices(a.balanced->system);

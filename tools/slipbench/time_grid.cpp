@@ -19,25 +19,32 @@ constexpr Eigen::Index most_steps = 20000, fewest_steps = 400;
 TimeGrid grid_for(const linear::System& s) {
   const auto modes = linear::modes_of(s);
   const double edge = linear::stability_of(s).tolerance;
-  double slowest = 0.0, other = 0.0;
+  double slowest = 0.0, other = 0.0, growing = std::numeric_limits<double>::infinity();
   for (const linear::Mode& m : modes) {
     const double beyond = s.discrete() ? std::abs(m.pole) - 1.0 : m.pole.real();
     if (beyond < -edge && std::isfinite(m.time_constant_s))
       slowest = std::max(slowest, 9.0 * m.time_constant_s);
     else if (beyond > edge)
-      other = std::max(other, 3.0 * std::fabs(m.time_constant_s));
+      growing = std::min(growing, std::fabs(m.time_constant_s));
     else if (m.frequency_rad_s > 0.0 && std::isfinite(m.frequency_rad_s))
       other = std::max(other, 3.0 * 2.0 * pi / m.frequency_rad_s);
   }
   const double fallback = s.discrete() ? 20.0 * s.sample_period_s : 1.0;
-  return grid_for(s, slowest > 0.0 ? slowest : other > 0.0 ? other : fallback);
+  const double wanted = slowest > 0.0            ? slowest
+                        : other > 0.0            ? other
+                        : std::isfinite(growing) ? 6.0 * growing
+                                                 : fallback;
+  return grid_for(s, std::min(wanted, 6.0 * growing));
 }
 
 TimeGrid grid_for(const linear::System& s, double duration_s) {
+  for (const linear::Mode& m : linear::modes_of(s)) {
+    if (m.time_constant_s < 0.0) duration_s = std::min(duration_s, -200.0 * m.time_constant_s);
+  }
   if (s.discrete()) {
     const double steps = std::ceil(duration_s / s.sample_period_s);
     return {s.sample_period_s,
-            std::clamp(static_cast<Eigen::Index>(std::min(steps, 1e6)), Eigen::Index{20}, most_steps)};
+            std::clamp(static_cast<Eigen::Index>(std::min(steps, 1e6)), Eigen::Index{2}, most_steps)};
   }
   double fastest = 0.0;
   for (const linear::Mode& m : linear::modes_of(s)) {

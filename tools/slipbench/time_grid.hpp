@@ -11,8 +11,9 @@ struct TimeGrid {
   [[nodiscard]] double duration_s() const { return step_s * static_cast<double>(steps); }
 };
 
-// Nine time constants of the slowest mode that decays (three periods of one that only swings, three e-foldings of one that grows), the
-// fastest mode resolved where 20000 steps allow. A discrete system is stepped at its period.
+// Nine time constants of the slowest mode that decays (three periods of one that only swings), but six e-foldings at most of one that
+// grows; the fastest mode resolved where 20000 steps allow. A discrete system is stepped at its period. A duration asked for is cut to 200
+// e-foldings: beyond that nothing is left to see, and a double soon overflows.
 TimeGrid grid_for(const linear::System& system);
 TimeGrid grid_for(const linear::System& system, double duration_s);
 

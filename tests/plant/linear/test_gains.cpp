@@ -47,6 +47,8 @@ TEST_CASE("pole placement, discrete: double integrator of Franklin, Powell, Work
   CHECK(relative(place(s, {{.8, .25}, {.8, -.25}}).K, rows({{10.25, 3.4875}})) < few_roundings);
   const auto dead = place(s, {0, 0});
   CHECK(relative(dead.K, rows({{100, 15}})) < few_roundings);
+  CHECK(dead.residual <
+        1e-4);  // the double pole splits by the root of the rounding of 100, 1e-7, against 1e-3 of the pole at 1
   const Matrix closed = s.A - s.B * dead.K;
   CHECK((closed * closed).norm() < 1e-12);  // at rest in two steps; gains of 100 times rounding
 }
@@ -129,6 +131,21 @@ TEST_CASE("pole placement: a mode that no input moves must be wished, or is name
              Contains("lacks its conjugate -1 - 1j"));
   CHECK_THAT(refusal([&] { place(seen_whole(A, Matrix::Identity(3, 3)), {-2, -3}); }), Contains("2 poles were wished"));
   CHECK(place(seen_whole(Matrix(0, 0), Matrix(0, 2)), {}).K.rows() == 2);
+}
+
+// Two modes 1e-10 apart by one input: the exact gain is of 6e10, so that rounding of A - B K, 1e-5, moves its poles by hundreds.
+TEST_CASE("pole placement: where rounding would place the poles it is refused with the mode", "[plant][linear]") {
+  const Matrix A = diagonal({1, 1 + 1e-10});
+  CHECK_THAT(refusal([&] {
+               place(seen_whole(A, rows({{1}, {1}})), {-1, -2});
+             }),
+             Contains("the mode at 1 is all but uncontrollable") && Contains("off the wish"));
+  CHECK_THAT(refusal([&] {
+               observer_by_poles(system_of(A, Matrix::Zero(2, 1), rows({{1, 1}})), {-1, -2});
+             }),
+             Contains("the mode at 1 is all but unobservable"));
+  // 1e-4 apart the gain of 6e4 rounds to 1e-11, and poles move by some 1e-6 at most.
+  CHECK(place(seen_whole(diagonal({1, 1 + 1e-4}), rows({{1}, {1}})), {-1, -2}).residual < 1e-5);
 }
 
 TEST_CASE("regulator: what can't be had is refused with the mode", "[plant][linear]") {

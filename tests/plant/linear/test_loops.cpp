@@ -171,6 +171,24 @@ TEST_CASE("step figures: oscillator of second order in closed form", "[plant][li
   CHECK(lagging.steady_error == Approx(1 - .8 * (1 - std::exp(-5.0))).epsilon(1e-12));
 }
 
+TEST_CASE("step figures: a discrete system's are its samples'", "[plant][linear]") {
+  // Dead beat, 0, 1, 1, 1, ...: nothing lies beyond; from 10 % to 90 % within one sample, inside +-2 % from the first on.
+  const System dead{rows({{0}}), rows({{1}}), rows({{1}}), rows({{0}}), 0.1, {}, {}, {}};
+  const auto f = step_figures(step_response(dead, 0, 0, 30), 0, 1.0, 1.0);
+  CHECK(f.overshoot == 0.0);
+  CHECK(f.peak_time_s == 0.1);
+  CHECK(f.rise_s == 0.0);
+  CHECK(f.settling_s == 0.1);
+  // y[k] = 1 - 2^-k by hand: 10 % from k = 1, 90 % from k = 4, within 2 % from k = 6.
+  const System half{rows({{.5}}), rows({{.5}}), rows({{1}}), rows({{0}}), 1.0, {}, {}, {}};
+  const auto slow = step_figures(step_response(half, 0, 0, 60), 0, 1.0, 1.0);
+  CHECK(slow.rise_s == 3.0);
+  CHECK(slow.settling_s == 6.0);
+  // y = 0, 1.5, 0.75, 1.125, ... (pole -1/2, by hand): half of the way too far.
+  const System swings{rows({{-.5}}), rows({{1.5}}), rows({{1}}), rows({{0}}), 1.0, {}, {}, {}};
+  CHECK(step_figures(step_response(swings, 0, 0, 60), 0, 1.0, 1.0).overshoot == Approx(.5).epsilon(1e-15));
+}
+
 TEST_CASE("frequency response: closed forms, poles refused, phase followed", "[plant][linear]") {
   // 1 / (s + 1)^3 in companion form.
   const System s{rows({{0, 1, 0}, {0, 0, 1}, {-1, -3, -3}}),
