@@ -67,6 +67,8 @@ CurrentFlux<Real> period_ahead(const CurrentFluxModel<Real>& m, const CurrentFlu
   CurrentFlux<Real> sum = x;
   for (int n = 1; n <= 6; ++n) {
     term = (m.period * Real(1.0 / n)) * term;
+    label_alpha_beta("i_term", term.current);
+    label_alpha_beta("psi_term", term.flux);
     sum = sum + term;
     if (n < 6) term = unforced(m, term, w_r);
   }
