@@ -7,6 +7,7 @@
 //     static constexpr std::array<Setting, n> settings;
 //     template <class Real> struct Constants { ...; SLIPBENCH_FIELDS(...) };
 //     template <class Real> struct State { ...; SLIPBENCH_FIELDS(...) };
+//     static constexpr std::string_view state_note;   // its units, for exported code; may be left out
 //     static Constants<double> prepare(const ControllerSetup&, const Settings&);
 //     static State<double> begin(const ControllerSetup&, const Constants<double>&);
 //     template <class Real>

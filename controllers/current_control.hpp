@@ -45,14 +45,20 @@ Real voltage_limit(const CurrentConstants<Real>& c, const Real& dc_link) {
 template <class Real>
 VoltageCommand<Real> control_current(CurrentState<Real>& s, const CurrentConstants<Real>& c, const RotorFrame<Real>& f,
                                      const Vec2<Real>& reference, const Real& limit, const Real& dc_link) {
+  section<Real>("u = k_p (i_ref - i) + x + j w_s L_sigma i + e,  e = (j p w_m - 1/tau_r) (L_m/L_r) psi");
   const Vec2<Real> error = reference - f.current;
   const Real emf = c.flux_ratio * f.flux, drop = f.stator_frequency * c.leakage;
   const Vec2<Real> forward{-drop * f.current.y - c.rotor_rate * emf, drop * f.current.x + f.electrical_speed * emf};
   const Vec2<Real> wanted = c.k_p * error + s.integral + forward;
   s.asked = magnitude(wanted);
+  label_d_q("error", error);
+  SLIPBENCH_LABEL(emf, drop)
+  label_d_q("wanted", wanted);
 
   const VoltageCommand<Real> out = command_voltage(s.commanded, c.legs, f, wanted, reference, limit, dc_link);
+  section<Real>("x' = k_i (i_ref - i + (u_applied - u) / k_p), held within the circle");
   const Vec2<Real> integral = s.integral + c.k_i_period * error + c.back * out.missing;
+  label_d_q("integral", integral);
   s.integral = {clamp(integral.x, -limit, limit), clamp(integral.y, -limit, limit)};
   return out;
 }

@@ -65,6 +65,7 @@ struct FluxCommand {
 template <class Real>
 FluxCommand<Real> control_flux(FluxState<Real>& s, const FluxConstants<Real>& c, const RotorFrame<Real>& f,
                                const Real& voltage_limit, const Vec2<Real>& last, const Real& asked) {
+  section<Real>("psi_ref = min(psi_limit, trim L_m i_d,max), filtered;  trim' = alpha_flux / 4 (u_1 - |u|) / U");
   const Real zero(0.0), one(1.0), fifth(0.2);
   const Real reachable = Real(0.5) * (one + c.margin) * voltage_limit;
   const Real room_left = clamp((reachable - asked) / max(voltage_limit, Real(1e-3)), -fifth, fifth);
@@ -73,10 +74,17 @@ FluxCommand<Real> control_flux(FluxState<Real>& s, const FluxConstants<Real>& c,
   s.reference = s.reference + c.filter * (allowed - s.reference);
   s.magnetised = select(f.flux < c.magnetised_share * s.reference, s.magnetised, one);
 
+  SLIPBENCH_LABEL(reachable, room_left, allowed)
+  label("trim", s.trim);
+  label("psi_reference", s.reference);
+  label("magnetised", s.magnetised);
+  section<Real>("i_d = (psi_ref + g (psi_ref - psi)) / L_m");
   FluxCommand<Real> out;
   const Real wanted = (s.reference + c.flux_gain * (s.reference - f.flux)) / c.L_m;
   out.i_d = clamp(wanted, c.least_i_d, c.current_limit);
+  label("i_d_reference", out.i_d);
 
+  section<Real>("|i_q| at most what current limit, pull-out and voltage leave");
   const Real by_current = sqrt(max(square(c.current_limit) - square(out.i_d), zero));
   const Real w = max(fabs(f.stator_frequency), c.frequency_floor), reactance = w * c.leakage;
   const Real pull_out = Real(0.70710678118654752440) * c.margin * voltage_limit / reactance;
@@ -86,6 +94,9 @@ FluxCommand<Real> control_flux(FluxState<Real>& s, const FluxConstants<Real>& c,
   const Real by_voltage = (sqrt(room) - along) / impedance2;
   const Real by_speed = max(min(pull_out, by_voltage), Real(0.1) * c.current_limit);
   out.i_q_limit = select(s.magnetised > Real(0.5), min(by_current, by_speed), zero);
+  label("back_emf", emf);
+  SLIPBENCH_LABEL(by_current, w, reactance, pull_out, impedance2, along, room, by_voltage, by_speed)
+  label("i_q_limit", out.i_q_limit);
   return out;
 }
 

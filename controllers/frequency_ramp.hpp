@@ -30,12 +30,16 @@ struct FrequencyRampConstants {
 template <class Real>
 Real step_frequency(Real& frequency, const FrequencyRampConstants<Real>& c, const Real& speed_reference,
                     const Real& current, const Real& i_y, const MaskOf<Real>& hold) {
+  section<Real>("w' = clamp(p w_ref - w, +-r) room - w_l y,  y = sgn(i_y) max(|i| - I, 0) / (di/dw_slip)");
   const Real zero(0.0), one(1.0);
   const Real room = clamp((c.limit - current) * c.per_fifth, zero, one);
   const Real step = clamp(c.pole_pairs * speed_reference - frequency, -c.most_step, c.most_step);
   const Real taken = select(zero < step * i_y, room * step, step);
   const Real excess = sat(Real(2.0) * c.per_fifth * i_y) * c.slip_per_ampere * max(current - c.limit, zero);
   frequency = frequency + select(hold, zero, taken - c.give_way * excess);
+  label("ramp_step", step);
+  SLIPBENCH_LABEL(room, taken, excess)
+  label("frequency", frequency);
   return c.at_once * excess;
 }
 

@@ -43,9 +43,12 @@ struct LoadPoint {
 // `flux2`: psi^2, above zero.
 template <class Real>
 LoadPoint<Real> load_point(const HeldFluxConstants<Real>& c, const Real& torque, const Real& flux2) {
+  section<Real>("slip and i_x from the torque: m = T / T_po,  y = m / (1 + sqrt(1 - m^2))");
   const Real one(1.0), most(0.95);
   const Real m = clamp(torque * c.per_pull_out / flux2, -most, most);
   const Real y = m / (one + sqrt(one - square(m)));
+  label("torque_share", m);
+  label("slip_share", y);
   return {y * c.per_sigma_tau, c.per_inductance * (c.sigma + square(y)) / (c.sigma * (one + square(y)))};
 }
 

@@ -53,18 +53,29 @@ struct LegCommand {
 template <class Real>
 LegCommand<Real> command_legs(const LegConstants<Real>& c, const SinCos<Real>& angle, const Real& stator_frequency,
                               const Vec2<Real>& frame_voltage, const Vec2<Real>& frame_current, const Real& dc_link) {
+  section<Real>("frame in the middle of the period in which the voltage acts: angle + w_s (d + 1/2) T");
   LegCommand<Real> out;
   const SinCos<Real> ahead = sincos(stator_frequency * c.advance);
   out.middle = {angle.sin * ahead.cos + angle.cos * ahead.sin, angle.cos * ahead.cos - angle.sin * ahead.sin};
+  label("middle_sin", out.middle.sin);
+  label("middle_cos", out.middle.cos);
+  section<Real>("duties: leg errors believed at the expected current added back, then modulation");
   const Vec2<Real> voltage = turn_forward(out.middle, frame_voltage);
   const Phases<Real> current = phases_of(turn_forward(out.middle, frame_current));
   const auto leg_error_at = [&](const Phases<Real>& duty) {
     return clarke(leg_errors(c.believed, current, duty, dc_link));
   };
+  label_alpha_beta("voltage", voltage);
+  label_phases("i", current);
   const Vec2<Real> raised = voltage - leg_error_at(modulate(c.modulation, voltage, dc_link));
   out.duty = modulate(c.modulation, raised, dc_link);
+  label_alpha_beta("raised", raised);
+  label_phases("duty", out.duty);
+  section<Real>("what these duties really give, as believed");
   out.applied = applied_voltage(out.duty, dc_link) + leg_error_at(out.duty);
   out.by_rails = applied_voltage(out.duty, dc_link) - raised;
+  label_alpha_beta("applied", out.applied);
+  label_alpha_beta("by_rails", out.by_rails);
   return out;
 }
 
@@ -72,6 +83,7 @@ LegCommand<Real> command_legs(const LegConstants<Real>& c, const SinCos<Real>& a
 // a tied leg that changes, the compensation is off by that leg's dead time.)
 template <class Real>
 Real clipped_by(const Vec2<Real>& by_circle, const Vec2<Real>& by_rails, const Real& limit) {
+  section<Real>("clipped: circle or rails cut more than rounding leaves");
   const Real cut = max(dot(by_circle, by_circle), dot(by_rails, by_rails));
   return select(cut > square(Real(1e-4) * limit), Real(1.0), Real(0.0));
 }

@@ -34,6 +34,7 @@ struct MagnetiseState {
 template <class Real>
 Vec2<Real> magnetise(MagnetiseState<Real>& s, const MagnetiseConstants<Real>& c, const Vec2<Real>& current,
                      const Real& speed_reference) {
+  section<Real>("magnetising at rest: u = R_s i* + k_p (i* - i) + x");
   const Real zero(0.0), one(1.0);
   s.flux = s.flux + c.approach * (c.L_m * current.x - s.flux);
   const MaskOf<Real> waits = fabs(speed_reference) <= zero;
@@ -41,6 +42,10 @@ Vec2<Real> magnetise(MagnetiseState<Real>& s, const MagnetiseConstants<Real>& c,
   const Real wanted = clamp((c.flux + c.push * (c.flux - s.flux)) / c.L_m, zero, c.limit);
   const Vec2<Real> error{wanted - current.x, -current.y};
   s.integral = select(s.done < Real(0.5), s.integral + c.k_i_period * error, s.integral);
+  label("magnetising_flux", s.flux);
+  label("magnetised", s.done);
+  label("magnetising_current", wanted);
+  SLIPBENCH_LABEL(waits)
   return Vec2<Real>{c.R_s * wanted, zero} + c.k_p * error + s.integral;
 }
 

@@ -56,6 +56,7 @@ struct RotorFrame {
 template <class Real>
 RotorFrame<Real> orient(OrientationState<Real>& s, const OrientationConstants<Real>& c, const Measurement<Real>& m,
                         const Vec2<Real>& applied, const MaskOf<Real>& first) {
+  section<Real>("psi(k) = e^{j p w_mean T} (a psi(k-1) + b_before i(k-1)) + b_now i(k) + bow of the current");
   const SinCos<Real> turned = sincos(c.half_turn_time * (s.speed + m.speed));
   const Vec2<Real> moved = turn_forward(turned, c.keep * s.rotor_flux + c.before * s.current) + c.now * m.current +
                            (c.bow * s.stator_frequency) * quarter_turn(applied);
@@ -63,6 +64,9 @@ RotorFrame<Real> orient(OrientationState<Real>& s, const OrientationConstants<Re
   s.current = m.current;
   s.speed = m.speed;
 
+  label_alpha_beta("psi", s.rotor_flux);
+
+  section<Real>("frame: direction of the flux (the model's, or an estimator's), currents seen from it");
   const Real tiny(1e-9), zero(0.0), one(1.0);
   const Real modelled = magnitude(s.rotor_flux), per_flux = one / max(modelled, tiny);
   const MaskOf<Real> lost = modelled < tiny;
@@ -76,9 +80,18 @@ RotorFrame<Real> orient(OrientationState<Real>& s, const OrientationConstants<Re
   f.flux = select(direct, m.rotor_flux, modelled);
   f.divisor_flux = max(f.flux, c.flux_floor);
   f.current = turn_back(f.angle, m.current);
+  label("frame_sin", f.angle.sin);
+  label("frame_cos", f.angle.cos);
+  label("psi_length", f.flux);
+  label("psi_divisor", f.divisor_flux);
+  label_d_q("i", f.current);
+  SLIPBENCH_LABEL(per_flux, lost)
+  section<Real>("w_s = p w_m + R_r L_m i_q / (L_r psi)");
   f.electrical_speed = c.pole_pairs * m.speed;
   f.stator_frequency = f.electrical_speed + c.slip_gain * f.current.y / f.divisor_flux;
   s.stator_frequency = f.stator_frequency;
+  label("electrical_speed", f.electrical_speed);
+  label("w_s", f.stator_frequency);
   return f;
 }
 

@@ -25,6 +25,7 @@ namespace slipbench {
 template <class Real, class State, class Constants>
 Real follow_speed_and_flux(State& s, const Constants& c, const Measurement<Real>& m, const RotorFrame<Real>& frame,
                            const Real& limit, const Real& asked, const MaskOf<Real>& first) {
+  section<Real>("first tick: current, speed and torque taken over as they are");
   s.started = Real(1.0);
   s.current_reference = select(first, frame.current, s.current_reference);
   s.speed.reference = select(first, m.speed, s.speed.reference);
@@ -34,8 +35,12 @@ Real follow_speed_and_flux(State& s, const Constants& c, const Measurement<Real>
   const FluxCommand<Real> d = control_flux(s.flux, c.flux, frame, limit, s.current_reference, asked);
   const Real per_ampere = c.torque_per_ampere * frame.divisor_flux;
   const MaskOf<Real> hold = s.flux.magnetised < Real(0.5);
+  SLIPBENCH_LABEL(per_ampere, hold)
   const Real torque = control_speed(s.speed, c.speed, m, per_ampere * d.i_q_limit, hold);
+  section<Real>("i_q = T / (3/2 p (L_m/L_r) psi)");
   s.current_reference = {d.i_d, torque / per_ampere};
+  label("torque_reference", torque);
+  label_d_q("i_reference", s.current_reference);
   return torque;
 }
 
@@ -79,6 +84,11 @@ struct RotorFluxOriented {
     SLIPBENCH_FIELDS(orientation, flux, speed, current, current_reference, started)
   };
 
+  static constexpr std::string_view state_note =
+      "Orientation: _x alpha, _y beta, Wb, A, mechanical rad/s; current_integral V and current_reference A: _x d, _y "
+      "q; "
+      "current_commanded: V, alpha-beta, of this tick and those before; speed_integral N m.";
+
   // Throws std::invalid_argument for a delay outside 0..2 periods and for data without which no gain exists.
   static Constants<double> prepare(const ControllerSetup& setup, const Settings& given);
   static State<double> begin(const ControllerSetup& setup, const Constants<double>& c);
@@ -91,11 +101,15 @@ struct RotorFluxOriented {
   template <class Real>
   static Command<Real> step(State<Real>& s, const Measurement<Real>& m, const Constants<Real>& c) {
     const MaskOf<Real> first = s.started < Real(0.5);
+    SLIPBENCH_LABEL(first)
     const Vec2<Real> applied = applied_before(s.current.commanded, c.current.delay);
     const RotorFrame<Real> frame = orient(s.orientation, c.orientation, m, applied, first);
 
+    section<Real>("first tick: x = R i");
     s.current.integral = select(first, c.current.resistance * frame.current, s.current.integral);
+    section<Real>("U: linear limit of the modulation times the DC link, less what dead time takes");
     const Real limit = voltage_limit(c.current, m.dc_link);
+    label("voltage_limit", limit);
     const Real torque = follow_speed_and_flux(s, c, m, frame, limit, s.current.asked, first);
     const VoltageCommand<Real> u = control_current(s.current, c.current, frame, s.current_reference, limit, m.dc_link);
     Command<Real> out;

@@ -39,17 +39,28 @@ struct SpeedState {
 template <class Real>
 Real control_speed(SpeedState<Real>& s, const SpeedConstants<Real>& c, const Measurement<Real>& m,
                    const Real& torque_limit, const MaskOf<Real>& hold) {
+  section<Real>("shaped reference: w_f' = clamp((w_ref - w_f) / T_f, +-T_limit / J)");
   const Real most = torque_limit * c.per_inertia_rate;
   const Real step = clamp(c.reference_share * (m.speed_reference - s.reference), -most, most);
   const Real before = select(hold, m.speed, s.reference);
   const Real rise = select(hold, Real(0.0), step);
   s.reference = before + rise;
 
+  label("torque_limit", torque_limit);
+  label("speed_step", step);
+  label("rise", rise);
+  label("speed_shaped", s.reference);
+
+  section<Real>("T = k_p e + x + J w_f', limited;  x' = k_i (e + (T_limited - T) / k_p)");
   const Real error = before - m.speed;
   const Real wanted = c.k_p * error + s.integral + c.inertia_rate * rise;
   const Real limited = clamp(wanted, -torque_limit, torque_limit);
   const MaskOf<Real> enabled = c.enabled > Real(0.5);
   const Real integral = s.integral + c.k_i_period * error + c.back * (limited - wanted);
+  label("speed_error", error);
+  label("torque_wanted", wanted);
+  label("torque_limited", limited);
+  label("speed_integral", integral);
   s.integral = select(enabled, clamp(integral, -torque_limit, torque_limit), Real(0.0));
   return select(enabled, limited, clamp(m.torque_reference, -torque_limit, torque_limit));
 }

@@ -56,9 +56,15 @@ template <class Real>
 VoltageCommand<Real> control_current(StateCurrentState<Real>& s, const StateCurrentConstants<Real>& c,
                                      const RotorFrame<Real>& f, const Vec2<Real>& flux, const Vec2<Real>& measured,
                                      const Vec2<Real>& reference, const Real& limit, const Real& dc_link) {
+  section<Real>("K, K_I, N at |w_r|: straight lines between the points; mirrored where the speed is negative");
   const Real turn = sign(f.electrical_speed);
   const auto mirror = [&](const Vec2<Real>& x) { return Vec2<Real>{x.x, turn * x.y}; };
   const std::array<Real, scheduled_gains> gains = at(c.gains, fabs(f.electrical_speed));
+  SLIPBENCH_LABEL(turn)
+  label_each("K_d", &gains[0], feedback_columns);
+  label_each("K_q", &gains[feedback_columns], feedback_columns);
+  label_each("K_I", &gains[2 * feedback_columns], 4);
+  label_each("N", &gains[2 * feedback_columns + 4], 4);
   // Two rows of `gains` from `first` on, times a vector of pairs.
   const auto times = [&]<std::size_t pairs>(std::size_t first, const std::array<Vec2<Real>, pairs>& x) {
     std::array<Real, 2> y{};
@@ -74,16 +80,24 @@ VoltageCommand<Real> control_current(StateCurrentState<Real>& s, const StateCurr
   using All = std::array<Vec2<Real>, 4>;
   constexpr std::size_t integral_rows = 2 * feedback_columns, reference_rows = integral_rows + 4;
 
+  section<Real>("u = N i_ref - K x + z + j w_slip L_sigma i,  x = (i, psi, v(k-1), v(k-2))");
   const Vec2<Real> error = reference - measured;
   const Vec2<Real> fed_back = times(0, All{mirror(f.current), mirror(flux), mirror(s.given[0]), mirror(s.given[1])});
   const Vec2<Real> slip_drop = ((f.stator_frequency - f.electrical_speed) * c.leakage) * quarter_turn(f.current);
   const Vec2<Real> wanted = times(reference_rows, One{mirror(reference)}) - fed_back + s.integral + slip_drop;
   s.asked = magnitude(wanted);
+  label_d_q("error", error);
+  label_d_q("fed_back", fed_back);
+  label_d_q("slip_drop", slip_drop);
+  label_d_q("wanted", wanted);
 
   const VoltageCommand<Real> out = command_voltage(s.commanded, c.legs, f, wanted, reference, limit, dc_link);
+  section<Real>("v = u_given - j w_slip L_sigma i;  z = z + K_I (i_ref - i) + a (u_given - u), held within the circle");
   s.given = {out.given - slip_drop, s.given[0]};
   const Vec2<Real> grown = times(integral_rows, One{mirror(error)}) + c.back * out.missing;
   const Vec2<Real> integral = s.integral + c.integral_action * grown;
+  label_d_q("grown", grown);
+  label_d_q("integral", integral);
   s.integral = {clamp(integral.x, -limit, limit), clamp(integral.y, -limit, limit)};
   return out;
 }

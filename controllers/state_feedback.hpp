@@ -82,17 +82,25 @@ struct StateFeedback {
     SLIPBENCH_FIELDS(orientation, flux, speed, current, observer, current_reference, started)
   };
 
+  static constexpr std::string_view state_note =
+      "Orientation and observer: _x alpha, _y beta, Wb, A (orientation_speed mechanical, observer_speed electrical "
+      "rad/s); current_integral, current_given V and current_reference A: _x d, _y q; current_commanded: V, "
+      "alpha-beta, of this tick and those before; speed_integral N m.";
+
   // Throws std::invalid_argument as RotorFluxOriented, for given gains that do not fit, and where no gain can be designed.
   static Constants<double> prepare(const ControllerSetup& setup, const Settings& given);
   static State<double> begin(const ControllerSetup& setup, const Constants<double>& c);
 
   template <class Real>
   static Command<Real> step(State<Real>& s, const Measurement<Real>& m, const Constants<Real>& c) {
-    const MaskOf<Real> first = s.started<Real(0.5), observed = c.observed> Real(0.5);
+    const Real half(0.5);
+    const MaskOf<Real> first = s.started < half, observed = half < c.observed;
+    SLIPBENCH_LABEL(first)
     const Vec2<Real> applied = applied_before(s.current.commanded, c.current.delay);
     observe(s.observer, c.observer, applied, m.current, c.orientation.pole_pairs * m.speed, first);
     s.orientation.rotor_flux = select(observed, s.observer.x.flux, s.orientation.rotor_flux);
     RotorFrame<Real> frame = orient(s.orientation, c.orientation, m, applied, first | observed);
+    section<Real>("current and flux that are fed back: the observer's, or as measured and modelled; w_s by them");
     const Vec2<Real> measured = frame.current;
     frame.current = select(observed, turn_back(frame.angle, s.observer.x.current), measured);
     const Real slip = c.orientation.slip_gain * frame.current.y / frame.divisor_flux;
@@ -100,10 +108,18 @@ struct StateFeedback {
     s.orientation.stator_frequency = frame.stator_frequency;
     const Vec2<Real> flux =
         select(observed, turn_back(frame.angle, s.observer.x.flux), Vec2<Real>{frame.flux, Real(0.0)});
+    label_d_q("i_fed_back", frame.current);
+    label_d_q("psi_fed_back", flux);
+    label("w_slip", slip);
+    label("w_s_fed_back", frame.stator_frequency);
 
+    section<Real>("first tick: voltages on their way are those that hold current and flux");
     const Vec2<Real> holding = holding_voltage(c.current, frame);
     for (Vec2<Real>& u : s.current.given) u = select(first, holding, u);
+    label_d_q("holding", holding);
+    section<Real>("U: linear limit of the modulation times the DC link, less what dead time takes");
     const Real limit = voltage_limit(c.current.legs, m.dc_link);
+    label("voltage_limit", limit);
     const Real torque = follow_speed_and_flux(s, c, m, frame, limit, s.current.asked, first);
     const VoltageCommand<Real> u =
         control_current(s.current, c.current, frame, flux, measured, s.current_reference, limit, m.dc_link);

@@ -32,14 +32,20 @@ template <class Real>
 VoltageCommand<Real> command_voltage(CommandedVoltages<Real>& commanded, const LegConstants<Real>& c,
                                      const RotorFrame<Real>& f, const Vec2<Real>& wanted, const Vec2<Real>& reference,
                                      const Real& limit, const Real& dc_link) {
+  section<Real>("voltage limit: d first, up to 0.9 of the circle, q takes the rest");
   const Real most_d = Real(0.9) * limit, u_d = clamp(wanted.x, -most_d, most_d);
   const Real most_q = sqrt(max(square(limit) - square(u_d), Real(0.0)));
   const Vec2<Real> limited{u_d, clamp(wanted.y, -most_q, most_q)};
+  SLIPBENCH_LABEL(most_d, most_q)
+  label_d_q("u", limited);
 
   const LegCommand<Real> legs = command_legs(c, f.angle, f.stator_frequency, limited, reference, dc_link);
   commanded = {legs.applied, commanded[0], commanded[1]};
-  const Vec2<Real> given = turn_back(legs.middle, legs.applied);
-  return {legs.duty, clipped_by(limited - wanted, legs.by_rails, limit), given, given - wanted};
+  section<Real>("what they give seen from the frame, and what is missing of the voltage wanted");
+  const Vec2<Real> given = turn_back(legs.middle, legs.applied), missing = given - wanted;
+  label_d_q("given", given);
+  label_d_q("missing", missing);
+  return {legs.duty, clipped_by(limited - wanted, legs.by_rails, limit), given, missing};
 }
 
 }  // namespace slipbench

@@ -81,6 +81,9 @@ struct VoltsPerHertz {
                      started)
   };
 
+  static constexpr std::string_view state_note =
+      "angle rad; frequency, stator_frequency, slip electrical rad/s; flux Wb (stator, peak); current A in the frame.";
+
   // Throws std::invalid_argument for a delay outside 0..2 periods, torque control, and data without which no gain exists.
   static Constants<double> prepare(const ControllerSetup& setup, const Settings& given);
   static State<double> begin(const ControllerSetup& setup, const Constants<double>& c);
@@ -90,6 +93,8 @@ struct VoltsPerHertz {
     const Real zero(0.0), one(1.0), half(0.5);
     const MaskOf<Real> first = s.started < half;
     s.started = one;
+    SLIPBENCH_LABEL(first)
+    section<Real>("frame: its x axis is where the stator flux shall lie; currents seen from it, filtered");
     // A machine that is taken over has its rotor flux along alpha; its stator flux follows from the current.
     const Vec2<Real> found = c.leakage * m.current + Vec2<Real>{c.rotor_share * c.start_flux, zero};
     s.angle = select(first, select(zero < c.start_flux, atan2(found.y, found.x), zero), s.angle);
@@ -98,22 +103,41 @@ struct VoltsPerHertz {
     s.current = select(first, current, s.current + c.filter * (current - s.current));
     s.slow_i_y = select(first, current.y, s.slow_i_y + c.slow_filter * (current.y - s.slow_i_y));
 
+    label_d_q("i", current);
+    label_d_q("i_filtered", s.current);
+    label("i_q_slow", s.slow_i_y);
+
+    section<Real>("T = 3/2 p Im(conj(psi_hat) i),  psi_hat = psi + j (1 - b) R_s i / w_e");
     const LoadPoint<Real> load = load_point_of(s, c);
+    label("slip_of_load", load.slip);
     s.slip = select(first, load.slip, s.slip + c.slip_filter * (load.slip - s.slip));
     const Vec2<Real> standing = magnetise(s.magnetise, c.magnetise, current, m.speed_reference);
     const MaskOf<Real> hold = s.magnetise.done < half;
+    label("slip", s.slip);
+    SLIPBENCH_LABEL(hold)
     const Real excess = step_frequency(s.frequency, c.ramp, m.speed_reference, magnitude(m.current), current.y, hold);
+    section<Real>("w_e = w + s w_slip - k_d (i_y - i_y,slow), less what the current limit takes");
     const Real damped = clamp(c.damping * (current.y - s.slow_i_y), -c.most_damping, c.most_damping);
     s.stator_frequency = select(hold, zero, s.frequency + c.slip_share * s.slip - damped - excess);
 
+    SLIPBENCH_LABEL(damped)
+    label("w_e", s.stator_frequency);
+
+    section<Real>("psi <= (sqrt(U^2 - u_x^2) - sgn(w) b R_s i_y) / |w_e|");
     const Real limit = voltage_limit(c.legs, m.dc_link);
+    label("voltage_limit", limit);
     s.flux = reachable_flux(s, c, limit);
+    label("psi", s.flux);
+    section<Real>("u = b R_s (i_x + j i_y) + j w_e psi, within the circle");
     s.i_x_per_flux = load.i_x_per_flux;
     const Vec2<Real> turning{c.boost * load.i_x_per_flux * s.flux, c.boost * s.current.y + s.stator_frequency * s.flux};
     const Vec2<Real> wanted = select(hold, standing, turning);
     const Vec2<Real> limited = min(one, limit / max(magnitude(wanted), Real(1e-3))) * wanted;
+    label_d_q("wanted", wanted);
+    label_d_q("u", limited);
     const LegCommand<Real> legs = command_legs(c.legs, angle, s.stator_frequency, limited, current, m.dc_link);
 
+    section<Real>("angle(k+1) = angle + T w_e, within half a turn");
     const Real turned = s.angle + c.period * s.stator_frequency, turn(6.28318530717958647692);
     s.angle = turned - turn * floor(turned / turn + half);
     Command<Real> out;

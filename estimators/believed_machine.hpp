@@ -77,23 +77,41 @@ struct Ahead {
 template <class Real>
 Ahead<Real> ahead(const BelievedMachine<Real>& m, const CurrentAndFlux<Real>& x, const Vec2<Real>& voltage,
                   const Real& w_r) {
+  section<Real>("L_sigma di/dt = u - R_s i - dpsi/dt,  dpsi/dt = R_R i - (alpha - j w_r) psi");
   CurrentAndFlux<Real> f = unforced(m, x, w_r);
   f.current = f.current + m.per_L_sigma * voltage;
+  label_alpha_beta("di_dt", f.current);
+  label_alpha_beta("dpsi_dt", f.flux);
+  section<Real>("second and third derivative: f2 = A f, f3 = A f2");
   const CurrentAndFlux<Real> f2 = unforced(m, f, w_r), f3 = unforced(m, f2, w_r);
   const Real third = Real(1.0 / 3.0) * m.period, half = Real(0.5) * m.period;
-  return {x + m.period * (f + half * (f2 + third * f3)), f, f2, f3};
+  label_alpha_beta("f2_i", f2.current);
+  label_alpha_beta("f2_psi", f2.flux);
+  label_alpha_beta("f3_i", f3.current);
+  label_alpha_beta("f3_psi", f3.flux);
+  section<Real>("state a period ahead: x + T (f + T/2 (f2 + T/3 f3))");
+  const CurrentAndFlux<Real> state = x + m.period * (f + half * (f2 + third * f3));
+  label_alpha_beta("i_ahead", state.current);
+  label_alpha_beta("psi_ahead", state.flux);
+  return {state, f, f2, f3};
 }
 
 // Fills the fields that follow from flux, current and electrical speed.
 template <class Real>
 Estimate<Real> estimate_of(const BelievedMachine<Real>& m, const Vec2<Real>& flux, const Vec2<Real>& current,
                            const Real& w_r) {
+  section<Real>("estimates: speed = w_r / p, flux and angle of psi, torque = 3/2 p Im(conj(psi) i)");
   Estimate<Real> out;
   out.speed = w_r / m.pole_pairs;
-  out.rotor_flux = m.per_flux_ratio * magnitude(flux);
+  const Real length = magnitude(flux);
+  label("psi_length", length);
+  out.rotor_flux = m.per_flux_ratio * length;
   const Real angle = atan2(flux.y, flux.x), pi(0.5 * rad_per_turn);
   out.rotor_flux_angle = select(angle < pi, angle, -angle);
   out.torque = m.torque_factor * cross(flux, current);
+  label("speed_mechanical", out.speed);
+  label("angle_atan2", angle);
+  label("psi_angle", out.rotor_flux_angle);
   return out;
 }
 
@@ -102,8 +120,10 @@ Estimate<Real> estimate_of(const BelievedMachine<Real>& m, const Vec2<Real>& flu
 // currents.
 template <class Real>
 Real trust_by_frequency(const BelievedMachine<Real>& m, const Vec2<Real>& flux, const Real& w_s) {
+  section<Real>("trust = share of nominal flux times w_s^2 / (w_s^2 + w_1^2)");
   const Real known = min(Real(2.0) * m.per_nominal_flux * magnitude(flux), Real(1.0));
   const Real w_s2 = w_s * w_s;
+  SLIPBENCH_LABEL(known, w_s2)
   return known * w_s2 / (w_s2 + Real(0.25 * rad_per_turn * rad_per_turn));
 }
 

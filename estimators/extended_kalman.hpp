@@ -81,6 +81,11 @@ struct ExtendedKalman {
 
   static constexpr std::array<std::size_t, 6> start_kind{0, 0, 1, 1, 2, 3};  // which start_deviation a state has
 
+  static constexpr std::string_view state_note =
+      "x_current A, x_flux Wb (psi_R, peak; _x alpha, _y beta), x_speed electrical rad/s, x_load_torque N m; P_entryRC "
+      "their "
+      "covariance in that order.";
+
   static Constants<double> prepare(const EstimatorSetup& setup, const Settings& given);
   static State<double> begin(const EstimatorSetup& setup, const Constants<double>& c);
 
@@ -89,8 +94,10 @@ struct ExtendedKalman {
   static void predict(KalmanVector<Real>& x, Symmetric6<Real>& P, const Vec2<Real>& voltage, const Constants<Real>& c) {
     const KalmanPrediction<Real> next = predict_with_jacobian(c.model, x, voltage);
     x = next.x;
-    P = sandwich(next.F, P);
+    P = sandwich(next.F, P, has_load(c.model));
+    section<Real>("P- = F P F' + Q");
     for (std::size_t n = 0; n < 6; ++n) P.set(n, n, P(n, n) + c.process[n]);
+    label_entries("P_ahead", P.entry);
   }
 
   // Innovation y and its covariance S (11, 12, 22), for consistency tests.
@@ -107,29 +114,51 @@ struct ExtendedKalman {
   template <class Real>
   static Innovation<Real> correct(KalmanVector<Real>& x, Symmetric6<Real>& P, const Vec2<Real>& measured,
                                   const Constants<Real>& c) {
+    section<Real>("innovation y = i - i-,  S = P-_ii + R,  its inverse");
     const Innovation<Real> in{
         measured - x.current, {P(0, 0) + c.noise_diagonal.x, P(1, 1) + c.noise_diagonal.y}, P(0, 1) + c.noise_cross};
     const Real per_det = Real(1.0) / (in.S_diagonal.x * in.S_diagonal.y - in.S_cross * in.S_cross);
     const Real s11 = per_det * in.S_diagonal.y, s12 = -per_det * in.S_cross, s22 = per_det * in.S_diagonal.x;
-    Mat<Real, 6, 2> K;
+    label_alpha_beta("y", in.y);
+    label_alpha_beta("S", in.S_diagonal);
+    label("S_cross", in.S_cross);
+    SLIPBENCH_LABEL(per_det, s11, s12, s22)
+    section<Real>("K = P-_(.,i) S^-1");
+    const bool load = has_load(c.model), crossed = any(c.noise_cross > Real(0.0));  // two sensors
+    Mat<Real, 6, 2> K{};
     for (std::size_t n = 0; n < 6; ++n) {
+      if (n == 5 && !load) continue;
       K[n] = {P(n, 0) * s11 + P(n, 1) * s12, P(n, 0) * s12 + P(n, 1) * s22};
     }
+    label_entries("K", K);
+    section<Real>("x = x- + K y");
     const auto gain = [&](std::size_t n) { return K[n][0] * in.y.x + K[n][1] * in.y.y; };
     x.current = x.current + Vec2<Real>{gain(0), gain(1)};
     x.flux = x.flux + Vec2<Real>{gain(2), gain(3)};
     x.speed = clamp(x.speed + gain(4), -c.model.machine.speed_limit, c.model.machine.speed_limit);
-    x.load_torque = x.load_torque + gain(5);
+    if (load) x.load_torque = x.load_torque + gain(5);
+    label_alpha_beta("i_corrected", x.current);
+    label_alpha_beta("psi_corrected", x.flux);
+    label("w_corrected", x.speed);
+    label("load_corrected", x.load_torque);
 
     // M = (1 - K H) P-, then P = M (1 - K H)' + K R K'.
+    section<Real>("M = (1 - K H) P-");
     Mat<Real, 6, 6> M;
     for (std::size_t r = 0; r < 6; ++r) {
+      if (r == 5 && !load) continue;
       for (std::size_t n = 0; n < 6; ++n) M[r][n] = P(r, n) - (K[r][0] * P(0, n) + K[r][1] * P(1, n));
     }
+    label_entries("M", M);
+    section<Real>("P = M (1 - K H)' + K R K' (Joseph's form, each entry once)");
     for (std::size_t r = 0; r < 6; ++r) {
-      const Real kr0 = K[r][0] * c.noise_diagonal.x + K[r][1] * c.noise_cross;
-      const Real kr1 = K[r][0] * c.noise_cross + K[r][1] * c.noise_diagonal.y;
+      Real kr0 = K[r][0] * c.noise_diagonal.x, kr1 = K[r][1] * c.noise_diagonal.y;
+      if (crossed) {
+        kr0 = kr0 + K[r][1] * c.noise_cross;
+        kr1 = kr1 + K[r][0] * c.noise_cross;
+      }
       for (std::size_t n = r; n < 6; ++n) {
+        if (n == 5 && !load) continue;
         P.set(r, n, (M[r][n] - (M[r][0] * K[n][0] + M[r][1] * K[n][1])) + (kr0 * K[n][0] + kr1 * K[n][1]));
       }
     }
@@ -138,10 +167,14 @@ struct ExtendedKalman {
 
   template <class Real>
   static void restart_if_lost(State<Real>& s, const Vec2<Real>& current, const Constants<Real>& c) {
+    section<Real>("lost: speed beyond any, or innovations that cannot be; then all begins anew");
     const Real zero(0.0), one(1.0);
     const Real wild = select(fabs(s.x.speed) > c.lost_speed, one, zero);
     const Real astray = select(s.surprise > Real(lost_surprise), one, zero);
     const MaskOf<Real> lost = wild + astray > zero;
+    label("surprise_filtered", s.surprise);
+    label_entries("P_corrected", s.P.entry);
+    SLIPBENCH_LABEL(wild, astray, lost)
     if (surely_none(lost)) return;
     s.x = select(lost, KalmanVector<Real>{current, {zero, zero}, zero, zero}, s.x);
     s.surprise = select(lost, zero, s.surprise);
@@ -158,6 +191,7 @@ struct ExtendedKalman {
     const BelievedMachine<Real>& m = c.model.machine;
     const Real half(0.5), one(1.0);
     const MaskOf<Real> first = s.started < half;
+    SLIPBENCH_LABEL(first)
     const Vec2<Real> u{sample.u_alpha, sample.u_beta};
     if (surely_none(first)) {
       predict(s.x, s.P, u, c);
@@ -165,22 +199,31 @@ struct ExtendedKalman {
       KalmanVector<Real> x = s.x;
       Symmetric6<Real> P = s.P;
       predict(x, P, u, c);
+      section<Real>("the first sample corrects without a prediction");
       s.x = select(first, s.x, x);
       for (std::size_t r = 0; r < 6; ++r) {
         for (std::size_t n = r; n < 6; ++n) s.P.set(r, n, select(first, s.P(r, n), P(r, n)));
       }
     }
+    label_entries("P_prior", s.P.entry);
+    label_alpha_beta("i_prior", s.x.current);
+    label_alpha_beta("psi_prior", s.x.flux);
+    label("w_prior", s.x.speed);
     const Vec2<Real> i{sample.i_alpha, sample.i_beta};
     const Innovation<Real> in = correct(s.x, s.P, i, c);
+    section<Real>("surprise: y' S^-1 y, low-passed; 2 on average while all is well");
     s.surprise = s.surprise + c.surprise_share * (min(in.normalised(), Real(1000.0)) - s.surprise);
     restart_if_lost(s, i, c);
+    label_entries("P_kept", s.P.entry);
     bound_variance(s.P, 4, c.most[0]);
     bound_variance(s.P, 5, c.most[1]);
     s.started = one;
 
     Estimate<Real> out = estimate_of(m, s.x.flux, s.x.current, s.x.speed);
     const Real known = min(Real(2.0) * m.per_nominal_flux * magnitude(s.x.flux), one);
+    section<Real>("trust = share of nominal flux / (1 + variance of the speed over (2 % of rated)^2)");
     out.trust = known / (one + c.per_doubt * s.P(4, 4));
+    section<Real>("covariance of (psi_r_alpha, psi_r_beta, speed), T circuit and mechanical");
     out.has_covariance = one;
     const Real f = m.per_flux_ratio, w = one / m.pole_pairs;
     out.covariance = {f * f * s.P(2, 2), f * f * s.P(2, 3), f * w * s.P(2, 4),

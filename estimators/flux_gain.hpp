@@ -23,6 +23,7 @@
 // correction, trace and determinant conditions); derivation and choice of A, B are this file's.
 #pragma once
 
+#include "plant/math/labels.hpp"
 #include "plant/math/vec.hpp"
 
 namespace slipbench {
@@ -44,12 +45,19 @@ struct FluxGain {
 
 template <class Real>
 Vec2<Real> flux_gain(const FluxGain<Real>& k, const Real& flux, const Real& w_s, const Real& speed) {
+  section<Real>(
+      "g: A = floor alpha + 2 zeta min(|w_s|, w_cap), B = stiffness alpha w_s / (|w_s| + w_0), fading with the flux");
   const Real frequency = fabs(w_s), one(1.0);
   const Real w_r = w_s + clamp(speed - w_s, -k.most_slip, k.most_slip);
   const Real a = k.floor + k.twice_damping * min(frequency, k.frequency_cap);
   const Real b = k.stiffness * w_s / (frequency + k.sign_width);
   const Real per = min(square(k.per_half_flux * flux), one) / (k.alpha * k.alpha + w_r * w_r);
-  return {per * (k.alpha * a - w_r * b), per * (w_r * a + k.alpha * b)};
+  const Vec2<Real> g{per * (k.alpha * a - w_r * b), per * (w_r * a + k.alpha * b)};
+  label("w_r_bounded", w_r);
+  label("A", a);
+  label("B", b);
+  label_d_q("g", g);
+  return g;
 }
 
 // Bound on the correction g (e_d - Re E), V: half the nominal back-EMF at this frequency, and the nominal

@@ -49,6 +49,9 @@ struct LinearObserver {
     SLIPBENCH_FIELDS(observer, started)
   };
 
+  static constexpr std::string_view state_note =
+      "observer_x_current A, observer_x_flux Wb (psi_r, peak; _x alpha, _y beta); observer_speed electrical rad/s.";
+
   // Throws std::invalid_argument for given gains that do not fit, and where none can be designed.
   static Constants<double> prepare(const EstimatorSetup& setup, const Settings& given);
   static State<double> begin(const EstimatorSetup& setup, const Constants<double>& c);
@@ -59,6 +62,7 @@ struct LinearObserver {
   static Estimate<Real> step(State<Real>& s, const Sample<Real>& sample, const Constants<Real>& c) {
     const BelievedMachine<Real>& m = c.machine;
     const MaskOf<Real> first = s.started < Real(0.5);
+    SLIPBENCH_LABEL(first)
     const Real w_r = m.pole_pairs * sample.speed;
     observe(s.observer, c.observer, Vec2<Real>{sample.u_alpha, sample.u_beta},
             Vec2<Real>{sample.i_alpha, sample.i_beta}, w_r, first);
@@ -66,6 +70,7 @@ struct LinearObserver {
     const Vec2<Real> flux = c.observer.model.flux_ratio * s.observer.x.flux;  // psi_R
     Estimate<Real> out = estimate_of(m, flux, s.observer.x.current, w_r);
     out.speed = sample.speed;
+    section<Real>("trust = share of nominal flux, full from one half on");
     out.trust = min(Real(2.0) * m.per_nominal_flux * magnitude(flux), Real(1.0));
     return out;
   }

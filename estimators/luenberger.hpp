@@ -63,6 +63,9 @@ struct Luenberger {
     SLIPBENCH_FIELDS(x, speed, angle, frequency, frequency_between, started)
   };
 
+  static constexpr std::string_view state_note =
+      "x_current A, x_flux Wb (psi_R, peak; _x alpha, _y beta); speed, frequency electrical rad/s; angle rad.";
+
   static Constants<double> prepare(const EstimatorSetup& setup, const Settings& given);
   static State<double> begin(const EstimatorSetup& setup, const Constants<double>& c);
 
@@ -72,30 +75,46 @@ struct Luenberger {
     const Real zero(0.0), half(0.5), one(1.0);
     const Vec2<Real> i{sample.i_alpha, sample.i_beta}, u{sample.u_alpha, sample.u_beta};
     const MaskOf<Real> first = s.started < half;
+    SLIPBENCH_LABEL(first)
 
     const CurrentAndFlux<Real> next = ahead(m, s.x, u, s.speed).state;
+    section<Real>("eps = i - i-, and its parts along and across psi-");
     const Vec2<Real> psi = select(first, s.x.flux, next.flux);
     const Vec2<Real> eps = select(first, Vec2<Real>{zero, zero}, i - next.current);
     const Real length = magnitude(psi), per_length = one / max(length, m.least_flux);
     const Vec2<Real> along = per_length * psi;  // shorter than 1 while there is hardly any flux
     const Real eps_d = dot(along, eps), eps_q = cross(along, eps);
+    label_alpha_beta("psi", psi);
+    label_alpha_beta("eps", eps);
+    SLIPBENCH_LABEL(length, per_length, eps_d, eps_q)
+    label_alpha_beta("along", along);
 
     const Vec2<Real> g = flux_gain(c.gain, length, s.frequency, s.speed);
+    section<Real>("i = i- + kappa eps,  psi = psi- - kappa L_sigma (eps - g eps_d)");
     s.x.current = select(first, i, next.current + c.current_share * eps);
     const Real most = m.period * most_correction(c.gain, s.frequency) / (fabs(g.x) + fabs(g.y) + Real(1e-9));
     const Real pull = clamp(c.flux_share * eps_d, -most, most);
     s.x.flux = psi - c.flux_share * eps + pull * product(g, along);
+    SLIPBENCH_LABEL(most, pull)
+    label_alpha_beta("i_new", s.x.current);
+    label_alpha_beta("psi_new", s.x.flux);
+    section<Real>("w_r = w_r - T a_w a_i L_sigma eps_q / |psi-|, within bounds");
     s.speed = clamp(s.speed - c.adaptation * per_length * eps_q, -m.speed_limit, m.speed_limit);
+    label("w_r", s.speed);
     s.started = one;
 
     // Frequency as the estimated flux really turns, not as speed and slip would have it: those may be wrong
     // together.
     Estimate<Real> out = estimate_of(m, s.x.flux, s.x.current, s.speed);
+    section<Real>("w_s as the flux really turns: change of angle / T, low-passed twice");
     const Real slip = m.R_R * per_length * cross(along, s.x.current);
     const Real turning = select(first, s.speed + slip, c.per_period * wrap_angle(out.rotor_flux_angle - s.angle));
     const Real w_s = clamp(turning, -m.speed_limit, m.speed_limit), share = select(first, one, c.frequency_share);
     s.frequency_between = s.frequency_between + share * (w_s - s.frequency_between);
     s.frequency = s.frequency + share * (s.frequency_between - s.frequency);
+    SLIPBENCH_LABEL(slip, turning, w_s, share)
+    label("w_s_between", s.frequency_between);
+    label("w_s_filtered", s.frequency);
     s.angle = out.rotor_flux_angle;
     out.trust = trust_by_frequency(m, s.x.flux, s.frequency);
     return out;

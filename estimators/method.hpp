@@ -6,6 +6,7 @@
 //     static constexpr bool needs_speed = true;                      // only where the speed is told by a sensor
 //     template <class Real> struct Constants { ...; SLIPBENCH_FIELDS(...) };
 //     template <class Real> struct State { ...; SLIPBENCH_FIELDS(...) };
+//     static constexpr std::string_view state_note;                  // its units, for exported code; may be left out
 //     static Constants<double> prepare(const EstimatorSetup&, const Settings&);        // once, in double
 //     static State<double> begin(const EstimatorSetup&, const Constants<double>&);     // state at tick 0
 //     template <class Real>

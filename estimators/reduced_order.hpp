@@ -54,6 +54,9 @@ struct ReducedOrder {
     SLIPBENCH_FIELDS(flux, current, angle, frequency, speed, frequency_between, speed_between, started)
   };
 
+  static constexpr std::string_view state_note =
+      "flux Wb (psi_R, peak), current A (_x alpha, _y beta); speed, frequency electrical rad/s; angle rad.";
+
   static Constants<double> prepare(const EstimatorSetup& setup, const Settings& given);
   static State<double> begin(const EstimatorSetup& setup, const Constants<double>& c);
 
@@ -64,25 +67,42 @@ struct ReducedOrder {
     const Vec2<Real> i{sample.i_alpha, sample.i_beta}, u{sample.u_alpha, sample.u_beta};
     const MaskOf<Real> first = s.started < half;
 
+    label("first", first);
+    section<Real>("v = T (u - R_s i_middle) - L_sigma (i - i_before): the back-EMF over the period");
     const Vec2<Real> before = select(first, i, s.current), i_middle = half * (i + before);
     const Vec2<Real> v = m.period * (u - m.R_s * i_middle) - m.L_sigma * (i - before);
+    label_alpha_beta("i_before", before);
+    label_alpha_beta("i_middle", i_middle);
+    label_alpha_beta("v", v);
+    section<Real>("direction of the flux in the middle of the period");
     const Vec2<Real> middle = s.flux + half * v;
     const Real length = magnitude(middle), per_length = one / max(length, m.least_flux);
     const Vec2<Real> along =
         per_length * middle;  // shorter than 1 while there is hardly any flux: nothing to correct by
     const Real i_d = dot(along, i_middle), i_q = cross(along, i_middle);
+    label_alpha_beta("along", along);
+    SLIPBENCH_LABEL(length, per_length, i_d, i_q)
+    section<Real>("T (e_d - Re E): what the model of the rotor says of the flux's growth, less what was integrated");
     const Real wrong = m.period * (m.R_R * i_d - m.alpha * length) - dot(along, v);
+    label("wrong", wrong);
     const Vec2<Real> g = flux_gain(c.gain, length, s.frequency, s.speed);
+    section<Real>("psi = psi + v + g T (e_d - Re E); hardly any flux: + v - alpha T psi");
     const MaskOf<Real> alive = length > m.least_flux;
     const Vec2<Real> correction = select(alive, wrong * product(g, along), -(m.period * m.alpha) * s.flux);
     s.flux = select(first, s.flux, s.flux + v + correction);
     s.current = i;
+    SLIPBENCH_LABEL(alive)
+    label_alpha_beta("correction", correction);
+    label_alpha_beta("psi", s.flux);
 
     Estimate<Real> out = estimate_of(m, s.flux, i, s.speed);
+    section<Real>("w_s = change of angle / T,  slip = R_R i_q / |psi|,  w_r = w_s - slip");
     const Real slip = select(alive, m.R_R * i_q * per_length, zero);
     const Real turning = select(first, s.speed + slip, c.per_period * wrap_angle(out.rotor_flux_angle - s.angle));
     const Real w_s = clamp(turning, -m.speed_limit, m.speed_limit);
     const Real w_r = clamp(w_s - slip, -m.speed_limit, m.speed_limit);
+    SLIPBENCH_LABEL(slip, turning, w_s, w_r)
+    section<Real>("low-passes of two stages each, held while there is hardly any flux");
     // Held while there is hardly any flux, and slow at first: the direction's noise goes with 1 / length.
     const Real moves = select(alive, min(square(Real(4.0) * m.per_nominal_flux * length), one), zero);
     const Real frequency_share = select(first, one, moves * c.frequency_share), speed_share = moves * c.speed_share;
@@ -92,6 +112,11 @@ struct ReducedOrder {
     s.speed = s.speed + speed_share * (s.speed_between - s.speed);
     s.angle = out.rotor_flux_angle;
     s.started = one;
+    SLIPBENCH_LABEL(moves, frequency_share, speed_share)
+    label("w_s_between", s.frequency_between);
+    label("w_s_filtered", s.frequency);
+    label("w_r_between", s.speed_between);
+    label("w_r_filtered", s.speed);
 
     out.speed = s.speed / m.pole_pairs;
     out.trust = trust_by_frequency(m, s.flux, s.frequency);

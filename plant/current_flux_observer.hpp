@@ -11,6 +11,7 @@
 // Source: D.G. Luenberger, IEEE TAC 16, 1971; how M is found: plant/linear/current_loop.hpp.
 #pragma once
 
+#include "plant/math/labels.hpp"
 #include "plant/math/schedule.hpp"
 #include "plant/math/vec.hpp"
 #include "plant/parameters.hpp"
@@ -57,14 +58,22 @@ CurrentFlux<Real> unforced(const CurrentFluxModel<Real>& m, const CurrentFlux<Re
 template <class Real>
 CurrentFlux<Real> period_ahead(const CurrentFluxModel<Real>& m, const CurrentFlux<Real>& x, const Vec2<Real>& voltage,
                                const Real& w_r) {
+  section<Real>("L_sigma di/dt = u - R i + (1/tau_r - j w_r) g psi,  dpsi/dt = L_m/tau_r i - (1/tau_r - j w_r) psi");
   CurrentFlux<Real> term = unforced(m, x, w_r);
   term.current = term.current + m.per_leakage * voltage;
+  label_alpha_beta("di_dt", term.current);
+  label_alpha_beta("dpsi_dt", term.flux);
+  section<Real>("state a period ahead: the exponential's series to the sixth power of T");
   CurrentFlux<Real> sum = x;
   for (int n = 1; n <= 6; ++n) {
     term = (m.period * Real(1.0 / n)) * term;
+    label_alpha_beta("i_term", term.current);
+    label_alpha_beta("psi_term", term.flux);
     sum = sum + term;
     if (n < 6) term = unforced(m, term, w_r);
   }
+  label_alpha_beta("i_ahead", sum.current);
+  label_alpha_beta("psi_ahead", sum.flux);
   return sum;
 }
 
@@ -86,14 +95,23 @@ struct ObserverState {
 template <class Real>
 void observe(ObserverState<Real>& s, const ObserverConstants<Real>& c, const Vec2<Real>& voltage,
              const Vec2<Real>& current, const Real& w_r, const MaskOf<Real>& first) {
+  section<Real>("w_r: mean of its values at both ends of the period");
   const Real w = Real(0.5) * (s.speed + w_r), turn = sign(w);
+  label("w_r_mean", w);
+  label("w_r_sign", turn);
   const CurrentFlux<Real> ahead = period_ahead(c.model, s.x, voltage, w);
+  section<Real>("M at |w_r|: straight lines between the points");
   const std::array<Real, 4> gain = at(c.gain, fabs(w));
+  label_each("M", &gain[0], gain.size());
+  section<Real>("x = x- + M (i - i-)");
   const Vec2<Real> wrong = current - ahead.current;
   const Vec2<Real> corrected = ahead.current + product(Vec2<Real>{gain[0], turn * gain[1]}, wrong);
   const Vec2<Real> flux = ahead.flux + product(Vec2<Real>{gain[2], turn * gain[3]}, wrong);
   s.x.current = select(first, current, corrected);
   s.x.flux = select(first, s.x.flux, flux);
+  label_alpha_beta("wrong", wrong);
+  label_alpha_beta("i_observed", s.x.current);
+  label_alpha_beta("psi_observed", s.x.flux);
   s.speed = w_r;
 }
 

@@ -23,6 +23,7 @@
 #include <utility>
 
 #include "plant/math/frames.hpp"
+#include "plant/math/labels.hpp"
 #include "plant/math/numbers.hpp"
 
 namespace slipbench {
@@ -143,6 +144,7 @@ inline SinCos<Real> sincos_quarters(const Real& quarters, const Real& r) {
   const Real h = nearest(half * quarters), d = quarters - two * h;
   const Real odd = h - two * nearest(half * h);
   const Real a = (one - d * d) - two * (odd * odd);
+  SLIPBENCH_LABEL(z, sin_r, half_z, head, cos_r, h, d, odd, a)
   return {a * sin_r + d * cos_r, a * cos_r - d * sin_r};
 }
 
@@ -151,7 +153,9 @@ inline SinCos<Real> sincos_quarters(const Real& quarters, const Real& r) {
 template <class Real>
 inline SinCos<Real> sincos(const Real& angle_rad) {
   const Real quarters = detail::nearest(angle_rad * Real(0.63661977236758134308));
-  return detail::sincos_quarters(quarters, detail::reduced<1>(angle_rad, quarters));
+  const Real r = detail::reduced<1>(angle_rad, quarters);
+  SLIPBENCH_LABEL(quarters, r)
+  return detail::sincos_quarters(quarters, r);
 }
 
 template <class Real>
@@ -180,6 +184,8 @@ inline Real atan2(const Real& y, const Real& x) {
   const Real z = u * u;
   const Real tail = u * (z * detail::polynomial(z, S::atan)) + eighths * Real(S::quarter_pi[1]);
   const Real angle = eighths * Real(S::quarter_pi[0]) + (u + tail);
+  SLIPBENCH_LABEL(across, up, steep, left, lo, hi, near_diagonal, part, whole, mirrored, u, base, upper, eighths, z,
+                  tail, angle)
   return select(y < zero, -angle, angle);
 }
 
@@ -191,6 +197,7 @@ inline Real exp(const Real& x) {
   const Real head = limited - k * Real(S::ln2[0]), tail = k * Real(S::ln2[1]);
   const Real r = head - tail;
   const Real power = Real(1.0) + (r + (r * r) * detail::polynomial(r, S::exp));
+  SLIPBENCH_LABEL(limited, k, head, tail, r, power)
   const Real half_k = detail::nearest(k * Real(0.5));  // in two factors: 2^k itself may lie outside the normal numbers
   return power * two_to_the(half_k) * two_to_the(k - half_k);
 }
@@ -211,6 +218,7 @@ inline Real log(const Real& x) {
   const Real s = f / (two + f), z = s * s, half_f2 = (half * f) * f;
   const Real tail = s * (half_f2 + z * detail::polynomial(z, S::log)) + k * Real(S::ln2[1]);
   const Real y = k * Real(S::ln2[0]) - ((half_f2 - tail) - f);
+  SLIPBENCH_LABEL(tiny, scaled, e0, m0, high, f, k, s, z, half_f2, tail, y)
   const Real infinity(Limits::infinity()), nan(Limits::quiet_NaN());
   return select(x > zero, select(x < infinity, y, x), select(x == zero, -infinity, nan));
 }

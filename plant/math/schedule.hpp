@@ -13,6 +13,7 @@
 #include <vector>
 
 #include "plant/math/fields.hpp"
+#include "plant/math/labels.hpp"
 #include "plant/math/numbers.hpp"
 
 namespace slipbench {
@@ -32,6 +33,7 @@ std::array<Real, N> at(const Schedule<Real, N>& s, const Real& x) {
   std::array<Real, N> y = s.first;
   for (std::size_t n = 0; n + 1 < schedule_points; ++n) {
     const Real along = clamp(x - s.from[n], Real(0.0), s.width[n]);
+    SLIPBENCH_LABEL(along)
     for (std::size_t i = 0; i < N; ++i) y[i] = y[i] + along * s.slope[n][i];
   }
   return y;

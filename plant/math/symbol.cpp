@@ -1,6 +1,7 @@
 #include "plant/math/symbol.hpp"
 
 #include <bit>
+#include <cstdio>
 #include <stdexcept>
 #include <type_traits>
 #include <utility>
@@ -25,7 +26,7 @@ bool same(const SymbolNode<S>& a, const SymbolNode<S>& b) {
 }
 template <class S>
 SymbolNode<S> constant(S value) {
-  return {nullptr, 0, value};
+  return {nullptr, 0, value, {}};
 }
 template <class S>
 const typename Graph<S>::Node* node_of(const SymbolNode<S>& n) {
@@ -40,7 +41,7 @@ template <class S>
 bool negated(const SymbolNode<S>& n, SymbolNode<S>& inner) {
   const auto* node = node_of(n);
   if (!node || node->op != SymbolOp::negate) return false;
-  inner = {n.graph, node->a, S{}};
+  inner = {n.graph, node->a, S{}, {}};
   return true;
 }
 
@@ -69,6 +70,20 @@ S fold(SymbolOp op, S a, S b, S c) {
       return exponent_of(a);
     case SymbolOp::select:
       return a != S(0) ? b : c;
+    case SymbolOp::minimum:
+      return slipbench::min(a, b);
+    case SymbolOp::maximum:
+      return slipbench::max(a, b);
+    case SymbolOp::limit:
+      return slipbench::clamp(a, b, c);
+    case SymbolOp::arctangent:
+      return slipbench::atan2(a, b);
+    case SymbolOp::exponential:
+      return slipbench::exp(a);
+    case SymbolOp::logarithm:
+      return slipbench::log(a);
+    case SymbolOp::wrapped:
+      return slipbench::wrap_angle(a);
     case SymbolOp::less:
       return S(a < b);
     case SymbolOp::less_equal:
@@ -81,12 +96,53 @@ S fold(SymbolOp op, S a, S b, S c) {
       return S(a != S(0) || b != S(0));
     case SymbolOp::opposite:
       return S(a == S(0));
+    case SymbolOp::sine_cosine:
+    case SymbolOp::sine_cosine_turns:
+    case SymbolOp::sine_of:
+    case SymbolOp::cosine_of:
     case SymbolOp::constant:
     case SymbolOp::input:
     case SymbolOp::truth:
       break;
   }
   return a;
+}
+
+// How a folded constant came about, in words of its parts'; nothing where no part has a name.
+template <class S>
+std::shared_ptr<const std::string> origin_of(SymbolOp op, const SymbolNode<S>& a, const SymbolNode<S>& b) {
+  constexpr std::size_t longest = 60;
+  if (!a.origin && !b.origin) return {};
+  const auto text = [](const SymbolNode<S>& n) {
+    if (n.origin) return n.origin->find(' ') == std::string::npos ? *n.origin : "(" + *n.origin + ")";
+    char digits[32];
+    std::snprintf(digits, sizeof digits, "%.6g", static_cast<double>(n.value));
+    return std::string(digits);
+  };
+  std::string all;
+  switch (op) {
+    case SymbolOp::add:
+      all = text(a) + " + " + text(b);
+      break;
+    case SymbolOp::subtract:
+      all = text(a) + " - " + text(b);
+      break;
+    case SymbolOp::multiply:
+      all = text(a) + " * " + text(b);
+      break;
+    case SymbolOp::divide:
+      all = text(a) + " / " + text(b);
+      break;
+    case SymbolOp::negate:
+      all = "-" + text(a);
+      break;
+    case SymbolOp::root:
+      all = "sqrt(" + text(a) + ")";
+      break;
+    default:
+      return {};
+  }
+  return all.size() > longest ? nullptr : std::make_shared<const std::string>(all);
 }
 
 // Identities that keep every bit. True where `result` is the answer; else `op`, `a`, `b` may have been put more simply.
@@ -131,6 +187,7 @@ bool simplify(SymbolOp& op, SymbolNode<S>& a, SymbolNode<S>& b, const SymbolNode
     if (!a.graph) return becomes(a.value != S(0) ? b : c);
     if (same(b, c)) return becomes(b);
   }
+  if ((op == SymbolOp::minimum || op == SymbolOp::maximum) && same(a, b)) return becomes(a);
   if (op == SymbolOp::less && same(a, b)) return becomes(constant(S(0)));
   if (op == SymbolOp::both || op == SymbolOp::either) {
     const S decides = S(op == SymbolOp::either);
@@ -139,7 +196,7 @@ bool simplify(SymbolOp& op, SymbolNode<S>& a, SymbolNode<S>& b, const SymbolNode
     if (same(a, b)) return becomes(a);
   }
   if (op == SymbolOp::opposite && a.graph && node_of(a)->op == SymbolOp::opposite) {
-    return becomes({a.graph, node_of(a)->a, S{}});
+    return becomes({a.graph, node_of(a)->a, S{}, {}});
   }
   return false;
 }
@@ -162,6 +219,11 @@ bool never_minus_zero(SymbolOp op, const SymbolNode<S>& a, const SymbolNode<S>& 
       return never_minus_zero(a);
     case SymbolOp::select:
       return never_minus_zero(b) && never_minus_zero(c);
+    case SymbolOp::minimum:
+    case SymbolOp::maximum:
+      return never_minus_zero(a) && never_minus_zero(b);
+    case SymbolOp::limit:
+      return never_minus_zero(a) && never_minus_zero(b) && never_minus_zero(c);
     default:
       return false;
   }
@@ -172,9 +234,12 @@ bool commutes(SymbolOp op) {
          op == SymbolOp::either;
 }
 bool mask_operands(SymbolOp op) { return op == SymbolOp::both || op == SymbolOp::either || op == SymbolOp::opposite; }
+}  // namespace
+
 std::size_t operand_count(SymbolOp op) {
   switch (op) {
     case SymbolOp::select:
+    case SymbolOp::limit:
       return 3;
     case SymbolOp::negate:
     case SymbolOp::root:
@@ -182,6 +247,13 @@ std::size_t operand_count(SymbolOp op) {
     case SymbolOp::size:
     case SymbolOp::two_to_the:
     case SymbolOp::exponent_of:
+    case SymbolOp::sine_cosine:
+    case SymbolOp::sine_cosine_turns:
+    case SymbolOp::sine_of:
+    case SymbolOp::cosine_of:
+    case SymbolOp::exponential:
+    case SymbolOp::logarithm:
+    case SymbolOp::wrapped:
     case SymbolOp::opposite:
       return 1;
     case SymbolOp::constant:
@@ -193,11 +265,12 @@ std::size_t operand_count(SymbolOp op) {
   }
 }
 
-}  // namespace
-
 template <class S>
 std::uint32_t Graph<S>::node(Node n) {
-  const std::array<std::uint64_t, 5> key{static_cast<std::uint64_t>(n.op), n.a, n.b, n.c,
+  // A sum is the same whichever way round; it keeps the order in which it was first written.
+  const bool turned = commutes(n.op) && n.b < n.a;
+  const std::uint32_t first = turned ? n.b : n.a, second = turned ? n.a : n.b;
+  const std::array<std::uint64_t, 5> key{static_cast<std::uint64_t>(n.op), first, second, n.c,
                                          std::bit_cast<BitsOf<S>>(n.value)};
   const auto [place, fresh] = known_.try_emplace(key, static_cast<std::uint32_t>(nodes.size()));
   if (fresh) nodes.push_back(n);
@@ -207,7 +280,15 @@ std::uint32_t Graph<S>::node(Node n) {
 template <class S>
 std::uint32_t Graph<S>::id_of(const SymbolNode<S>& n, bool mask) {
   if (n.graph == nullptr) {
-    return node({mask ? SymbolOp::truth : SymbolOp::constant, 0, 0, 0, n.value, !is(n, -0.0)});
+    // Constants that came about differently stay apart, or one would bear the other's name.
+    std::uint32_t told = 0;
+    if (n.origin) {
+      const auto next = static_cast<std::uint32_t>(known_origins_.size() + 1);
+      told = known_origins_.try_emplace(*n.origin, next).first->second;
+    }
+    const std::uint32_t id = node({mask ? SymbolOp::truth : SymbolOp::constant, told, 0, 0, n.value, !is(n, -0.0)});
+    if (n.origin) origins.try_emplace(id, *n.origin);
+    return id;
   }
   if (n.graph != this) throw std::logic_error("symbols of two programs cannot meet");
   return n.id;
@@ -216,7 +297,9 @@ std::uint32_t Graph<S>::id_of(const SymbolNode<S>& n, bool mask) {
 template <class S>
 SymbolNode<S> record(SymbolOp op, const SymbolNode<S>& first, const SymbolNode<S>& second, const SymbolNode<S>& c) {
   SymbolNode<S> a = first, b = second, result;
-  if (!a.graph && !b.graph && !c.graph) return constant(fold(op, a.value, b.value, c.value));
+  if (!a.graph && !b.graph && !c.graph)
+    return {nullptr, 0, fold(op, a.value, b.value, c.value),
+            op == SymbolOp::select ? (a.value != S(0) ? b : c).origin : origin_of(op, a, b)};
   if (simplify(op, a, b, c, result)) return result;
   Graph<S>* graph = a.graph ? a.graph : b.graph ? b.graph : c.graph;
   const std::size_t count = operand_count(op);
@@ -224,68 +307,32 @@ SymbolNode<S> record(SymbolOp op, const SymbolNode<S>& first, const SymbolNode<S
   n.a = graph->id_of(a, mask_operands(op) || op == SymbolOp::select);
   if (count > 1) n.b = graph->id_of(b, mask_operands(op));
   if (count > 2) n.c = graph->id_of(c, false);
-  if (commutes(op) && n.b < n.a) std::swap(n.a, n.b);
-  return {graph, graph->node(n), S{}};
+  return {graph, graph->node(n), S{}, {}};
 }
 
 template <class S>
-Symbol<S> Program<S>::input(const std::string& name, const std::string& array) {
-  std::size_t element = 0;
-  for (const auto& port : inputs_) element += port.array == array;
-  const auto number = static_cast<std::uint32_t>(inputs_.size());
-  const SymbolNode<S> node{graph_.get(), graph_->node({SymbolOp::input, number, 0, 0, S{}, false}), S{}};
-  inputs_.push_back({unique(name), array, element, node});
-  names_[node.id] = inputs_.back().name;
-  return Symbol<S>(node);
+bool truth_of(const SymbolNode<S>& constant) {
+  if (constant.graph != nullptr) throw std::logic_error("a step branches on data: it must choose by select");
+  return constant.value != S(0);
 }
 
+// A constant's are computed here; the pair itself is never one.
 template <class S>
-void Program<S>::output(const std::string& name, const Symbol<S>& value, const std::string& array) {
-  std::size_t element = 0;
-  for (const auto& port : outputs_) element += port.array == array;
-  outputs_.push_back({name, array, element, value.node()});
-}
-
-template <class S>
-void Program<S>::name(const std::string& name, const Symbol<S>& value) {
-  if (value.is_constant() || names_.count(value.node().id)) return;
-  names_[value.node().id] = unique(name);
-}
-
-template <class S>
-std::vector<bool> Program<S>::needed() const {
-  std::vector<bool> need(graph_->nodes.size(), false);
-  for (const auto& port : outputs_) {
-    if (port.node.graph) need[port.node.id] = true;
+SinCos<Symbol<S>> Symbol<S>::pair_of(SymbolOp op, const Symbol& a) {
+  if (a.is_constant()) {
+    const SinCos<S> both =
+        op == SymbolOp::sine_cosine ? slipbench::sincos(a.value()) : slipbench::sincos_turns(a.value());
+    return {Symbol(constant(both.sin)), Symbol(constant(both.cos))};
   }
-  for (std::size_t i = need.size(); i-- > 0;) {
-    const auto& n = graph_->nodes[i];
-    const std::size_t count = need[i] ? operand_count(n.op) : 0;
-    if (count > 0) need[n.a] = true;
-    if (count > 1) need[n.b] = true;
-    if (count > 2) need[n.c] = true;
-  }
-  return need;
-}
-
-template <class S>
-std::map<SymbolOp, std::size_t> Program<S>::operation_counts() const {
-  std::map<SymbolOp, std::size_t> counts;
-  const auto need = needed();
-  for (std::size_t i = 0; i < need.size(); ++i) {
-    if (need[i]) ++counts[graph_->nodes[i].op];
-  }
-  return counts;
+  const SymbolNode<S> pair = record<S>(op, a.node_);
+  return {Symbol(record<S>(SymbolOp::sine_of, pair)), Symbol(record<S>(SymbolOp::cosine_of, pair))};
 }
 
 #define SLIPBENCH_SYMBOL(S)                                                                                     \
   template class Graph<S>;                                                                                      \
+  template bool truth_of(const SymbolNode<S>&);                                                                 \
   template SymbolNode<S> record<S>(SymbolOp, const SymbolNode<S>&, const SymbolNode<S>&, const SymbolNode<S>&); \
-  template Symbol<S> Program<S>::input(const std::string&, const std::string&);                                 \
-  template void Program<S>::output(const std::string&, const Symbol<S>&, const std::string&);                   \
-  template void Program<S>::name(const std::string&, const Symbol<S>&);                                         \
-  template std::vector<bool> Program<S>::needed() const;                                                        \
-  template std::map<SymbolOp, std::size_t> Program<S>::operation_counts() const;
+  template SinCos<Symbol<S>> Symbol<S>::pair_of(SymbolOp, const Symbol<S>&);
 SLIPBENCH_SYMBOL(float)
 SLIPBENCH_SYMBOL(double)
 

@@ -5,6 +5,7 @@
 #include "estimators/methods.hpp"
 #include "sim/engine/ports.hpp"
 #include "sim/engine/side_by_side.hpp"
+#include "sim/engine/single_ports.hpp"
 
 namespace slipbench {
 
@@ -59,11 +60,15 @@ class BuiltInController final : public ControllerPortOf<Real> {
 template <class Real>
 std::shared_ptr<EstimatorPortOf<Real>> load_estimator(Cases cases, std::size_t which) {
   std::shared_ptr<EstimatorPortOf<Real>> port;
-  const int wanted = cases[0]->shape.control.estimators[which].index;
+  const MethodShape& wanted = cases[0]->shape.control.estimators[which];
   int index = 0;
   each_estimator_method([&]<class Method>() {
     const auto numbers = [which](const RunSetup& s) -> const MethodNumbers& { return s.estimators[which]; };
-    if (index++ == wanted) port = std::make_shared<BuiltInEstimator<Real, Method>>(cases, numbers);
+    if (index++ != wanted.index) return;
+    if (wanted.single)
+      port = std::make_shared<SingleEstimator<Real, Method>>(cases, numbers);
+    else
+      port = std::make_shared<BuiltInEstimator<Real, Method>>(cases, numbers);
   });
   return port;
 }
@@ -71,10 +76,14 @@ std::shared_ptr<EstimatorPortOf<Real>> load_estimator(Cases cases, std::size_t w
 template <class Real>
 std::shared_ptr<ControllerPortOf<Real>> load_controller(Cases cases) {
   std::shared_ptr<ControllerPortOf<Real>> port;
+  const MethodShape& wanted = cases[0]->shape.control.controller;
   int index = 0;
   each_controller_method([&]<class Method>() {
     const auto numbers = [](const RunSetup& s) -> const MethodNumbers& { return s.controller; };
-    if (index++ == cases[0]->shape.control.controller.index)
+    if (index++ != wanted.index) return;
+    if (wanted.single)
+      port = std::make_shared<SingleController<Real, Method>>(cases, numbers);
+    else
       port = std::make_shared<BuiltInController<Real, Method>>(cases, numbers);
   });
   return port;

@@ -28,6 +28,13 @@ class DriveLoop {
     for (std::size_t i = 0; i < estimators_.size(); ++i) estimate(i);
   }
   void control(std::int64_t k);
+  // The two halves of it for a controller that is outside: references at tick k; a command that leaves now.
+  void refer(std::int64_t k);
+  void obey(const Command<Real>& command);
+  void set_gates(bool enabled) { plant_.set_gates(enabled); }
+  // An estimate that comes from outside: a place for it behind the estimators' own, and its value at this tick.
+  void add_estimate() { estimates_.emplace_back(); }
+  void set_last_estimate(const Estimate<Real>& estimate) { estimates_.back() = estimate; }
   void plant_step(std::int64_t n) {
     plant_.step(n);
     sensors_.track(plant_, n + 1);
@@ -43,9 +50,15 @@ class DriveLoop {
   [[nodiscard]] const RunShape& shape() const { return shape_; }
   [[nodiscard]] const std::vector<Estimate<Real>>& estimates() const { return estimates_; }
   [[nodiscard]] const Real& clipped() const { return command_.clipped; }  // the controller's voltage limit acted
+  [[nodiscard]] const Sample<Real>& sample() const { return sample_; }
+  [[nodiscard]] const Measurement<Real>* measurement() const { return controller_ ? &measurement_ : nullptr; }
+  [[nodiscard]] const Command<Real>* command() const { return controller_ ? &command_ : nullptr; }
   [[nodiscard]] const Plant<Real>& plant() const { return plant_; }
+  [[nodiscard]] const Real& speed_reference() const { return speed_reference_now_; }
+  [[nodiscard]] const Real& torque_reference() const { return torque_reference_now_; }
   [[nodiscard]] Sensors<Real>& sensors() { return sensors_; }
   [[nodiscard]] std::size_t estimator_count() const { return estimators_.size(); }
+  void take_no_estimates() { shape_.control.speed_from = shape_.control.flux_from = -1; }
   void take_speed_from(std::int64_t estimator) { shape_.control.speed_from = estimator; }  // -1: the sensor
 
  private:
@@ -66,6 +79,7 @@ class DriveLoop {
   Real speed_reference_now_{}, torque_reference_now_{};
 
   Sample<Real> sample_;
+  Measurement<Real> measurement_;
   std::vector<Estimate<Real>> estimates_;
   Command<Real> command_;
   std::array<Phases<Real>, 2> pending_;  // commands not yet acting, as a ring

@@ -40,6 +40,7 @@ template <class Real>
 Vec2<Real> DriveLoop<Real>::believed_voltage(const Reading<Real>& before, const Reading<Real>& now,
                                              std::int64_t k) const {
   const Real half(0.5);
+  if (plant_.gates_open()) return {};  // unknown to control electronics: called none
   if (shape_.plant.supply == Supply::mains) {
     const bool just_switched_on = k == 0 && shape_.control.from_standstill;
     return just_switched_on ? Vec2<Real>{} : half * (before.voltage + now.voltage);
@@ -64,15 +65,20 @@ void DriveLoop<Real>::sense(std::int64_t k) {
 }
 
 template <class Real>
-void DriveLoop<Real>::control(std::int64_t k) {
-  if (!controller_) return;
+void DriveLoop<Real>::refer(std::int64_t k) {
   const double t = static_cast<double>(k > 0 ? k : 0) * shape_.control_period_s;
   // Just after a jump, whatever the rounding of t against the knot.
   const auto now = [&](ProfilePack<Real>& p) { return p.line_at(t + 0.5 * shape_.plant.step_s).at(t); };
   speed_reference_now_ = now(speed_reference_);
   torque_reference_now_ = now(torque_reference_);
+}
+
+template <class Real>
+void DriveLoop<Real>::control(std::int64_t k) {
+  if (!controller_) return;
+  refer(k);
   const std::int64_t speed_from = shape_.control.speed_from, flux_from = shape_.control.flux_from;
-  Measurement<Real> m;
+  Measurement<Real>& m = measurement_;
   m.tick = k;
   m.current = sensors_.reading().current;
   m.dc_link = sensors_.reading().dc_link;
@@ -83,7 +89,12 @@ void DriveLoop<Real>::control(std::int64_t k) {
   }
   m.speed_reference = speed_reference_now_;
   m.torque_reference = torque_reference_now_;
-  command_ = controller_->step(m);
+  obey(controller_->step(m));
+}
+
+template <class Real>
+void DriveLoop<Real>::obey(const Command<Real>& command) {
+  command_ = command;
   // The command leaves now and acts d periods later.
   duty_ = command_.duty;
   if (const auto delay = static_cast<std::size_t>(shape_.control.delay_periods); delay > 0) {

@@ -7,6 +7,7 @@
 #include <string>
 #include <vector>
 
+#include "controllers/control.hpp"
 #include "estimators/sample.hpp"
 #include "sim/engine/columns.hpp"
 
@@ -19,6 +20,10 @@ struct TickView {
   const PlantRow* plant = nullptr;              // value just after a jump
   std::span<const Estimate<double>> estimates;  // in file order
   bool clipped = false;                         // the controller's voltage limit acted
+  // What estimators and controller saw and what was commanded; a run alone only, and with a controller the last two.
+  const Sample<double>* sample = nullptr;
+  const Measurement<double>* measurement = nullptr;
+  const Command<double>* command = nullptr;
 };
 
 // One trace row: plant columns, measured columns, five columns for each estimator, as `RunInfo::columns()` names them.

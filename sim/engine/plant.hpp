@@ -6,6 +6,7 @@
 
 #include <limits>
 
+#include "plant/open_stator.hpp"
 #include "sim/engine/lost.hpp"
 #include "sim/engine/noise_pack.hpp"
 #include "sim/engine/plant_row.hpp"
@@ -37,6 +38,17 @@ template <class Real>
 }
 
 template <class Real>
+void advance_open(const Drive<Real>& drive, const DriveInput<Real>& input, Stepper method, DriveState<Real>& x,
+                  double t, double h) {
+  odeint_step(
+      method,
+      [&](const DriveState<Real>& at, DriveState<Real>& dx, double time) {
+        open_drive_derivative(drive, input, at, time, dx);
+      },
+      x, t, h);
+}
+
+template <class Real>
 class Plant {
  public:
   explicit Plant(Cases cases);
@@ -51,6 +63,12 @@ class Plant {
     apply_duty(drive_, input_, duty, dc_link_now_);
     source_ = {};
   }
+  // All switches open, or enabled again; one run in double only (the engine's packs never open their gates).
+  void set_gates(bool enabled) {
+    gates_open_ = !enabled;
+    if (gates_open_) open_stator();
+  }
+  [[nodiscard]] bool gates_open() const { return gates_open_; }
   // The period's process noise, added to the state at control tick k > 0.
   void disturb(std::int64_t tick);
   // From n h to (n+1) h.
@@ -72,6 +90,7 @@ class Plant {
   [[nodiscard]] const Circuit<Real>& circuit() const { return circuit_now_; }  // with its drift
   [[nodiscard]] Phases<Real> phase_currents() const { return phases_of(stator_current(drive_.machine, flux_of(x_))); }
   [[nodiscard]] Vec2<Real> voltage_at(std::int64_t n) const {
+    if (gates_open_) return open_stator_voltage(drive_.machine, flux_of(x_), drive_.machine.pole_pairs * x_[4]);
     const Vec2<Real> source = source_voltage(drive_, input_, static_cast<double>(n) * shape_.step_s);
     return stator_voltage(drive_, input_, source, stator_current(drive_.machine, flux_of(x_)));
   }
@@ -89,6 +108,10 @@ class Plant {
     Real now{};
   };
 
+  void open_stator() {
+    const MachineFlux<Real> psi = opened(drive_.machine, flux_of(x_));
+    x_[0] = psi.stator.x, x_[1] = psi.stator.y;
+  }
   void set_lines(std::int64_t n);
   // The factors at time t, on the line that holds at `on_line_at`: half a step later for the value just after a jump, whatever
   // the rounding of t against the knot.
@@ -118,6 +141,7 @@ class Plant {
       flux_noise_{NoiseStream<Real>(NoiseChannel("process_flux_alpha")),
                   NoiseStream<Real>(NoiseChannel("process_flux_beta"))};
   double still_from_ = 0.0, still_until_ = 0.0;  // no factor moves between these times
+  bool gates_open_ = false;
   bool lines_, load_walks_, current_moves_, flux_moves_;
 };
 

@@ -134,7 +134,12 @@ void Plant<Real>::step(std::int64_t n) {
   const bool drifts = !drifts_.empty();
   if (drifts) set_drift(middle, middle);
   if (lines_) set_lines(n);
-  advance(drive_, input_, source_, shape_.method, x_, t, h);
+  if (!gates_open_) {
+    advance(drive_, input_, source_, shape_.method, x_, t, h);
+  } else if constexpr (width_of<Real> == 1) {
+    open_stator();  // process noise and drift may have moved the fluxes
+    advance_open(drive_, input_, shape_.method, x_, t, h);
+  }
   // What sensors and rows see at the step's end is the value just after a jump there.
   const double end = static_cast<double>(n + 1 > 0 ? n + 1 : 0) * h;
   if (drifts) set_drift(end, end + 0.5 * h);

@@ -43,10 +43,17 @@ void prepare(int index, const Setup& setup, const Settings& settings, MethodShap
   apart<double>(state, 0, numbers.state);
 }
 
+[[noreturn]] void refuse_single(const std::string& kind) {
+  throw std::invalid_argument("precision = \"float\" is for the kinds built in, and \"" + kind +
+                              "\" was added by this program: leave it at \"double\"");
+}
+
 }  // namespace
 
-void prepare_estimator(RunSetup& run, const std::string& kind, const EstimatorSetup& setup, const Settings& settings) {
+void prepare_estimator(RunSetup& run, const std::string& kind, const EstimatorSetup& setup, const Settings& settings,
+                       bool single) {
   MethodShape shape;
+  shape.single = single;
   MethodNumbers numbers;
   std::shared_ptr<EstimatorPort> own;
   int index = 0;
@@ -58,13 +65,15 @@ void prepare_estimator(RunSetup& run, const std::string& kind, const EstimatorSe
     if (kind == name) own = make(setup, settings);
   }
   if (shape.index < 0 && !own) throw std::logic_error("no estimator of kind " + kind);
+  if (own && single) refuse_single(kind);
   run.shape.control.estimators.push_back(std::move(shape));
   run.estimators.push_back(std::move(numbers));
   run.own_estimators.push_back(std::move(own));
 }
 
-void prepare_controller(RunSetup& run, const std::string& kind, const ControllerSetup& setup,
-                        const Settings& settings) {
+void prepare_controller(RunSetup& run, const std::string& kind, const ControllerSetup& setup, const Settings& settings,
+                        bool single) {
+  run.shape.control.controller.single = single;
   int index = 0;
   each_controller_method([&]<class Method>() {
     if (kind == Method::kind) prepare<Method>(index, setup, settings, run.shape.control.controller, run.controller);
@@ -75,6 +84,7 @@ void prepare_controller(RunSetup& run, const std::string& kind, const Controller
   }
   if (run.shape.control.controller.index < 0 && !run.own_controller)
     throw std::logic_error("no controller of kind " + kind);
+  if (run.own_controller && single) refuse_single(kind);
 }
 
 bool is_built_in_estimator(std::string_view kind) {

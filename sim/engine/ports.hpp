@@ -34,9 +34,11 @@ using EstimatorPort = EstimatorPortOf<double>;
 using ControllerPort = ControllerPortOf<double>;
 
 // Adds to `run` the numbers of a method, prepared, with its state at the first tick. `kind` is built in or was added (the
-// reader has checked).
-void prepare_estimator(RunSetup& run, const std::string& kind, const EstimatorSetup& setup, const Settings& settings);
-void prepare_controller(RunSetup& run, const std::string& kind, const ControllerSetup& setup, const Settings& settings);
+// reader has checked). `single`: stepped in float; std::invalid_argument for a kind that is not built in.
+void prepare_estimator(RunSetup& run, const std::string& kind, const EstimatorSetup& setup, const Settings& settings,
+                       bool single);
+void prepare_controller(RunSetup& run, const std::string& kind, const ControllerSetup& setup, const Settings& settings,
+                        bool single);
 
 bool is_built_in_estimator(std::string_view kind);
 bool is_built_in_controller(std::string_view kind);

@@ -2,6 +2,7 @@
 
 #include <algorithm>
 #include <chrono>
+#include <limits>
 
 #include "sim/engine/clock.hpp"
 #include "sim/engine/run_in.hpp"
@@ -24,8 +25,15 @@ Run::Run(const Scenario& s, const RunOptions& options, std::int64_t first_tick)
       setup_(prepare_run(s, options.noise_run, first_tick)),
       loop_(loop_of(setup_)),
       events_(s),
-      estimate_row_(s.estimators.size() * estimator_column_count),
-      step_seconds_(s.estimators.size()) {}
+      step_seconds_(s.estimators.size()) {
+  if (options.outside) {
+    loop_.add_estimate();
+    loop_.take_no_estimates();
+    setup_.info.estimator_names.emplace_back(outside_name);
+    setup_.info.estimator_kinds.emplace_back(outside_name);
+  }
+  estimate_row_.resize(setup_.info.estimator_names.size() * estimator_column_count);
+}
 
 double Run::run_in() { return slipbench::run_in(loop_, setup_.plant); }
 
@@ -61,6 +69,27 @@ void Run::estimate() {
     loop_.estimate(i);
     step_seconds_[i] += std::chrono::duration<double>(std::chrono::steady_clock::now() - begun).count();
   }
+}
+
+void Run::control(std::int64_t k) { options_.outside ? control_from_outside(k) : loop_.control(k); }
+
+void Run::control_from_outside(std::int64_t k) {
+  loop_.refer(k);
+  const bool gates = !loop_.plant().gates_open();
+  const OutsideAct act = options_.outside->step({k, loop_.sensors().values(), loop_.sensors().encoder_edges(),
+                                                 loop_.speed_reference(), loop_.torque_reference(), gates});
+  loop_.set_last_estimate(act.estimate);
+  loop_.set_gates(act.gates);
+  if (gates && !act.gates && diodes_conduct(loop_.plant().voltage_at(0), loop_.plant().dc_link())) {
+    noticed_.push_back(
+        {k, static_cast<double>(k) * setup_.shape.control_period_s,
+         "the open machine's voltage is above the DC link: its diodes would brake, which is not modelled"});
+  }
+  Command<double> command;
+  command.duty = act.duty;
+  command.clipped = act.clipped ? 1.0 : 0.0;
+  command.rotor_flux_reference = std::numeric_limits<double>::quiet_NaN();
+  loop_.obey(command);
 }
 
 std::string text_of(Lost lost, const RunSetup& setup) {
@@ -115,13 +144,20 @@ struct Run::Host {
     while (const Event* event = run.events_.due(k)) run.act(*event);
     run.loop_.sense(k);
     run.estimate();
-    run.loop_.control(k);
+    run.control(k);
   }
   void look(std::int64_t n) {
     if (!observers.empty()) row = run.loop_.row(n);
   }
   bool tell_tick(std::int64_t k) {
-    const TickView view{k, row[P::time], &row, run.loop_.estimates(), run.loop_.clipped() != 0.0};
+    const TickView view{k,
+                        row[P::time],
+                        &row,
+                        run.loop_.estimates(),
+                        run.loop_.clipped() != 0.0,
+                        &run.loop_.sample(),
+                        run.loop_.measurement(),
+                        run.loop_.command()};
     for (RunObserver* o : observers) o->control_tick(view);
     if (run.diverged(k)) return false;
     const auto& keep_going = run.options_.keep_going;
@@ -148,6 +184,12 @@ void Run::go(std::span<RunObserver* const> observers) {
   outcome.simulated_s = static_cast<double>(n) * shape.plant.step_s;
   outcome.clipped_samples = static_cast<std::int64_t>(loop_.sensors().clipped());
   outcome.events = events_.acted();
+  if (options_.outside) {
+    for (const ActedEvent& e : options_.outside->events()) outcome.events.push_back(e);
+    for (const ActedEvent& e : noticed_) outcome.events.push_back(e);
+    std::stable_sort(outcome.events.begin(), outcome.events.end(),
+                     [](const ActedEvent& a, const ActedEvent& b) { return a.tick < b.tick; });
+  }
   for (const double seconds : step_seconds_)
     outcome.step_ns.push_back(timed_ticks_ > 0 ? seconds / static_cast<double>(timed_ticks_) * 1e9
                                                : std::numeric_limits<double>::quiet_NaN());

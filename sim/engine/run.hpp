@@ -29,6 +29,8 @@ class Run {
   struct Host;
   void act(const Event& event);
   void estimate();
+  void control(std::int64_t k);
+  void control_from_outside(std::int64_t k);
   void fill_estimate_row();
   [[nodiscard]] bool diverged(std::int64_t k);
 
@@ -36,6 +38,7 @@ class Run {
   RunSetup setup_;
   DriveLoop<double> loop_;
   Events events_;
+  std::vector<ActedEvent> noticed_;  // by the run itself
   std::vector<double> estimate_row_, step_seconds_;
   std::int64_t timed_ticks_ = 0;
 };

@@ -84,6 +84,7 @@ void Sensors<Real>::follow(const Plant<Real>& plant, std::int64_t step) {
 
 template <class Real>
 void Sensors<Real>::set_speed_fault(Fault fault, const Plant<Real>& plant) {
+  edges_held_ = encoder_edges();
   if (speed_fault_ == Fault::no_signal && fault != Fault::no_signal && shape_.speed.kind == SpeedSensorKind::encoder) {
     const Real per_rad = c_.speed.encoder.edges_per_rad;
     angle_unseen_ = angle_unseen_ + floor((plant.angle() - angle_unseen_ - angle_before_) * per_rad) / per_rad;

@@ -39,6 +39,10 @@ class Sensors {
   [[nodiscard]] const Reading<Real>& reading() const { return reading_; }
   [[nodiscard]] std::span<const Real> values() const { return {values_.data(), value_count_}; }  // in column order
   [[nodiscard]] const Real& clipped() const { return clipped_; }                                 // readings, counted
+  // Edges that the encoder's counter shows, a whole number: none pass without a signal, a stuck counter stays.
+  [[nodiscard]] Real encoder_edges() const {
+    return speed_fault_ == Fault::stuck ? edges_held_ : floor(angle_before_ * c_.speed.encoder.edges_per_rad);
+  }
   void save(SensorState<double>& to, std::size_t lane) const;
 
  private:
@@ -80,7 +84,8 @@ class Sensors {
   Three current_, voltage_;
   Channel dc_link_;
   SpeedSensorState<Real> speed_state_;
-  Real angle_before_;    // of the shaft as the encoder counts it, rad
+  Real angle_before_;  // of the shaft as the encoder counts it, rad
+  Real edges_held_{};
   Real angle_unseen_{};  // turned while the encoder gave no edges: a whole number of them
   Fault speed_fault_ = Fault::none;
   NoiseStream<Real> speed_noise_{NoiseChannel("speed")};

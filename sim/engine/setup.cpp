@@ -45,7 +45,7 @@ void prepare_control(RunSetup& run, const Scenario& s) {
 void prepare_methods(RunSetup& run, const Scenario& s, EstimatorSetup e) {
   for (const auto& estimator : s.estimators) {
     try {
-      prepare_estimator(run, estimator.kind, e, estimator.settings);
+      prepare_estimator(run, estimator.kind, e, estimator.settings, estimator.precision == "float");
     } catch (const std::invalid_argument& unfit) {
       const std::string what = "estimator '" + estimator.name + "' cannot be set up: " + unfit.what();
       throw InputError(s.path, "estimator." + std::to_string(run.estimators.size()), what, "estimator");
@@ -58,7 +58,7 @@ void prepare_methods(RunSetup& run, const Scenario& s, EstimatorSetup e) {
   c.start_rotor_flux_Wb = e.start_rotor_flux_Wb;
   c.start_speed_rad_s = e.start_speed_rad_s;
   try {
-    prepare_controller(run, s.controller.kind, c, s.controller.settings);
+    prepare_controller(run, s.controller.kind, c, s.controller.settings, s.controller.precision == "float");
   } catch (const std::invalid_argument& unfit) {
     throw InputError(s.path, "controller", std::string("the controller cannot be set up: ") + unfit.what(),
                      "controller");

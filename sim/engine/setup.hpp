@@ -53,7 +53,8 @@ struct SensorShape {
 
 // An estimator or controller: which one, and the choices that its settings make.
 struct MethodShape {
-  int index = -1;  // in the list of built-in ones; -1: a program's own, or none
+  int index = -1;       // in the list of built-in ones; -1: a program's own, or none
+  bool single = false;  // stepped in float
   std::vector<double> choices;
   bool operator==(const MethodShape&) const = default;
 };

@@ -10,6 +10,7 @@
 
 #include "sim/engine/events.hpp"
 #include "sim/engine/observer.hpp"
+#include "sim/engine/outside.hpp"
 #include "sim/engine/setup.hpp"
 #include "sim/scenario/scenario.hpp"
 
@@ -19,6 +20,7 @@ struct RunOptions {
   std::uint32_t noise_run = 0;                  // r: another draw of every noise, same seed
   std::function<bool(double done)> keep_going;  // called now and then with the share done; false stops the run
   bool time_steps = false;                      // measure each estimator's step (step_ns); costs a clock read a tick
+  OutsideController* outside = nullptr;         // takes the controller's place; no steady start, no mains
 };
 
 struct RunOutcome {
@@ -28,7 +30,7 @@ struct RunOutcome {
   double simulated_s = 0.0, wall_s = 0.0;  // wall_s leaves start-up out
   std::int64_t clipped_samples = 0;        // ADC readings at the end of their range
   std::vector<ActedEvent> events;          // that acted, in order
-  std::vector<double> step_ns;             // mean wall time of each estimator's step, in file order
+  std::vector<double> step_ns;             // mean wall time of each estimator's step, in file order; none of `board`
 };
 
 // Throws InputError where the scenario can't be run (no equilibrium for start = "steady", ...), OutsideError where the

@@ -65,12 +65,18 @@ void control_keys(std::vector<Key>& keys) {
       .with(speed_taking_controllers());
   k.number("delay_periods", AT(controller.delay_periods), "", {0, 2}, "control periods from sample to voltage");
   k.word("dead_time_compensation", AT(controller.dead_time_compensation), "add the believed inverter error");
+  k.word("precision", AT(controller.precision), "numbers of its step; float: as a single-precision board computes")
+      .words({"double", "float"});
   k.word("file", AT(controller.file), "gain file; keys given here override the file's").with({"state_feedback"});
   Rows estimator(keys, "estimator[]");
   estimator.word("name", AT(estimators[i].name), "letters, digits, _; unique").must();
   estimator.word("kind", AT(estimators[i].kind), "estimation method").must().words(estimator_kinds());
   estimator.word("file", AT(estimators[i].file), "gain file; keys given here override the file's")
       .with({"linear_observer"});
+  estimator
+      .word("precision", AT(estimators[i].precision),
+            "numbers of its step; float: as a single-precision board computes")
+      .words({"double", "float"});
 }
 
 void belief_and_score_keys(std::vector<Key>& keys) {

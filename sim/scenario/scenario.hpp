@@ -94,12 +94,14 @@ struct ControllerSettings {
   std::int64_t delay_periods = 1;
   bool dead_time_compensation = true;
   std::string file;                        // gain file
+  std::string precision = "double";        // double | float
   Settings settings;                       // of that kind
   [[nodiscard]] bool takes_speed() const;  // from a sensor or an estimator
 };
 
 struct EstimatorSettings {
   std::string name, kind, file;
+  std::string precision = "double";  // double | float
   Settings settings;
   [[nodiscard]] bool needs_speed() const;  // from a sensor
 };

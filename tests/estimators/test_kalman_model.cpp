@@ -82,7 +82,8 @@ TEST_CASE("extended_kalman: covariance prediction equals the dense product", "[e
     for (std::size_t c = r; c < 6; ++c) P.set(r, c, full(Eigen::Index(r), Eigen::Index(c)));
   }
   const Matrix6 wanted = dense(F) * full * dense(F).transpose();
-  CHECK((dense(sandwich(F, P)) - wanted).cwiseAbs().maxCoeff() < 1e-13 * wanted.cwiseAbs().maxCoeff());  // rounding
+  CHECK((dense(sandwich(F, P, true)) - wanted).cwiseAbs().maxCoeff() <
+        1e-13 * wanted.cwiseAbs().maxCoeff());  // rounding
 }
 
 // Exact solution: exponential of the complex 2 x 2, by Eigen's own (Pade) matrix functions, with constant

@@ -29,6 +29,7 @@ ARROWS = {
     "sim/linear": RUN + ("sim/linear",),
     "sim/record": RUN + ("sim/record",),
     "sim/stream": RUN + ("sim/stream",),
+    "sim/export": RUN + ("sim/export",),
     "sim/board": RUN + ("sim/board",),
     "sim/sweep": RUN + ("sim/score", "sim/record", "sim/sweep"),
     "tools": DRIVE + ("sim", "tools"),
@@ -36,8 +37,8 @@ ARROWS = {
     "tests/tools": DRIVE + ("sim", "tests", "tools"),
 }
 
-# A project of somebody else that stands here as a test: its own files are included from beside each other.
-STRANGER = "tests/outside"
+# A project of somebody else that stands here as a test, and programs for a board: their own files are included from beside each other.
+STRANGERS = ("tests/outside", "tools/firmware")
 
 # Libraries that one place alone knows: header as a pattern, folders that may include it, what is meant.
 LIBRARIES = (
@@ -87,7 +88,7 @@ def includes(tree):
 def arrows(tree):
     for path, number, bracket, header in includes(tree):
         ours = header.split("/")[0] in FOLDERS and "/" in header
-        if inside(path, STRANGER) and f"{os.path.dirname(path)}/{header}" in tree:
+        if any(inside(path, stranger) for stranger in STRANGERS) and f"{os.path.dirname(path)}/{header}" in tree:
             continue
         if bracket == '"' and header not in tree:
             yield f"{path}:{number}: \"{header}\" is no file here: quoted includes run from the top folder"

@@ -56,7 +56,7 @@ configs = {f"./usr/share/slipbench/{p.relative_to(source)}" for p in (source / "
 check(len(headers) > 50 and headers <= files, f"all {len(headers)} headers {sorted(headers - files)[:5]}")
 check(len(configs) > 5 and configs <= files, f"all {len(configs)} files of configs/ {sorted(configs - files)[:5]}")
 known = re.compile(r"\./usr/(bin/slipbench|lib/libslipbench_[a-z_]+\.a|lib/cmake/slipbench/slipbench(Config|Targets)[\w-]*\.cmake|"
-                   r"share/doc/slipbench/(README\.md|LICENSE|copyright|sim/stream/README\.md)|share/man/man\d/slipbench[\w-]*\.\d(\.gz)?|"
+                   r"share/doc/slipbench/(README\.md|LICENSE|copyright|sim/(stream|board)/README\.md)|libexec/slipbench/board_(host|semihosting\.elf|uart\.elf)|share/man/man\d/slipbench[\w-]*\.\d(\.gz)?|"
                    r"share/(bash-completion/completions/slipbench|zsh/(site-functions|vendor-completions)/_slipbench))")
 rest = files - headers - configs
 strange = sorted(f for f in rest if not known.fullmatch(f))
@@ -72,5 +72,8 @@ check(output(command, "--version").split() == ["slipbench", version], "unpacked,
 unpacked = json.loads(output(command, "run", scenario, "--json"))
 built = json.loads(output(build / "tools/slipbench/slipbench", "run", scenario, "--json"))
 check(unpacked["digest"] == built["digest"], "and runs a shipped scenario to the same bits as the build's")
+driven = json.loads(output(command, "board", scenario.parent / "board_conveyor.toml", "--lock-step", "--link", "host", "--set", "run.duration_s=0.1",
+                           "--set", "score.from_s=0.0", "--json"))
+check(driven["board"]["answers"] == 1001, "and the firmware that came along closes a loop")
 check("qualified people" in (tree / "usr/share/doc/slipbench/README.md").read_text(), "the cautions came along")
 sys.exit(1 if failures else 0)

@@ -2,6 +2,7 @@
 // float (and double); folding and identities never change a bit.
 #include <dlfcn.h>
 
+#include <bit>
 #include <catch2/catch.hpp>
 #include <cmath>
 #include <cstdlib>
@@ -12,7 +13,7 @@
 #include <vector>
 
 #include "plant/math/elementary.hpp"
-#include "plant/math/symbol.hpp"
+#include "plant/math/symbol_text.hpp"
 #include "sim/engine/steppers.hpp"
 #include "tests/plant/bits.hpp"
 #include "tests/plant/machines.hpp"
@@ -80,10 +81,28 @@ std::array<Real, 10> elementary(const Real& x, const Real& y) {
           sqrt(fabs(x)) / y};
 }
 
+// The same as calls, each one function in the emitted code, with choices and whole numbers beside them.
+template <class Real>
+std::array<Real, 12> as_calls(const Real& x, const Real& y) {
+  const auto angle = sincos(x), turned = sincos_turns(y);
+  return {angle.sin,
+          angle.cos,
+          turned.sin,
+          turned.cos,
+          atan2(y, x),
+          exp(x),
+          log(fabs(y)),
+          wrap_angle(x),
+          clamp(x, -fabs(y), fabs(y)),
+          min(x, y) - max(y, x * x),
+          floor(x) - (x - (y - x)),
+          -(x * (y / (x + y))) / (x * y)};
+}
+
 template <class S>
 void check_against_simulation(const std::string& name, const std::string& optimisation) {
   using R = Symbol<S>;
-  Program<S> right_hand_side, step, functions;
+  Program<S> right_hand_side, step, functions, calls;
   for (auto* program : {&right_hand_side, &step}) {
     MachineOnVoltage<R> machine;
     MachineState<R> x;
@@ -97,19 +116,23 @@ void check_against_simulation(const std::string& name, const std::string& optimi
   }
   const R x = functions.input("x"), y = functions.input("y");
   functions.outputs(elementary(x, y), "out");
+  const R p = calls.input("x"), q = calls.input("y");
+  calls.outputs(as_calls(p, q), "out");
 
   Compiled compiled(name);
   compiled.add(right_hand_side, "machine_rates");
   compiled.add(step, "machine_step");
   compiled.add(functions, "elementary");
+  compiled.add(calls, "as_calls");
   compiled.build(optimisation);
   auto* c_rates = compiled.template function<void(const S*, const S*, S*)>("machine_rates");
   auto* c_step = compiled.template function<void(const S*, S*)>("machine_step");
+  auto* c_calls = compiled.template function<void(const S*, S*)>("as_calls");
   auto* c_functions = compiled.template function<void(const S*, S*)>("elementary");
 
   std::mt19937_64 bits(7);
   std::uniform_real_distribution<double> unit(-1.0, 1.0);
-  std::size_t different_rates = 0, different_steps = 0, different_functions = 0;
+  std::size_t different_rates = 0, different_steps = 0, different_functions = 0, different_calls = 0;
   for (int i = 0; i < 100000; ++i) {
     auto machine = in_number<MachineOnVoltage<S>, S>(test_machine());
     each_number(machine, [&](S& number) { number *= static_cast<S>(1.0 + 0.3 * unit(bits)); });
@@ -132,10 +155,15 @@ void check_against_simulation(const std::string& name, const std::string& optimi
     c_functions(in, out);
     const auto expected = elementary(in[0], in[1]);
     for (std::size_t k = 0; k < 10; ++k) different_functions += !same_bits(out[k], expected[k]);
+    S called[12];
+    c_calls(in, called);
+    const auto expected_call = as_calls(in[0], in[1]);
+    for (std::size_t k = 0; k < 12; ++k) different_calls += !same_bits(called[k], expected_call[k]);
   }
   CHECK(different_rates == 0);
   CHECK(different_steps == 0);
   CHECK(different_functions == 0);
+  CHECK(different_calls == 0);
 }
 
 template <class S>
@@ -211,6 +239,51 @@ TEST_CASE("symbol: shared subexpressions and names show in the text", "[plant][s
   CHECK(c.find("void ratio(const float in[2], float out[2])") != std::string::npos);
   CHECK(c.find("const float double_2 = in[1]") != std::string::npos);
   CHECK(c.find("sqrtf(length2)") != std::string::npos);
+}
+
+TEST_CASE("symbol: floor without a library is that of the C library to the bit", "[plant][symbol][bits]") {
+  Program<float> p;
+  p.output("y", floor(p.input("x")));
+  Compiled compiled("floor");
+  compiled.add(p, "own_floor");
+  compiled.build("-O2");
+  auto* own = compiled.function<void(const float*, float*)>("own_floor");
+  std::size_t different = 0;
+  for (std::uint64_t bits = 0; bits < (std::uint64_t{1} << 32); bits += 997) {  // a prime: all exponents, both signs
+    const float x = std::bit_cast<float>(static_cast<std::uint32_t>(bits));
+    float y;
+    own(&x, &y);
+    different += std::isnan(x) ? !std::isnan(y) : bits_of(y) != bits_of(std::floor(x));
+  }
+  for (const float x : {-0.0f, 0.0f, -0.5f, 0.5f, 8388607.5f, -8388607.5f, 8388608.0f, 4194304.5f, -1.0f}) {
+    float y;
+    own(&x, &y);
+    different += bits_of(y) != bits_of(std::floor(x));
+  }
+  CHECK(different == 0);
+}
+
+TEST_CASE("symbol: labels and headings of a step show, names of constants and how others came about",
+          "[plant][symbol]") {
+  Program<float> p;
+  using R = Symbol<float>;
+  const R resistance = R::named(1.48, "R_s"), period = R::named(1e-4, "T");
+  {
+    const Program<float>::Listening listening(p);
+    const R i = p.input("i");
+    section<R>("drop = R_s i");
+    const R drop = resistance * i;
+    SLIPBENCH_LABEL(drop)
+    p.output("u", drop * (i - drop) + (resistance * period) * i);
+  }
+  section<R>("heard by nobody");
+  const Body<float> body = body_of(p, {}, Constants::named, "");
+  CHECK(body.constants.find("static const float R_s = 0x1.7ae148p+0f; /* 1.48 */") != std::string::npos);
+  CHECK(body.constants.find("= R_s * T */") != std::string::npos);
+  CHECK(body.statements.find("/* drop = R_s i */\n  const float drop = ") != std::string::npos);
+  CHECK(body.statements.find("nobody") == std::string::npos);
+  CHECK(body.operations.multiply == 3);
+  CHECK(body.operations.add == 2);
 }
 
 TEST_CASE("symbol: two programs never mix", "[plant][symbol]") {

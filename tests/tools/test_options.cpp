@@ -43,6 +43,42 @@ TEST_CASE("command line: verb, file and options in any order after the verb", "[
   CHECK_FALSE(compare.request->seed);
 }
 
+TEST_CASE("command line: a board needs a link, and says how it is driven", "[tools][contract]") {
+  using Catch::Contains;
+  const auto line = parse_command_line({"board", "a.toml", "--lock-step", "--link", "pipe:./b --x", "--watchdog", "7",
+                                        "--answer-within", "20", "--record", "r.frames"});
+  REQUIRE(line.request);
+  CHECK((line.request->lock_step && line.request->link == "pipe:./b --x" && line.request->record == "r.frames"));
+  CHECK((line.request->watchdog == 7 && line.request->answer_within_ms == 20));
+  CHECK_THAT(refusal({"board", "a.toml", "--link", "host"}), Contains("--lock-step"));
+  CHECK_THAT(refusal({"board", "a.toml", "--lock-step"}), Contains("needs --link"));
+  CHECK_THAT(refusal({"board", "a.toml", "--lock-step", "--link", "host", "--watchdog", "0"}), Contains("from 1"));
+  CHECK_THAT(refusal({"board", "a.toml", "--lock-step", "--link", "host", "--answer-within", "x"}),
+             Contains("--answer-within"));
+  CHECK_THAT(refusal({"board", "a.toml", "--lock-step", "--link", "host", "--record", "r.csv"}), Contains(".frames"));
+  CHECK_THAT(refusal({"run", "a.toml", "--link", "host"}), Contains("--link means nothing for run"));
+}
+
+TEST_CASE("command line: what export is told", "[tools][contract]") {
+  const auto line = parse_command_line({"export", "a.toml", "--estimator", "x", "--estimator", "y", "--controller",
+                                        "--precision", "double", "--to", "there"});
+  CHECK(line.request->estimators == std::vector<std::string>{"x", "y"});
+  CHECK(line.request->export_controller);
+  CHECK(line.request->double_precision);
+  CHECK(line.request->to == "there");
+  const auto cost =
+      parse_command_line({"export", "a.toml", "--cost", "--clock-mhz", "168", "--clocks-per-instruction", "1.2..2"});
+  CHECK(cost.request->cost);
+  CHECK(cost.request->band.clock_MHz == 168.0);
+  CHECK(cost.request->band.least == 1.2);
+  CHECK(cost.request->band.most == 2.0);
+  CHECK(cost.request->band.least_us(1680) == Approx(12.0));
+  CHECK_THAT(refusal({"export", "a.toml", "--clock-mhz", "168"}), Catch::Contains("needs --cost"));
+  CHECK_THAT(refusal({"export", "a.toml", "--cost", "--clocks-per-instruction", "3..2"}),
+             Catch::Contains("LOW is above HIGH"));
+  CHECK_THAT(refusal({"run", "a.toml", "--cost"}), Catch::Contains("it belongs to: export"));
+}
+
 TEST_CASE("command line: help shows an example and the cautions for every verb", "[tools][contract]") {
   for (const std::string verb : {"run", "check", "compare"}) {
     const std::string text = parse_command_line({verb, "--help"}).text;

@@ -37,17 +37,25 @@ std::span<const VerbRow> verb_rows() {
        {"slipbench design configs/systems/two_mass_shaft.toml --figure loops.svg",
         "slipbench design configs/systems/hidden_mode.toml --set design.R=[[0.1]] --json",
         "slipbench design configs/scenarios/conveyor_hot_rotor.toml --write gains.toml"}},
+      {"board",
+       "close the loop of a simulated drive with a controller board, and score the board's own estimates",
+       "scenario file",
+       {"slipbench board configs/scenarios/board_conveyor.toml --lock-step --link host --figure board.svg"}},
+      {"export",
+       "write estimators and the controller of a scenario as C99 for a board, with test vectors",
+       "scenario file",
+       {"slipbench export configs/scenarios/conveyor_hot_rotor.toml --estimator ekf --to board_code"}},
   };
   return rows;
 }
 
 std::span<const OptionRow> option_rows() {
   static constexpr OptionRow rows[] = {
-      {"--set", "KEY=VALUE", "run check compare sweep analyse design",
+      {"--set", "KEY=VALUE", "run check compare sweep analyse design board export",
        "set a key of the file, dotted; VALUE is TOML or text; repeatable", Takes::key},
-      {"--seed", "N", "run check compare sweep analyse design", "seed of every noise; wins over the file and --set",
-       Takes::number},
-      {"--run", "R", "run", "take noise run R, as `compare` numbers them from 0", Takes::number},
+      {"--seed", "N", "run check compare sweep analyse design board export",
+       "seed of every noise; wins over the file and --set", Takes::number},
+      {"--run", "R", "run board", "take noise run R, as `compare` numbers them from 0", Takes::number},
       {"--runs", "N", "compare", "noise runs (20)", Takes::number},
       {"--in-loop", "", "compare", "each estimator closes the speed loop in turn, instead of all riding along"},
       {"--threads", "N", "compare sweep", "threads (all cores); the results do not depend on it", Takes::number},
@@ -72,12 +80,13 @@ std::span<const OptionRow> option_rows() {
        Takes::number},
       {"--slurm", "OPTION[=VALUE]", "sweep",
        "with --on slurm: an option for sbatch, as in partition=main, account=x, time=2:00:00, nodelist=n1; repeatable"},
-      {"--trace", "FILE.csv|FILE.h5", "run", "write the trace, as CSV or HDF5", Takes::file},
-      {"--figure", "FILE.svg", "run compare sweep analyse design", "draw the result", Takes::file},
+      {"--trace", "FILE.csv|FILE.h5", "run board", "write the trace, as CSV or HDF5", Takes::file},
+      {"--figure", "FILE.svg", "run compare sweep analyse design board", "draw the result", Takes::file},
       {"--figure-of", "FIGURE", "sweep",
        "what --figure draws, as in ekf.angle_rmse_deg, or angle_rmse_deg for all estimators (speed_rmse_rpm)"},
-      {"--publish", "ENDPOINT", "run", "publish the run as it happens: tcp://HOST:PORT, ipc://PATH or PORT (loopback)"},
-      {"--publish-wait", "N", "run", "start when N subscribers are there", Takes::number},
+      {"--publish", "ENDPOINT", "run board",
+       "publish the run as it happens: tcp://HOST:PORT, ipc://PATH or PORT (loopback)"},
+      {"--publish-wait", "N", "run board", "start when N subscribers are there", Takes::number},
       {"--pace", "FACTOR", "run", "run no faster than FACTOR times real time", Takes::number},
       {"--period", "S", "analyse",
        "of a continuous system: discretise at this period in s, and say what each method costs", Takes::number},
@@ -86,18 +95,38 @@ std::span<const OptionRow> option_rows() {
        Takes::word},
       {"--model", "constant_speed|unknown_load|known_load", "analyse",
        "with --map speed_observability: what is known of the shaft (constant_speed)", Takes::word},
-      {"--estimator", "NAME", "analyse",
-       "with --map estimator_stability: of the scenario, or a built-in kind (the scenario's first, else luenberger)"},
+      {"--estimator", "NAME", "analyse export",
+       "stability is mapped of this one of the scenario, or of a built-in kind (the scenario's first, else "
+       "luenberger); "
+       "export: write this one; repeatable (all estimators and the controller)"},
       {"--path", "FILE.csv", "analyse", "with --map speed_observability: the run's way through the plane as CSV",
        Takes::file},
       {"--at", "HZ", "analyse design", "gain and phase at this frequency (design: the slowest mode's)", Takes::number},
+      {"--lock-step", "", "board", "the drive waits for the board at every tick; the one way there is so far"},
+      {"--link", "LINK", "board",
+       "where the board is: pipe:COMMAND, unix:PATH, serial:DEVICE[@BAUD], replay:FILE.frames, or the firmware of this "
+       "build: host (as a process), emulated (Cortex-M4F under QEMU), emulated_uart"},
+      {"--record", "FILE.frames", "board",
+       "keep the board's answers; --link replay:FILE.frames runs them again without it", Takes::file},
+      {"--watchdog", "N", "board", "missing answers in a row that open the gates (3)", Takes::number},
+      {"--answer-within", "MS", "board", "an answer that takes longer is missing (500)", Takes::number},
       {"--keys", "", "check", "in place of FILE: every key of a scenario, with range, default and meaning", {}, true},
       {"--markdown", "", "check", "with --keys: as Markdown tables"},
       {"--schema", "[scenario|machine|system]", "check",
        "in place of FILE: JSON Schema of such files, for TOML editors", Takes::word, true},
-      {"--json", "", "run check compare sweep analyse design", "one JSON document on standard output, nothing else"},
-      {"--quiet", "", "run check compare sweep analyse design", "print nothing but errors"},
-      {"--progress", "", "run compare sweep analyse", "show progress on standard error even if it is no terminal"},
+      {"--controller", "", "export", "the controller"},
+      {"--precision", "float|double", "export", "numbers of the C code (float)", Takes::word},
+      {"--to", "FOLDER", "export", "where the files go (exported)"},
+      {"--cost", "", "export",
+       "count each step's instructions on an emulated Cortex-M4F (arm-none-eabi-gcc, qemu-system-arm)"},
+      {"--clock-mhz", "N", "export", "with --cost: clock of the board (100)", Takes::number},
+      {"--clocks-per-instruction", "LOW..HIGH", "export",
+       "with --cost: the band that instructions are turned into time with (1.0..2.5)"},
+      {"--json", "", "run check compare sweep analyse design board export",
+       "one JSON document on standard output, nothing else"},
+      {"--quiet", "", "run check compare sweep analyse design board export", "print nothing but errors"},
+      {"--progress", "", "run compare sweep analyse board",
+       "show progress on standard error even if it is no terminal"},
   };
   return rows;
 }
@@ -115,9 +144,11 @@ std::span<const OptionRow> program_rows() {
 std::span<const StatusRow> status_rows() {
   static constexpr StatusRow rows[] = {
       {0, "done"},
-      {1, "it ran, but the result is bad: diverged, or an estimator lost in `run`"},
+      {1,
+       "it ran, but the result is bad: diverged, an estimator lost in `run`, gates opened by the watchdog in `board`, "
+       "nothing fit for `export`"},
       {2, "bad usage, or a bad or missing input file"},
-      {3, "something outside failed: an output file, standard output, the network"},
+      {3, "something outside failed: an output file, standard output, the network, a controller board"},
       {130, "interrupted; what was done is kept"},
   };
   return rows;

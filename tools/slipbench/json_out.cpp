@@ -3,9 +3,11 @@
 #include <cmath>
 #include <nlohmann/json.hpp>
 
+#include "sim/board/budget.hpp"
 #include "sim/scenario/scenario.hpp"
 #include "sim/sweep/worst_case.hpp"
 #include "tools/slipbench/comparison.hpp"
+#include "tools/slipbench/export_result.hpp"
 #include "tools/slipbench/run_result.hpp"
 #include "tools/slipbench/sweep_result.hpp"
 
@@ -61,6 +63,33 @@ void add_sensitivities(Json& document, const SweepResult& r) {
   document["sensitivity_points"] = std::move(points);
 }
 
+Json board_of(const BoardResult& b) {
+  const ExchangeFigures& f = b.exchange;
+  const BoardOutcome& o = b.outcome;
+  Json board = {{"link", b.link},
+                {"name", b.name},
+                {"samples", f.samples},
+                {"answers", f.answers},
+                {"missing", f.missing},
+                {"damaged", f.damaged},
+                {"late", f.late},
+                {"doubled", f.doubled},
+                {"strange", f.strange},
+                {"restarts", f.restarts},
+                {"fault", o.fault},
+                {"gates_opened_at_s", nullptr},
+                {"gone", nullptr},
+                {"exchange_p50_us", f.round_trip_p50_us},
+                {"exchange_p99_us", f.round_trip_p99_us},
+                {"exchange_max_us", f.round_trip_max_us}};
+  if (o.lost) board["gates_opened_at_s"] = static_cast<double>(o.opened_tick) * b.control_period_s;
+  if (o.gone) board["gone"] = o.why;
+  if (!b.used_unit.empty() && f.answers > 0)
+    board["used"] = {{"unit", b.used_unit}, {"least", f.used_least}, {"mean", f.used_mean}, {"most", f.used_most}};
+  if (b.baud > 0.0) board["serial"] = {{"baud", b.baud}, {"exchange_us", 1e6 * serial_exchange_s(b.baud)}};
+  return board;
+}
+
 }  // namespace
 
 std::string json_document(const RunResult& r) {
@@ -90,6 +119,7 @@ std::string json_document(const RunResult& r) {
     document["estimators"][e.name] = std::move(entry);
     document["digest"][e.name] = e.digest;
   }
+  if (r.board) document["board"] = board_of(*r.board);
   if (r.stream) {
     document["stream"] = {{"endpoint", r.stream->endpoint},
                           {"subscribers", r.stream->subscribers},
@@ -187,6 +217,41 @@ std::string json_document(const CheckDocument& check) {
   document["facts"] = Json::object();
   for (const Fact& fact : check.facts) {
     document["facts"][fact.key] = fact.text.empty() ? value_of(fact.number) : Json(fact.text);
+  }
+  return text_of(document);
+}
+
+std::string json_document(const ExportResult& r) {
+  Json document = {
+      {"slipbench", SLIPBENCH_VERSION}, {"scenario", r.scenario}, {"format", export_format},
+      {"precision", r.precision},       {"folder", r.folder},     {"control_period_s", r.control_period_s}};
+  document["parts"] = Json::object();
+  for (std::size_t i = 0; i < r.parts.size(); ++i) {
+    const ExportedPart& part = r.parts[i];
+    const OperationCount& o = part.operations;
+    Json entry = {
+        {"kind", part.kind}, {"state_bytes", part.state_bytes}, {"vector_ticks", part.stretches * part.ticks}};
+    entry["operations"] = {{"all", o.all()},     {"add", o.add},          {"multiply", o.multiply},
+                           {"divide", o.divide}, {"square_root", o.root}, {"compare", o.compare},
+                           {"choose", o.choose}, {"other", o.other}};
+    entry["files"] = Json::array();
+    for (const ExportedFile& file : part.files) entry["files"].push_back(file.name);
+    if (i < r.costs.size()) {
+      const BoardCost& c = r.costs[i];
+      entry["cortex_m4f"] = {{"instructions_least", c.least},
+                             {"instructions_mean", c.mean},
+                             {"instructions_most", c.most},
+                             {"ticks", c.ticks},
+                             {"flash_bytes", c.flash_bytes}};
+    }
+    document["parts"][part.name] = std::move(entry);
+  }
+  if (!r.costs.empty()) {
+    document["clock_MHz"] = r.band.clock_MHz;
+    document["clocks_per_instruction"] = {r.band.least, r.band.most};
+    document["shortest_control_period_us"] = Json::object();
+    for (const ShortestPeriod& p : r.periods())
+      document["shortest_control_period_us"][p.of] = {r.band.least_us(p.instructions), r.band.most_us(p.instructions)};
   }
   return text_of(document);
 }

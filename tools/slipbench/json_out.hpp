@@ -12,6 +12,7 @@ struct RunResult;
 struct Comparison;
 struct SweepResult;
 struct WorstCase;
+struct ExportResult;
 
 struct ErrorDocument {
   std::string place, key, message, code;
@@ -34,6 +35,7 @@ std::string json_document(const SweepResult& sweep);
 // `file`: what it was written to, "" for none.
 std::string json_document(const WorstCase& worst, const std::string& figure, const std::string& file);
 std::string json_document(const CheckDocument& check);
+std::string json_document(const ExportResult& result);
 std::string json_document(const ErrorDocument& error);
 
 }  // namespace slipbench

@@ -29,9 +29,11 @@ int work(const std::vector<std::string>& arguments) {
   }
   if (line.request->verb == "run") return run_verb(*line.request);
   if (line.request->verb == "check") return check_verb(*line.request);
+  if (line.request->verb == "export") return export_verb(*line.request);
   if (line.request->verb == "sweep") return sweep_verb(*line.request);
   if (line.request->verb == "analyse") return analyse_verb(*line.request);
   if (line.request->verb == "design") return design_verb(*line.request);
+  if (line.request->verb == "board") return board_verb(*line.request);
   return compare_verb(*line.request);
 }
 

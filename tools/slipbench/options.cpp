@@ -70,6 +70,18 @@ bool is_verb(std::string_view word) {
   refuse(name, fmt::format("unknown option '{}' of {}; the nearest is {}", name, verb, nearest(name, known)));
 }
 
+// LOW..HIGH, as in 1.0..2.5.
+void read_band(const std::string& text, ClockBand& band) {
+  const std::size_t dots = text.find("..");
+  if (dots == std::string::npos)
+    refuse("--clocks-per-instruction",
+           fmt::format("--clocks-per-instruction '{}': expected LOW..HIGH, as in 1.0..2.5", text));
+  band.least = positive_number("--clocks-per-instruction", text.substr(0, dots));
+  band.most = positive_number("--clocks-per-instruction", text.substr(dots + 2));
+  if (band.least > band.most)
+    refuse("--clocks-per-instruction", fmt::format("--clocks-per-instruction '{}': LOW is above HIGH", text));
+}
+
 Shard shard_of(const std::string& text) {
   const std::size_t slash = text.find('/');
   if (slash == std::string::npos || text.find('/', slash + 1) != std::string::npos) {
@@ -189,6 +201,22 @@ Request request_of(const std::string& verb, Given& given) {
     if (r.on_slurm && !given.values[name].empty())
       refuse(name, fmt::format("{} does not go with --on slurm, which cuts and joins the shards itself", name));
   }
+  r.estimator = verb == "export" ? "" : text("--estimator");
+  r.estimators = given.values["--estimator"];
+  r.export_controller = given.flags["--controller"], r.cost = given.flags["--cost"];
+  if (flag("--precision")) {
+    for (const OptionRow& row : option_rows()) {
+      if (row.name == "--precision") want_word(row, text("--precision"));
+    }
+    r.double_precision = text("--precision") == "double";
+  }
+  if (flag("--to")) r.to = text("--to");
+  if (r.to.empty()) refuse("--to", "--to needs the name of a folder");
+  for (const char* name : {"--clock-mhz", "--clocks-per-instruction"}) {
+    if (flag(name) && !r.cost) refuse(name, fmt::format("{} needs --cost beside it", name));
+  }
+  if (flag("--clock-mhz")) r.band.clock_MHz = positive_number("--clock-mhz", text("--clock-mhz"));
+  if (flag("--clocks-per-instruction")) read_band(text("--clocks-per-instruction"), r.band);
   if (flag("--case")) r.plan_case = whole_number<std::uint64_t>("--case", text("--case"), 0, most_cases);
   if (flag("--shard")) r.shard = shard_of(text("--shard"));
   if (flag("--threads")) r.threads = whole_number<unsigned>("--threads", text("--threads"), 1, 1024);
@@ -196,10 +224,20 @@ Request request_of(const std::string& verb, Given& given) {
   if (flag("--publish-wait"))
     r.publish_wait = whole_number<unsigned>("--publish-wait", text("--publish-wait"), 1, 1024);
   if (r.publish_wait > 0 && !r.publish) refuse("--publish-wait", "--publish-wait needs --publish ENDPOINT beside it");
+  r.lock_step = given.flags["--lock-step"], r.link = text("--link"), r.record = text("--record");
+  if (flag("--watchdog")) r.watchdog = whole_number<unsigned>("--watchdog", text("--watchdog"), 1, 1000000);
+  if (flag("--answer-within"))
+    r.answer_within_ms = whole_number<unsigned>("--answer-within", text("--answer-within"), 1, 60000);
+  if (verb == "board" && !r.lock_step)
+    refuse("--lock-step", "board runs in lock-step only so far: say --lock-step, so that a paced run may come later");
+  if (verb == "board" && r.link.empty())
+    refuse("--link", "board needs --link: pipe:COMMAND, unix:PATH, serial:DEVICE, host, emulated or emulated_uart");
+  if (flag("--record") && !r.record.ends_with(".frames") && !r.record.starts_with("/dev/"))
+    refuse("--record", fmt::format("--record '{}': expected a name that ends in .frames", r.record));
   if (flag("--pace")) r.pace = positive_number("--pace", text("--pace"));
   if (flag("--period")) r.period_s = positive_number("--period", text("--period"));
   if (flag("--at")) r.at_Hz = positive_number("--at", text("--at"));
-  r.map = text("--map"), r.speed_model = text("--model"), r.estimator = text("--estimator"), r.path = text("--path");
+  r.map = text("--map"), r.speed_model = text("--model"), r.path = text("--path");
   for (const OptionRow& row : option_rows()) {
     if ((row.name == "--map" || row.name == "--model") && flag(row.name.data())) want_word(row, text(row.name.data()));
   }

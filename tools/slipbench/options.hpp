@@ -8,6 +8,7 @@
 
 #include "sim/scenario/read.hpp"
 #include "sim/sweep/sweep.hpp"
+#include "tools/slipbench/clock_band.hpp"
 
 namespace slipbench {
 
@@ -35,6 +36,15 @@ struct Request {
   double period_s = 0.0, at_Hz = 0.0;             // analyse, design; 0: not asked
   std::string map, speed_model, estimator, path;  // analyse of a drive; "": not asked
   std::optional<std::uint64_t> plan_case;         // run PLAN --case K
+  bool lock_step = false;                         // board: --lock-step
+  std::string link, record;                       // board: --link LINK, --record FILE; "": none
+  unsigned watchdog = 3, answer_within_ms = 500;
+  std::vector<std::string> estimators;  // export: --estimator NAME, repeatable
+  bool export_controller = false;       // export: --controller
+  bool double_precision = false;        // export: --precision double
+  std::string to = "exported";          // export: --to FOLDER
+  bool cost = false;                    // export: --cost
+  ClockBand band;                       // export: --clock-mhz, --clocks-per-instruction
   bool keys = false, markdown = false;
   std::string schema;  // check: of "scenario", "machine" or "system" files; "": none
   [[nodiscard]] bool wants_reference() const { return keys || !schema.empty(); }  // then there is no file

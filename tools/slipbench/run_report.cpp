@@ -75,6 +75,10 @@ std::string status_text(const RunResult& result) {
   if (result.outcome.diverged) {
     text += fmt::format("DIVERGED at {} s: {}\n", plain(result.outcome.diverged_at_s), result.outcome.diverged_what);
   }
+  if (result.board && result.board->outcome.lost) {
+    text += fmt::format("GATES OPENED by the watchdog at {} s; the drive coasted from there\n",
+                        plain(static_cast<double>(result.board->outcome.opened_tick) * result.board->control_period_s));
+  }
   for (const EstimatorResult& e : result.estimators) {
     if (e.figures.lost_at_s) text += fmt::format("LOST: {} at {} s\n", e.name, plain(e.figures.lost_at_s, 4));
   }
@@ -99,6 +103,7 @@ std::string run_summary(const RunResult& result) {
   text += "Drive\n" + drive_text(result);
   if (!o.events.empty()) text += "\nEvents\n" + event_text(o.events);
   if (!result.estimators.empty()) text += "\nEstimates against the truth\n" + estimator_text(result);
+  if (result.board) text += "\nBoard\n" + board_summary(*result.board);
   const std::string status = status_text(result);
   if (!status.empty()) text += "\n" + status;
   if (!result.files.empty()) text += fmt::format("\n{}\n", fmt::join(result.files, "\n"));

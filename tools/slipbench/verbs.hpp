@@ -16,6 +16,8 @@ int compare_verb(const Request& request);
 int sweep_verb(const Request& request);
 int analyse_verb(const Request& request);
 int design_verb(const Request& request);
+int board_verb(const Request& request);
+int export_verb(const Request& request);
 int search_verb(const Request& request);  // sweep --search
 // sweep --on slurm.
 ClusterOutcome sweep_on_slurm(const Request& request, const SweepPlan& plan, Store& store);

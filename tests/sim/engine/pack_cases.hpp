@@ -113,6 +113,14 @@ inline std::vector<Family> families() {
                    return s;
                  },
                  own_run});
+  all.push_back({"controller and estimators in float",
+                 [=](std::size_t i) {
+                   return conveyor({{"controller.precision", "float"},
+                                    {"estimator.0.precision", "float"},
+                                    {"estimator.2.precision", "float"},
+                                    {"belief.rotor_resistance", number(0.7 + 0.1 * of(i))}});
+                 },
+                 own_run});
   all.push_back({"process noise",
                  [=](std::size_t i) {
                    return conveyor({{"process_noise.load_torque_Nm", number(i % 3 == 0 ? 0.0 : of(i))},
