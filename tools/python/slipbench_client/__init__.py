@@ -13,4 +13,4 @@ from .trace_files import read_trace
 
 __all__ = ["Block", "ClientError", "Column", "Description", "End", "KNOWN_VERSION", "Stream", "StreamError", "StreamSilent",
            "Trace", "TraceError", "VersionError", "read_trace", "unit_of"]
-__version__ = "0.3.0"
+__version__ = "0.4.0"
