@@ -103,7 +103,8 @@ EstimatorMap estimator_map(const Scenario& s, std::size_t which, const Estimator
 
 EstimatorMap estimator_map(Scenario s, const std::string& kind, const EstimatorMapOptions& options,
                            const MapProgress& progress) {
-  s.estimators = {{kind, kind, "", {}}};
+  s.estimators.assign(1, {});
+  s.estimators[0].name = s.estimators[0].kind = kind;
   return estimator_map(s, 0, options, progress);
 }
 

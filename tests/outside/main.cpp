@@ -36,8 +36,9 @@ int run(int count, char** words) {
   const auto figures = score.figures();
   std::printf("%-12s %-16s %14s %12s\n", "estimator", "kind", "speed rms, rpm", "lost at, s");
   for (std::size_t e = 0; e < figures.size(); ++e) {
-    const auto& [name, kind, file, settings] = scenario.estimators[e];
-    std::printf("%-12s %-16s %14.3f", name.c_str(), kind.c_str(), figures[e].speed_rmse_rpm.value_or(NAN));
+    const slipbench::EstimatorSettings& estimator = scenario.estimators[e];
+    std::printf("%-12s %-16s %14.3f", estimator.name.c_str(), estimator.kind.c_str(),
+                figures[e].speed_rmse_rpm.value_or(NAN));
     figures[e].lost_at_s ? std::printf(" %12.3f\n", *figures[e].lost_at_s) : std::printf(" %12s\n", "never");
   }
   std::printf("digest plant %s\n", digest.plant().c_str());
